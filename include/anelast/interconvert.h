@@ -53,7 +53,7 @@ typedef struct an_elastic_link {
 } an_elastic_link;
 
 /* an_shear_from_tension, an_tension_from_shear: one complex modulus [Pa] from the other.
- * nu: G* = E*/(2(1 + nu)). B: G* = 3 B E*/(9 B - E*), E* = 9 B G*/(3 B + G*). */
+ * nu: G* = E* / (2(1 + nu)). B: 1/G* = 3/E* - 1/(3 B), so G* = 3 B E* / (9 B - E*) and E* = 9 B G* / (3 B + G*). */
 double complex an_shear_from_tension(double complex tension_Pa, const an_elastic_link *link);
 double complex an_tension_from_shear(double complex shear_Pa, const an_elastic_link *link);
 
