@@ -38,7 +38,7 @@ typedef struct an_signal {
     an_signal_coding coding;     /* type of the raw samples */
     double scale;                /* [SI unit / raw * divisor], not 0 */
     double divisor;              /* [1] > 0, 0 means 1; a power of ten where decimals became integers */
-    rounding * / double offset;  /* [SI unit] */
+    double offset;               /* [SI unit] */
     size_t count;                /* samples */
     void *data;                  /* [count] raw samples of the coding; owned */
 } an_signal;
