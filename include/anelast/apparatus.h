@@ -10,10 +10,11 @@
 
 typedef enum an_force_at { AN_FORCE_AT_DRIVE = 0, AN_FORCE_AT_FIXED_END } an_force_at;
 
-/* One channel's response, H = gain exp(-i omega delay). */
+/* One channel's response, measured / true = gain exp(+i omega delay): a sample taken `delay` after its time stamp shows the
+ * later, advanced phase. A filter that lags by d seconds is therefore a delay of -d. */
 typedef struct an_channel_response {
     an_measure gain;  /* [1] measured / true; 1 where not given, u = relative standard uncertainty of calibration */
-    an_measure delay; /* [s] by which the channel is sampled or filtered late; positive = late */
+    an_measure delay; /* [s] by which the channel is sampled after its time stamp; positive = sampled late */
 } an_channel_response;
 
 /* One row of a calibrated complex compliance, C* = compliance (1 - i loss_factor) with loss_factor >= 0. */
