@@ -1,11 +1,12 @@
 /* Relaxation <-> retardation, exactly. Ground floor of fit.
  *
- * With s = -1/x both the transformed modulus of a Maxwell model and the transformed compliance of a retardation spectrum
- * take the secular form F(x) = sum_k w_k/(x - p_k) - c, with poles p_k at the given times, weights w_k > 0 and c >= 0.
- * F falls from +inf to -inf between neighbouring poles, so each interval holds exactly one zero, and one more lies
- * beyond the last pole when c > 0 [GR68]. Each zero is sought as its distance from the nearer pole (as in the secular
- * equation of divide-and-conquer eigensolvers), by Brent's method on the logarithm of that distance, so that the residues
- * keep full digits where zeros hug poles. Range: any times and strengths whose products stay finite. */
+ * With s = -1/x both the transformed modulus of a Maxwell model and the transformed compliance of a
+ * retardation spectrum take the secular form F(x) = sum_k w_k/(x - p_k) - c, with poles p_k at the given
+ * times, weights w_k > 0 and c >= 0. F falls from +inf to -inf between neighbouring poles, so each interval
+ * holds exactly one zero, and one more lies beyond the last pole when c > 0 [GR68]. Each zero is sought as
+ * its distance from the nearer pole (as in the secular equation of divide-and-conquer eigensolvers), by
+ * Brent's method on the logarithm of that distance, so that the residues keep full digits where zeros hug
+ * poles. Range: any times and strengths whose products stay finite. */
 #include "anelast/interconvert.h"
 
 #include <math.h>
@@ -132,9 +133,10 @@ static an_status seek(gsl_root_fsolver *solver, const secular_search *search, co
     return AN_OK;
 }
 
-/* The zero between pole k and pole k + 1. Bounds on its distance from the nearer pole: there w/distance must balance the
- * rest of the sum, whose terms are no nearer than half the gap. */
-static an_status seek_between(gsl_root_fsolver *solver, const secular *form, size_t k, secular_zero *zero, an_error *err)
+/* The zero between pole k and pole k + 1. Bounds on its distance from the nearer pole: there w/distance must
+ * balance the rest of the sum, whose terms are no nearer than half the gap. */
+static an_status seek_between(gsl_root_fsolver *solver, const secular *form, size_t k, secular_zero *zero,
+                              an_error *err)
 {
     double half = (form->pole[k + 1] - form->pole[k]) / 2;
     double rest = 0;
@@ -190,8 +192,8 @@ static double zero_time(const secular *form, const secular_zero *zero)
     return form->pole[zero->origin] + zero->offset;
 }
 
-/* E~(-1/x) = E_e - sum E_i tau_i/(x - tau_i): F with weights E_i tau_i and c = E_e, negated. 1/E~ has the residue
- * D_j lambda_j at lambda_j, hence D_j = 1/(lambda_j |F'|). */
+/* E~(-1/x) = E_e - sum E_i tau_i/(x - tau_i): F with weights E_i tau_i and c = E_e, negated. 1/E~ has the
+ * residue D_j lambda_j at lambda_j, hence D_j = 1/(lambda_j |F'|). */
 static an_status retardation_modes(const secular *form, an_retardation *spectrum, an_error *err)
 {
     size_t n = secular_count(form);
@@ -234,14 +236,17 @@ static an_status check_retardation(const an_retardation *spectrum, an_error *err
 {
     double instantaneous = spectrum->instantaneous_per_Pa;
     if (!(instantaneous > 0 && isfinite(instantaneous)))
-        return an_fail(err, AN_E_VALUE, "", "instantaneous compliance %g 1/Pa; above 0 is allowed", instantaneous);
+        return an_fail(err, AN_E_VALUE, "", "instantaneous compliance %g 1/Pa; above 0 is allowed",
+                       instantaneous);
     if (!(spectrum->fluidity_per_Pa_s >= 0 && isfinite(spectrum->fluidity_per_Pa_s)))
-        return an_fail(err, AN_E_VALUE, "", "fluidity %g 1/(Pa s); 0 or above is allowed", spectrum->fluidity_per_Pa_s);
+        return an_fail(err, AN_E_VALUE, "", "fluidity %g 1/(Pa s); 0 or above is allowed",
+                       spectrum->fluidity_per_Pa_s);
     for (size_t j = 0; j < spectrum->n_mode; j++) {
         double before = j > 0 ? spectrum->time_s[j - 1] : 0;
         if (!(spectrum->time_s[j] > before && isfinite(spectrum->time_s[j])))
-            return an_fail(err, AN_E_VALUE, "", "mode %zu: retardation time %g s; a finite time above %g s is allowed",
-                           j + 1, spectrum->time_s[j], before);
+            return an_fail(err, AN_E_VALUE, "",
+                           "mode %zu: retardation time %g s; a finite time above %g s is allowed", j + 1,
+                           spectrum->time_s[j], before);
         if (!(spectrum->compliance_per_Pa[j] >= 0 && isfinite(spectrum->compliance_per_Pa[j])))
             return an_fail(err, AN_E_VALUE, "", "mode %zu: compliance %g 1/Pa; 0 or above is allowed", j + 1,
                            spectrum->compliance_per_Pa[j]);
@@ -249,8 +254,8 @@ static an_status check_retardation(const an_retardation *spectrum, an_error *err
     return AN_OK;
 }
 
-/* D~(-1/x)/x = D_g/x + sum D_j/(x - lambda_j) - phi: F with a pole at 0. E~ = 1/D~ has the residue -E_i tau_i at tau_i,
- * hence E_i = 1/(tau_i^2 |F'|). */
+/* D~(-1/x)/x = D_g/x + sum D_j/(x - lambda_j) - phi: F with a pole at 0. E~ = 1/D~ has the residue -E_i tau_i
+ * at tau_i, hence E_i = 1/(tau_i^2 |F'|). */
 static an_status relaxation_modes(const secular *form, an_maxwell *model, an_error *err)
 {
     size_t n = secular_count(form);

@@ -1,6 +1,7 @@
-/* Laws of the shift factor: their table, checks, evaluation, slope and the gradient over their constants. Ground floor of fit.
- * Method: closed forms, each differentiated by hand. Range: above the divergence of WLF and VFT, where the forms lose
- * all meaning at T_inf and a_T changes sign below it. Change of reference is law_reference.c. */
+/* Laws of the shift factor: their table, checks, evaluation, slope and the gradient over their constants.
+ * Ground floor of fit. Method: closed forms, each differentiated by hand. Range: above the divergence of WLF
+ * and VFT, where the forms lose all meaning at T_inf and a_T changes sign below it. Change of reference is
+ * law_reference.c. */
 #include "anelast/law.h"
 
 #include <math.h>
@@ -21,7 +22,9 @@ static const law_row law_table[] = {
     [AN_LAW_ARRHENIUS] = {"arrhenius", 1, {"E_a"}, {"J/mol"}},
     [AN_LAW_VFT] = {"vft", 2, {"B", "T_inf"}, {"K", "K"}},
     [AN_LAW_CROSSOVER] = {"crossover", 4, {"c1", "c2", "T_x", "E_a"}, {"1", "K", "K", "J/mol"}},
-    [AN_LAW_POLYNOMIAL] = {"polynomial", 0, {"p1", "p2", "p3", "p4", "p5", "p6"},
+    [AN_LAW_POLYNOMIAL] = {"polynomial",
+                           0,
+                           {"p1", "p2", "p3", "p4", "p5", "p6"},
                            {"K-1", "K-2", "K-3", "K-4", "K-5", "K-6"}},
 };
 enum { N_KIND = sizeof law_table / sizeof law_table[0] };
@@ -89,16 +92,20 @@ an_status an_law_check(const an_law *law, an_error *err)
     const char *name = an_law_kind_name(law->kind);
     double t0 = law->reference_temperature_K;
     if (law->kind == AN_LAW_NONE || law->n_constant == 0 || law->n_constant > AN_LAW_MAX)
-        return an_fail(err, AN_E_VALUE, "", "shift law '%s' with %zu constants; a law with constants is needed", name,
+        return an_fail(err, AN_E_VALUE, "",
+                       "shift law '%s' with %zu constants; a law with constants is needed", name,
                        law->n_constant);
     if (!(t0 > 0 && isfinite(t0)))
-        return an_fail(err, AN_E_VALUE, "", "%s law: reference temperature %g K; above 0 K is allowed", name, t0);
+        return an_fail(err, AN_E_VALUE, "", "%s law: reference temperature %g K; above 0 K is allowed", name,
+                       t0);
     AN_TRY(check_positive(law, err));
     if (law->kind == AN_LAW_VFT && !(law->constant[1] < t0))
-        return an_fail(err, AN_E_VALUE, "", "vft law: T_inf = %g K; below the reference temperature %g K is allowed",
+        return an_fail(err, AN_E_VALUE, "",
+                       "vft law: T_inf = %g K; below the reference temperature %g K is allowed",
                        law->constant[1], t0);
     if (!(law->valid_from_K >= 0 && law->valid_to_K > law->valid_from_K))
-        return an_fail(err, AN_E_VALUE, "", "%s law: valid from %g to %g K; a range in rising order is allowed", name,
+        return an_fail(err, AN_E_VALUE, "",
+                       "%s law: valid from %g to %g K; a range in rising order is allowed", name,
                        law->valid_from_K, law->valid_to_K);
     return AN_OK;
 }
@@ -167,21 +174,23 @@ an_status an_law_log10_aT(const an_law *law, double temperature_K, an_range_poli
 {
     const char *name = an_law_kind_name(law->kind);
     if (law->kind == AN_LAW_NONE)
-        return an_fail(err, AN_E_VALUE, "", "there is no shift law: a_T is known at the reference temperature only");
+        return an_fail(err, AN_E_VALUE, "",
+                       "there is no shift law: a_T is known at the reference temperature only");
     if (!(temperature_K > 0 && isfinite(temperature_K)))
         return an_fail(err, AN_E_VALUE, "", "temperature %g K; above 0 K is allowed", temperature_K);
     if (diverges(law, temperature_K))
-        return an_fail(err, AN_E_SCIENCE, "", "%g K lies at or below %g K, where the %s law diverges", temperature_K,
-                       an_law_divergence(law), name);
+        return an_fail(err, AN_E_SCIENCE, "", "%g K lies at or below %g K, where the %s law diverges",
+                       temperature_K, an_law_divergence(law), name);
     bool inside = temperature_K >= law->valid_from_K && temperature_K <= law->valid_to_K;
     if (!inside && policy == AN_RANGE_REFUSE)
-        return an_fail(err, AN_E_SCIENCE, "", "%g K lies outside %g .. %g K, where the %s law is known to hold",
-                       temperature_K, law->valid_from_K, law->valid_to_K, name);
+        return an_fail(err, AN_E_SCIENCE, "",
+                       "%g K lies outside %g .. %g K, where the %s law is known to hold", temperature_K,
+                       law->valid_from_K, law->valid_to_K, name);
     *log10_aT = evaluate(law, temperature_K);
     if (inside)
         return AN_OK;
-    return an_fail(err, AN_DUBIOUS, "", "%g K lies outside %g .. %g K: the %s law is extrapolated", temperature_K,
-                   law->valid_from_K, law->valid_to_K, name);
+    return an_fail(err, AN_DUBIOUS, "", "%g K lies outside %g .. %g K: the %s law is extrapolated",
+                   temperature_K, law->valid_from_K, law->valid_to_K, name);
 }
 
 static double wlf_slope(const double *c, double x)
@@ -208,7 +217,8 @@ double an_law_slope(const an_law *law, double temperature_K)
     case AN_LAW_VFT:
         return -c[0] / (LN10 * (temperature_K - c[1]) * (temperature_K - c[1]));
     case AN_LAW_CROSSOVER:
-        return temperature_K >= c[2] ? wlf_slope(c, temperature_K - c[2]) : arrhenius_slope(c[3], temperature_K);
+        return temperature_K >= c[2] ? wlf_slope(c, temperature_K - c[2])
+                                     : arrhenius_slope(c[3], temperature_K);
     case AN_LAW_POLYNOMIAL: {
         double sum = 0;
         for (size_t k = law->n_constant; k-- > 0;)

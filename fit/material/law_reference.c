@@ -1,6 +1,7 @@
-/* Change of reference temperature of a shift law, by exact algebra and with the covariance of the constants. Ground floor of
- * fit. Method: the constants are mapped in closed form and their covariance by the map's Jacobian, C' = J C J^T, which is
- * exact for polynomials and first order for WLF (JCGM 102, 6.2). Range: new references above the divergence. */
+/* Change of reference temperature of a shift law, by exact algebra and with the covariance of the constants.
+ * Ground floor of fit. Method: the constants are mapped in closed form and their covariance by the map's
+ * Jacobian, C' = J C J^T, which is exact for polynomials and first order for WLF (JCGM 102, 6.2). Range: new
+ * references above the divergence. */
 #include "anelast/law.h"
 
 #include <math.h>
@@ -65,7 +66,8 @@ static void move_polynomial(an_law *law, double d)
     map_covariance(law, jacobian);
 }
 
-an_status an_law_change_reference(const an_law *law, double reference_temperature_K, an_law *moved, an_error *err)
+an_status an_law_change_reference(const an_law *law, double reference_temperature_K, an_law *moved,
+                                  an_error *err)
 {
     double d = reference_temperature_K - law->reference_temperature_K;
     if (!(reference_temperature_K > 0 && isfinite(reference_temperature_K)))
@@ -73,7 +75,8 @@ an_status an_law_change_reference(const an_law *law, double reference_temperatur
                        reference_temperature_K);
     bool bounded = law->kind == AN_LAW_WLF || law->kind == AN_LAW_VFT;
     if (bounded && !(reference_temperature_K > an_law_divergence(law)))
-        return an_fail(err, AN_E_SCIENCE, "", "new reference temperature %g K lies at or below %g K, where the %s law diverges",
+        return an_fail(err, AN_E_SCIENCE, "",
+                       "new reference temperature %g K lies at or below %g K, where the %s law diverges",
                        reference_temperature_K, an_law_divergence(law), an_law_kind_name(law->kind));
     *moved = *law;
     if (law->kind == AN_LAW_WLF)
@@ -99,8 +102,8 @@ an_status an_law_wlf_at(const an_law *law, double temperature_K, double *c1, dou
         return an_fail(err, AN_E_USAGE, "", "a %s law has no WLF constants", an_law_kind_name(law->kind));
     }
     if (!(temperature_K > divergence))
-        return an_fail(err, AN_E_SCIENCE, "", "%g K lies at or below %g K, where the %s law diverges", temperature_K,
-                       divergence, an_law_kind_name(law->kind));
+        return an_fail(err, AN_E_SCIENCE, "", "%g K lies at or below %g K, where the %s law diverges",
+                       temperature_K, divergence, an_law_kind_name(law->kind));
     *c2_K = temperature_K - divergence;
     *c1 = product / *c2_K;
     return AN_OK;

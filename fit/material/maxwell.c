@@ -1,6 +1,6 @@
-/* The generalised Maxwell model: ownership, checks, and the responses of it and of its single modes. Ground floor of fit.
- * Method: sums of closed forms, with expm1 where a small argument would lose digits. Range: any times the exponent of
- * a double can hold; omega tau from 0 up without overflow. */
+/* The generalised Maxwell model: ownership, checks, and the responses of it and of its single modes. Ground
+ * floor of fit. Method: sums of closed forms, with expm1 where a small argument would lose digits. Range: any
+ * times the exponent of a double can hold; omega tau from 0 up without overflow. */
 #include "anelast/maxwell.h"
 
 #include <math.h>
@@ -50,12 +50,15 @@ static an_status check_mode(const an_maxwell *model, size_t i, an_error *err)
     double tau = model->time_s[i];
     double modulus = model->modulus_Pa[i];
     if (!(tau > 0 && isfinite(tau)))
-        return an_fail(err, AN_E_VALUE, "", "mode %zu: relaxation time %g s; a positive time is allowed", i + 1, tau);
+        return an_fail(err, AN_E_VALUE, "", "mode %zu: relaxation time %g s; a positive time is allowed",
+                       i + 1, tau);
     if (i > 0 && !(tau > model->time_s[i - 1]))
-        return an_fail(err, AN_E_VALUE, "", "mode %zu: relaxation time %g s is not above that of mode %zu, %g s", i + 1,
-                       tau, i, model->time_s[i - 1]);
+        return an_fail(err, AN_E_VALUE, "",
+                       "mode %zu: relaxation time %g s is not above that of mode %zu, %g s", i + 1, tau, i,
+                       model->time_s[i - 1]);
     if (!(modulus >= 0 && isfinite(modulus)))
-        return an_fail(err, AN_E_VALUE, "", "mode %zu: modulus %g Pa; a modulus >= 0 is allowed", i + 1, modulus);
+        return an_fail(err, AN_E_VALUE, "", "mode %zu: modulus %g Pa; a modulus >= 0 is allowed", i + 1,
+                       modulus);
     return AN_OK;
 }
 
@@ -68,8 +71,8 @@ an_status an_maxwell_check(const an_maxwell *model, an_error *err)
         AN_TRY(check_mode(model, i, err));
     double instantaneous = an_maxwell_instantaneous(model);
     if (!(instantaneous > 0 && isfinite(instantaneous)))
-        return an_fail(err, AN_E_VALUE, "", "instantaneous modulus %g Pa; a finite modulus above 0 is allowed",
-                       instantaneous);
+        return an_fail(err, AN_E_VALUE, "",
+                       "instantaneous modulus %g Pa; a finite modulus above 0 is allowed", instantaneous);
     return AN_OK;
 }
 
