@@ -2,6 +2,7 @@
  * floor of fit. Method: sums of closed forms, with expm1 where a small argument would lose digits. Range: any
  * times the exponent of a double can hold; omega tau from 0 up without overflow. */
 #include "anelast/maxwell.h"
+#include "fit/material/fault_list.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -45,35 +46,33 @@ an_status an_maxwell_copy(an_maxwell *target, const an_maxwell *source, an_error
     return AN_OK;
 }
 
-static an_status check_mode(const an_maxwell *model, size_t i, an_error *err)
+static void check_mode(const an_maxwell *model, size_t i, an_status *status, an_error *err)
 {
     double tau = model->time_s[i];
     double modulus = model->modulus_Pa[i];
     if (!(tau > 0 && isfinite(tau)))
-        return an_fail(err, AN_E_VALUE, "", "mode %zu: relaxation time %g s; a positive time is allowed",
-                       i + 1, tau);
-    if (i > 0 && !(tau > model->time_s[i - 1]))
-        return an_fail(err, AN_E_VALUE, "",
-                       "mode %zu: relaxation time %g s is not above that of mode %zu, %g s", i + 1, tau, i,
-                       model->time_s[i - 1]);
+        an_fault_add(err, status, "mode %zu: relaxation time %g s, where a finite time above 0 is allowed",
+                     i + 1, tau);
+    else if (i > 0 && !(tau > model->time_s[i - 1]))
+        an_fault_add(err, status, "mode %zu: relaxation time %g s is not above %g s of mode %zu", i + 1, tau,
+                     model->time_s[i - 1], i);
     if (!(modulus >= 0 && isfinite(modulus)))
-        return an_fail(err, AN_E_VALUE, "", "mode %zu: modulus %g Pa; a modulus >= 0 is allowed", i + 1,
-                       modulus);
-    return AN_OK;
+        an_fault_add(err, status, "mode %zu: modulus %g Pa, where 0 or above is allowed", i + 1, modulus);
 }
 
 an_status an_maxwell_check(const an_maxwell *model, an_error *err)
 {
-    if (!(model->equilibrium_Pa >= 0 && isfinite(model->equilibrium_Pa)))
-        return an_fail(err, AN_E_VALUE, "", "equilibrium modulus %g Pa; a modulus >= 0 is allowed",
-                       model->equilibrium_Pa);
-    for (size_t i = 0; i < model->n_mode; i++)
-        AN_TRY(check_mode(model, i, err));
+    an_status status = AN_OK;
     double instantaneous = an_maxwell_instantaneous(model);
+    if (!(model->equilibrium_Pa >= 0 && isfinite(model->equilibrium_Pa)))
+        an_fault_add(err, &status, "equilibrium modulus %g Pa, where 0 or above is allowed",
+                     model->equilibrium_Pa);
+    for (size_t i = 0; i < model->n_mode; i++)
+        check_mode(model, i, &status, err);
     if (!(instantaneous > 0 && isfinite(instantaneous)))
-        return an_fail(err, AN_E_VALUE, "",
-                       "instantaneous modulus %g Pa; a finite modulus above 0 is allowed", instantaneous);
-    return AN_OK;
+        an_fault_add(err, &status, "instantaneous modulus %g Pa, where a finite modulus above 0 is allowed",
+                     instantaneous);
+    return status;
 }
 
 /* Both forms of x^2/(1 + x^2) and x/(1 + x^2) so that neither x^2 nor 1/x^2 overflows. */
