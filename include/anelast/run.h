@@ -11,7 +11,8 @@
  *       <signal quantity="displacement" ...> <signal quantity="force" ...> <signal quantity="temperature" ...>
  *       <remark .../>
  *     </burst> ...
- *     <end bursts="91"/>               a run document without it is truncated
+ *     <end bursts="91"><remark .../></end>   a run document without it is truncated; its remarks are of the run as a
+ *                                            whole too, known only once the dump was read to its end (`truncated`)
  *   </run>
  */
 #ifndef ANELAST_RUN_H
@@ -52,8 +53,9 @@ typedef struct an_run {
     an_made made;
     an_specimen specimen;
     an_apparatus apparatus;
-    an_remark_list remarks;
-    int n_burst; /* from <end>, known after the last burst */
+    an_remark_list remarks; /* of the run as a whole; those of <end> join them after the last burst */
+    size_t n_written;       /* remarks that an_run_write_head wrote; the later ones go into <end> */
+    int n_burst;            /* from <end>, known after the last burst */
 } an_run;
 
 void an_run_init(an_run *run);
@@ -61,9 +63,15 @@ void an_run_clear(an_run *run);
 void an_burst_init(an_burst *burst);
 void an_burst_clear(an_burst *burst);
 
-/* an_run_write_head / _burst / _end: write the document piece by piece; errors of the stream show when it is committed. */
-void an_run_write_head(an_xml_writer *writer, const an_run *run);
-void an_run_write_burst(an_xml_writer *writer, const an_burst *burst);
+/* an_burst_kind_word: the kind in documents: "oscillation", "hold", "pull". */
+const char *an_burst_kind_word(an_burst_kind kind);
+
+/* an_run_write_head / _burst / _end: write the document piece by piece, root element open; errors of the stream show
+ * when it is committed. The head sets run->n_written; bursts are numbered by the caller, who sets run->n_burst before
+ * the end.
+ * an_run_write_burst returns AN_OK or AN_E_MEMORY. */
+void an_run_write_head(an_xml_writer *writer, an_run *run);
+an_status an_run_write_burst(an_xml_writer *writer, const an_burst *burst, an_error *err);
 void an_run_write_end(an_xml_writer *writer, const an_run *run);
 
 /* What an_run_read calls: head once, before the first burst; burst for each one. The burst belongs to the reader and is

@@ -1,12 +1,12 @@
 /* anelast/specimen.h: what was tested, and its geometry. A written document of the acquire floor; a run carries a copy.
  *
  * A length that nobody gave is NAN in `value`; an uncertainty that nobody gave is NAN in `u` and is replaced by the
- * procedure's default when budgets are made, which is then remarked upon.
+ * procedure's default when budgets are made, which is then remarked upon. A written document may give a dimension's
+ * uncertainty alone (`<width unit="mm" u="0.02"/>`) where the dump itself gives the value.
  */
 #ifndef ANELAST_SPECIMEN_H
 #define ANELAST_SPECIMEN_H
 
-#include "anelast/procedure.h"
 #include "anelast/quantity.h"
 #include "anelast/remark.h"
 #include "anelast/status.h"
@@ -74,6 +74,16 @@ an_status an_specimen_load(const char *path, an_specimen *specimen, char sha256[
 /* an_specimen_from_node / an_specimen_write: the element <specimen> as a document of its own and inside a run. */
 an_status an_specimen_from_node(const an_xml_node *node, an_specimen *specimen, an_error *err);
 void an_specimen_write(an_xml_writer *writer, const an_specimen *specimen);
+
+/* an_geometry_dimension: the measure of a dimension by its element's name ("length"), for who fills a geometry by name.
+ *   unit [out, nullable] its SI unit
+ * Returns NULL where there is no such dimension. */
+an_measure *an_geometry_dimension(an_geometry *geometry, const char *name, const char **unit);
+
+/* an_specimen_label: the text of an attribute by its name ("id", "material", "lot", "operator", "started", "rig").
+ *   size [out] bytes of room, with the final zero byte
+ * Returns NULL where there is no such text. */
+char *an_specimen_label(an_specimen *specimen, const char *name, size_t *size);
 
 /* an_specimen_merge: what `over` gives replaces what `base` gives (documents over the dump's own head); where both give
  * a dimension and differ by more than 3 combined standard uncertainties, at least 0.1 %, a remark `geometry-disagrees`
