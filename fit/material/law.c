@@ -4,6 +4,7 @@
  * law_reference.c. */
 #include "anelast/law.h"
 
+#include <float.h>
 #include <math.h>
 #include <string.h>
 
@@ -159,14 +160,11 @@ static double evaluate(const an_law *law, double temperature_K)
     return NAN;
 }
 
-static bool has_divergence(const an_law *law)
+bool an_law_diverges(const an_law *law, double temperature_K)
 {
-    return law->kind == AN_LAW_WLF || law->kind == AN_LAW_VFT;
-}
-
-static bool diverges(const an_law *law, double temperature_K)
-{
-    return !(temperature_K > 0) || (has_divergence(law) && !(temperature_K > an_law_divergence(law)));
+    bool has_pole = law->kind == AN_LAW_WLF || law->kind == AN_LAW_VFT;
+    double rounding = 8 * DBL_EPSILON * fabs(law->reference_temperature_K);
+    return !(temperature_K > 0) || (has_pole && !(temperature_K - an_law_divergence(law) > rounding));
 }
 
 an_status an_law_log10_aT(const an_law *law, double temperature_K, an_range_policy policy, double *log10_aT,
@@ -178,7 +176,7 @@ an_status an_law_log10_aT(const an_law *law, double temperature_K, an_range_poli
                        "there is no shift law: a_T is known at the reference temperature only");
     if (!(temperature_K > 0 && isfinite(temperature_K)))
         return an_fail(err, AN_E_VALUE, "", "temperature %g K; above 0 K is allowed", temperature_K);
-    if (diverges(law, temperature_K))
+    if (an_law_diverges(law, temperature_K))
         return an_fail(err, AN_E_SCIENCE, "", "%g K lies at or below %g K, where the %s law diverges",
                        temperature_K, an_law_divergence(law), name);
     bool inside = temperature_K >= law->valid_from_K && temperature_K <= law->valid_to_K;
@@ -207,7 +205,7 @@ double an_law_slope(const an_law *law, double temperature_K)
 {
     const double *c = law->constant;
     double x = temperature_K - law->reference_temperature_K;
-    if (diverges(law, temperature_K))
+    if (an_law_diverges(law, temperature_K))
         return NAN;
     switch (law->kind) {
     case AN_LAW_WLF:
@@ -275,7 +273,7 @@ static void vft_gradient(const an_law *law, double temperature_K, double *gradie
 void an_law_gradient(const an_law *law, double temperature_K, double *gradient)
 {
     double x = temperature_K - law->reference_temperature_K;
-    if (diverges(law, temperature_K)) {
+    if (an_law_diverges(law, temperature_K)) {
         for (size_t i = 0; i < law->n_constant; i++)
             gradient[i] = NAN;
         return;

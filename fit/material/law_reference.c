@@ -73,8 +73,7 @@ an_status an_law_change_reference(const an_law *law, double reference_temperatur
     if (!(reference_temperature_K > 0 && isfinite(reference_temperature_K)))
         return an_fail(err, AN_E_VALUE, "", "new reference temperature %g K; above 0 K is allowed",
                        reference_temperature_K);
-    bool bounded = law->kind == AN_LAW_WLF || law->kind == AN_LAW_VFT;
-    if (bounded && !(reference_temperature_K > an_law_divergence(law)))
+    if (an_law_diverges(law, reference_temperature_K))
         return an_fail(err, AN_E_SCIENCE, "",
                        "new reference temperature %g K lies at or below %g K, where the %s law diverges",
                        reference_temperature_K, an_law_divergence(law), an_law_kind_name(law->kind));

@@ -69,8 +69,10 @@ const char *an_law_constant_name(an_law_kind kind, size_t i_constant);
 const char *an_law_constant_unit(an_law_kind kind, size_t i_constant);
 
 /* an_law_divergence: the temperature [K] at which the law diverges: T0 - c2 of WLF, T_inf of VFT; 0 for the
- * others. */
+ * others.
+ * an_law_diverges: whether a temperature [K] is not above 0 K or not above the divergence, to rounding. */
 double an_law_divergence(const an_law *law);
+bool an_law_diverges(const an_law *law, double temperature_K);
 
 /* an_law_log10_aT: log10 a_T at a temperature.
  *   policy    [in]  what to do outside the valid range
