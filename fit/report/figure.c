@@ -213,11 +213,12 @@ void an_figure_add_level(an_figure *figure, double y)
         i->rule.at = y;
 }
 
-void an_figure_set_ramp(an_figure *figure, const char *label, double from, double to)
+void an_figure_set_ramp(an_figure *figure, const an_figure_ramp *ramp)
 {
-    figure->ramp_label = take_text(figure, label);
-    figure->ramp_from = from;
-    figure->ramp_to = to;
+    figure->ramp = *ramp;
+    figure->ramp.label = take_text(figure, ramp->label);
+    if (!ramp->color)
+        figure->ramp.color = an_ramp_color;
 }
 
 bool an_figure_is_empty(const an_figure *figure)

@@ -168,14 +168,14 @@ static void ramp_gradient(FILE *out, const an_figure *figure)
     for (int k = 0; k <= RAMP_STOPS; k++) {
         fputs("<stop offset=\"", out);
         markup_fixed(out, (double)k / RAMP_STOPS, 4);
-        fprintf(out, "\" stop-color=\"#%06x\"/>", an_ramp_color((double)k / RAMP_STOPS));
+        fprintf(out, "\" stop-color=\"#%06x\"/>", figure->ramp.color((double)k / RAMP_STOPS));
     }
     fputs("</linearGradient></defs>\n", out);
 }
 
 void draw_ramp(FILE *out, const an_figure *figure, const frame *f)
 {
-    if (!figure->ramp_label)
+    if (!figure->ramp.label)
         return;
     ramp_gradient(out, figure);
     double x = f->right - RAMP_LENGTH - 12, y = f->ramp_top + 6;
@@ -185,10 +185,10 @@ void draw_ramp(FILE *out, const an_figure *figure, const frame *f)
     markup_attribute(out, "width", RAMP_LENGTH);
     fprintf(out, " fill=\"url(#%s-ramp)\"/>\n", figure->id);
     text_at(out, "end", x - 10, y + 10);
-    markup_label(out, figure->ramp_label, MARKUP_SVG, FIGURE_TICK_SIZE);
+    markup_label(out, figure->ramp.label, MARKUP_SVG, FIGURE_TICK_SIZE);
     fputs("</text>\n", out);
-    bool single = !(figure->ramp_to > figure->ramp_from);
-    scale s = {AN_AXIS_LINEAR, figure->ramp_from - single, figure->ramp_to + single, x, RAMP_LENGTH};
+    an_figure_axis axis = {.scale = figure->ramp.scale, .from = figure->ramp.from, .to = figure->ramp.to};
+    scale s = scale_make(&axis, (extent){axis.from, axis.to}, x, RAMP_LENGTH);
     tick_set ticks = ticks_make(&s, 5);
     for (int k = 0; k < ticks.n_major; k++) {
         text_at(out, "middle", scale_place(&s, ticks.major[k]), y + 25);
@@ -235,7 +235,7 @@ frame frame_make(const an_figure *figure)
         labelled = labelled || p->y.label;
     }
     f.left = widest + 9 + (labelled ? 22 : 2);
-    f.legend_top = f.ramp_top + (figure->ramp_label ? RAMP_HEIGHT : 0);
+    f.legend_top = f.ramp_top + (figure->ramp.label ? RAMP_HEIGHT : 0);
     f.panel_top = f.legend_top + legend_height(figure) + 8 + exponent_room(figure->first);
     f.x = scale_make(&figure->x, extent_of_x(figure), f.left, f.right - f.left);
     f.x_ticks = ticks_make(&f.x, f.x.kind == AN_AXIS_LOG10 ? 9 : 7);

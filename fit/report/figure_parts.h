@@ -47,8 +47,7 @@ struct an_figure {
     const char *id, *title, *description;
     an_figure_axis x;
     panel *first, *last;
-    const char *ramp_label; /* NULL: no bar */
-    double ramp_from, ramp_to;
+    an_figure_ramp ramp; /* label NULL: no bar */
 };
 
 /* A range that grows with the data. */

@@ -1,18 +1,24 @@
-/* The colour ramp of temperature. Stage report. One path through OKLab, a space in which equal steps look
- * equal [OKLAB]: lightness rises linearly from LIGHTNESS_COLD to LIGHTNESS_HOT, hue turns linearly, chroma is
- * constant but where the display's gamut is narrower, there it is reduced with lightness and hue kept. The
- * lightest end still has a contrast of 3 on white, so that every colour serves for thin marks on a light
- * ground. Range: fraction 0..1.
+/* The colour ramps of temperature and of frequency. Stage report. Each is one path through OKLab, a space in
+ * which equal steps look equal [OKLAB]: lightness and hue run linearly, chroma is constant but where the
+ * display's gamut is narrower, there it is reduced with lightness and hue kept. The lightest end still has a
+ * contrast of 3 on white, so that every colour serves for thin marks on a light ground. Range: fraction 0..1.
  */
 #include "anelast/figure.h"
 
 #include <math.h>
 
-#define LIGHTNESS_COLD 0.30
-#define LIGHTNESS_HOT  0.665
-#define HUE_COLD       262.0 /* [degree], blue */
-#define HUE_HOT        418.0 /* [degree], orange, reached over violet and red */
-#define CHROMA         0.165
+/* Ends of a path at fractions 0 and 1. */
+typedef struct ramp {
+    double lightness[2]; /* [1] of OKLab */
+    double hue[2];       /* [degree] */
+    double chroma;       /* [1] of OKLab */
+} ramp;
+
+/* Blue over violet and red to orange. */
+static const ramp temperature = {{0.30, 0.665}, {262, 418}, 0.165};
+
+/* One blue-green, from light to dark, so that nobody takes it for a temperature. */
+static const ramp frequency = {{0.64, 0.30}, {195, 195}, 0.09};
 
 typedef struct linear_rgb {
     double r, g, b; /* linear light, 0..1 inside the gamut */
@@ -39,10 +45,10 @@ static bool in_gamut(linear_rgb c)
     return fmin(c.r, fmin(c.g, c.b)) >= 0 && fmax(c.r, fmax(c.g, c.b)) <= 1;
 }
 
-/* The largest chroma up to CHROMA that the gamut holds, by bisection. */
-static linear_rgb most_colorful(double lightness, double hue)
+/* The largest chroma up to a given one that the gamut holds, by bisection. */
+static linear_rgb most_colorful(double lightness, double hue, double chroma)
 {
-    double low = 0, high = CHROMA;
+    double low = 0, high = chroma;
     for (int i = 0; i < 24; i++) {
         double middle = i == 0 ? high : (low + high) / 2;
         if (in_gamut(from_oklab(lightness, middle * cos(hue), middle * sin(hue))))
@@ -60,15 +66,25 @@ static uint32_t to_byte(double linear)
     return (uint32_t)lround(255 * fmin(fmax(coded, 0), 1));
 }
 
-uint32_t an_ramp_color(double fraction)
+static uint32_t color_on(const ramp *path, double fraction)
 {
     if (isnan(fraction))
         return AN_COLOR_MUTED;
     double f = fmin(fmax(fraction, 0), 1);
-    double lightness = LIGHTNESS_COLD + f * (LIGHTNESS_HOT - LIGHTNESS_COLD);
-    double hue = (HUE_COLD + f * (HUE_HOT - HUE_COLD)) * M_PI / 180;
-    linear_rgb c = most_colorful(lightness, hue);
+    double lightness = path->lightness[0] + f * (path->lightness[1] - path->lightness[0]);
+    double hue = (path->hue[0] + f * (path->hue[1] - path->hue[0])) * M_PI / 180;
+    linear_rgb c = most_colorful(lightness, hue, path->chroma);
     return to_byte(c.r) << 16 | to_byte(c.g) << 8 | to_byte(c.b);
+}
+
+uint32_t an_ramp_color(double fraction)
+{
+    return color_on(&temperature, fraction);
+}
+
+uint32_t an_tone_color(double fraction)
+{
+    return color_on(&frequency, fraction);
 }
 
 double an_ramp_fraction(double value, double from, double to)

@@ -126,10 +126,16 @@ void an_figure_add_rule(an_figure *figure, double x, const char *name);
 /* an_figure_add_level: a thin horizontal line at y [unit of y] over the last panel; y widens the range. */
 void an_figure_add_level(an_figure *figure, double y);
 
-/* an_figure_set_ramp: show a bar of the colour ramp above the panels.
- *   label    [in] label text, unit included
- *   from, to [in] values at the ends of the ramp [unit of label], from <= to */
-void an_figure_set_ramp(an_figure *figure, const char *label, double from, double to);
+/* A bar that shows what the colours stand for. */
+typedef struct an_figure_ramp {
+    const char *label;             /* label text, unit included */
+    an_axis_scale scale;           /* of the values along the bar */
+    double from, to;               /* values at the ends [unit of label], from <= to, positive on a log10 scale */
+    uint32_t (*color)(double fraction); /* an_ramp_color or an_tone_color; NULL: an_ramp_color */
+} an_figure_ramp;
+
+/* an_figure_set_ramp: show a colour bar above the panels; its label is copied. */
+void an_figure_set_ramp(an_figure *figure, const an_figure_ramp *ramp);
 
 /* an_figure_is_empty: whether nothing finite was added to any panel, so that there is nothing to draw. */
 bool an_figure_is_empty(const an_figure *figure);
@@ -144,6 +150,9 @@ an_status an_figure_write(an_figure *figure, FILE *out, an_error *err);
  *   fraction [in] 0 cold .. 1 hot; clamped; NaN: AN_COLOR_MUTED
  * Returns 0xRRGGBB. */
 uint32_t an_ramp_color(double fraction);
+
+/* an_tone_color: a ramp of one hue for frequencies, light to dark; contrast as above. */
+uint32_t an_tone_color(double fraction);
 
 /* an_ramp_fraction: place of a value between from and to, 0.5 where they coincide. */
 double an_ramp_fraction(double value, double from, double to);

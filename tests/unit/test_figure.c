@@ -78,18 +78,24 @@ static double oklab_lightness(uint32_t rgb)
     return 0.2104542553 * l + 0.7936177850 * m - 0.0040720468 * s;
 }
 
-static void test_ramp_is_ordered_by_lightness_and_dark_enough(void **state)
+/* Lightness along a ramp runs evenly from end to end, and no colour is too light to be seen. */
+static void check_ramp(uint32_t (*color)(double))
 {
-    (void)state;
-    double first = oklab_lightness(an_ramp_color(0)), last = oklab_lightness(an_ramp_color(1));
-    assert_true(last - first > 0.3);
+    double first = oklab_lightness(color(0)), last = oklab_lightness(color(1));
+    assert_true(fabs(last - first) > 0.3);
     for (int k = 0; k <= 64; k++) {
-        uint32_t color = an_ramp_color(k / 64.0);
         double even = first + (last - first) * k / 64;
         /* one step of an eight-bit channel moves lightness by up to 0.004 */
-        assert_true(fabs(oklab_lightness(color) - even) < 0.004);
-        assert_true(contrast_on_white(color) >= 3); /* WCAG 1.4.11, graphical objects */
+        assert_true(fabs(oklab_lightness(color(k / 64.0)) - even) < 0.004);
+        assert_true(contrast_on_white(color(k / 64.0)) >= 3); /* WCAG 1.4.11, graphical objects */
     }
+}
+
+static void test_ramps_are_ordered_by_lightness_and_dark_enough(void **state)
+{
+    (void)state;
+    check_ramp(an_ramp_color);
+    check_ramp(an_tone_color);
     assert_int_equal(an_ramp_color(-1), an_ramp_color(0));
     assert_int_equal(an_ramp_color(7), an_ramp_color(1));
     assert_int_equal(an_ramp_color(NAN), AN_COLOR_MUTED);
@@ -118,7 +124,7 @@ static an_figure *everything(void)
         .description = "Stored & compared",
         .x = {.label = "Frequency f (Hz)", .symbol = "f", .unit = "Hz", .scale = AN_AXIS_LOG10}};
     assert_int_equal(an_figure_new(&figure, &spec, NULL), AN_OK);
-    an_figure_set_ramp(figure, "Temperature (°C)", -40, 80);
+    an_figure_set_ramp(figure, &(an_figure_ramp){.label = "Temperature (°C)", .from = -40, .to = 80});
     an_figure_add_panel(
         figure, &(an_figure_axis){.label = "E′ (Pa)", .symbol = "E′", .unit = "Pa", .scale = AN_AXIS_LOG10},
         160);
@@ -204,7 +210,7 @@ static void test_everything_shown_is_escaped(void **state)
     an_figure_spec spec = {
         .id = "e", .title = evil, .description = evil, .x = {.label = evil, .symbol = evil, .unit = evil}};
     assert_int_equal(an_figure_new(&figure, &spec, NULL), AN_OK);
-    an_figure_set_ramp(figure, evil, 0, 1);
+    an_figure_set_ramp(figure, &(an_figure_ramp){.label = evil, .from = 0, .to = 1});
     an_figure_add_panel(figure, &(an_figure_axis){.label = evil, .symbol = evil, .unit = evil}, 100);
     an_figure_add_series(figure, &(an_figure_series){.x = x,
                                                      .y = y,
@@ -354,7 +360,7 @@ static void test_faults_are_kept_until_writing(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_ramp_is_ordered_by_lightness_and_dark_enough),
+        cmocka_unit_test(test_ramps_are_ordered_by_lightness_and_dark_enough),
         cmocka_unit_test(test_fixed_colors_are_readable),
         cmocka_unit_test(test_stored_figure),
         cmocka_unit_test(test_parts_are_there_once),
