@@ -5,6 +5,7 @@
 #define ANELAST_GRID_H
 
 #include "anelast/points.h"
+#include "anelast/procedure.h"
 
 /* One temperature-frequency cell. Repeats of a cell are averaged (ln E, delta) and counted. */
 typedef struct an_cell {
@@ -24,7 +25,10 @@ typedef struct an_isotherm {
     double temperature_K;     /* [K] mean of its cells */
     double u_temperature_K;   /* [K] noise part */
     double set_temperature_K; /* [K] NAN: not said */
-    double drift_K;           /* [K] greatest less least of its cells */
+    double drift_K;           /* [K] greatest less least of its bursts */
+    double rate_K_s;          /* [K/s] of the bursts' own slopes and from burst to burst; NAN: not known */
+    double u_rate_K_s;        /* [K/s] noise part */
+    int steady;               /* 0: the rate is above the procedure's limit by more than its noise explains */
     int cooling;              /* nonzero: reached from above */
     int first_cell, n_cell;   /* into an_grid.cell, by rising frequency */
 } an_isotherm;
@@ -37,7 +41,9 @@ typedef struct an_reading {
     double frequency_Hz;    /* [Hz] */
     double temperature_K;   /* [K] NAN: refused */
     double u_noise_K;       /* [K] */
+    double u_form_K;        /* [K] from the curve between the temperatures measured */
     double u_common_K;      /* [K] temperature bias */
+    int on_ramp;            /* nonzero: from bursts on a ramp, else from isotherms */
     char reason[160];       /* why it was refused; "" where it stands */
 } an_reading;
 
@@ -52,6 +58,16 @@ typedef struct an_assessment {
     char largest_correction[240];     /* in words, with burst, rung and size */
 } an_assessment;
 
+/* Repeats within runs and replicates between runs: pooled standard deviations, NAN where nothing was repeated. They are
+ * told apart from the noise: a specimen's own scatter is no scatter of its bursts. */
+typedef struct an_scatter {
+    int n_run;                /* points documents that went in */
+    double between_modulus;   /* [1] ln|E*|, from run to run */
+    double between_delta_rad; /* [rad] */
+    double within_modulus;    /* [1] from repeat to repeat within a run */
+    double within_delta_rad;  /* [rad] */
+} an_scatter;
+
 typedef struct an_grid {
     char id[160];
     an_made made;
@@ -59,9 +75,12 @@ typedef struct an_grid {
     an_apparatus apparatus;       /* for the temperature's common uncertainty */
     an_remark_list remarks;
     int n_isotherm;
-    an_isotherm *isotherm;        /* [n_isotherm] by rising temperature, owned */
+    an_isotherm *isotherm;        /* [n_isotherm] heating, then cooling, each by rising temperature; owned */
     int n_cell;
-    an_cell *cell;                /* [n_cell], owned */
+    an_cell *cell;                /* [n_cell] by isotherm, then by rising frequency; owned */
+    int n_ramp;
+    an_cell *ramp;                /* [n_ramp] bursts on a ramp by rising temperature, isotherm -1: for readings; owned */
+    an_scatter scatter;
     int n_reading;
     an_reading *reading;          /* [n_reading], owned */
     an_assessment assessment;
@@ -74,7 +93,14 @@ void an_grid_write(an_xml_writer *writer, const an_grid *grid);
 
 /* an_grid_make: one or many points documents to a grid: isotherms, cells, readings, drift check, assessment.
  *   points [in] [n_points]; procedure [in]; grid [out] init'ed by the caller.
- * Returns AN_OK, AN_DUBIOUS, AN_E_SCIENCE where no isotherm is left, AN_E_MEMORY. */
+ * Isotherms go by measured temperature: within the procedure's width of their mean, heating and cooling apart. Bursts on a
+ * ramp join none of them. Outliers are marked, not removed. Several documents are replicates: one cell is the mean of the
+ * runs' means in ln|E*| and delta.
+ * Returns AN_OK, AN_DUBIOUS (remarks of flag or more, or only a ramp), AN_E_SCIENCE where neither isotherm nor ramp is left,
+ * AN_E_MEMORY. The verdict of the assessment:
+ *   repeat   a halt, or more than half of the bursts skipped or held, or nothing to grid;
+ *   partial  some bursts skipped or held, or a hold on the run;
+ *   usable   otherwise, flags or not. */
 an_status an_grid_make(const an_points *points, int n_points, const an_procedure *procedure, an_grid *grid, an_error *err);
 
 const char *an_reading_word(an_reading_kind kind); /* "storage onset", "loss peak", "loss factor peak" */
