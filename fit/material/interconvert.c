@@ -90,13 +90,19 @@ static double secular_value(const secular *form, size_t origin, double offset)
     return sum;
 }
 
-/* -F', positive everywhere. */
+static double zero_time(const secular *form, const secular_zero *zero)
+{
+    return form->pole[zero->origin] + zero->offset;
+}
+
+/* -x^2 F' at a zero x: positive, and in the range of the weights however long the times are. */
 static double secular_descent(const secular *form, const secular_zero *zero)
 {
+    double x = zero_time(form, zero);
     double sum = 0;
     for (size_t k = 0; k < form->n; k++) {
-        double distance = (form->pole[zero->origin] - form->pole[k]) + zero->offset;
-        sum += form->weight[k] / distance / distance;
+        double ratio = x / ((form->pole[zero->origin] - form->pole[k]) + zero->offset);
+        sum += form->weight[k] * ratio * ratio;
     }
     return sum;
 }
@@ -187,11 +193,6 @@ cleanup:
     return status;
 }
 
-static double zero_time(const secular *form, const secular_zero *zero)
-{
-    return form->pole[zero->origin] + zero->offset;
-}
-
 /* E~(-1/x) = E_e - sum E_i tau_i/(x - tau_i): F with weights E_i tau_i and c = E_e, negated. 1/E~ has the
  * residue D_j lambda_j at lambda_j, hence D_j = 1/(lambda_j |F'|). */
 static an_status retardation_modes(const secular *form, an_retardation *spectrum, an_error *err)
@@ -205,7 +206,7 @@ static an_status retardation_modes(const secular *form, an_retardation *spectrum
     AN_CLEAN(an_retardation_alloc(spectrum, n, err));
     for (size_t j = 0; j < n; j++) {
         spectrum->time_s[j] = zero_time(form, &zero[j]);
-        spectrum->compliance_per_Pa[j] = 1 / (spectrum->time_s[j] * secular_descent(form, &zero[j]));
+        spectrum->compliance_per_Pa[j] = spectrum->time_s[j] / secular_descent(form, &zero[j]);
     }
 cleanup:
     free(zero);
@@ -266,9 +267,8 @@ static an_status relaxation_modes(const secular *form, an_maxwell *model, an_err
     AN_CLEAN(secular_solve(form, zero, err));
     AN_CLEAN(an_maxwell_alloc(model, n, err));
     for (size_t i = 0; i < n; i++) {
-        double tau = zero_time(form, &zero[i]);
-        model->time_s[i] = tau;
-        model->modulus_Pa[i] = 1 / (tau * tau * secular_descent(form, &zero[i]));
+        model->time_s[i] = zero_time(form, &zero[i]);
+        model->modulus_Pa[i] = 1 / secular_descent(form, &zero[i]);
     }
 cleanup:
     free(zero);
