@@ -86,10 +86,23 @@ typedef struct an_grid {
     an_assessment assessment;
 } an_grid;
 
+/* an_grid_init, an_grid_clear: an empty grid; release all that it holds and make it empty. */
 void an_grid_init(an_grid *grid);
 void an_grid_clear(an_grid *grid);
+
+/* an_grid_read: read and validate a grid document.
+ *   path [in] file, "-" for standard input; grid [out] init'ed by the caller, who clears it, also after a refusal;
+ *   sha256 [out, nullable] hex of the document's bytes.
+ * Returns AN_OK, or AN_E_IO, AN_E_DOCUMENT, AN_E_VALUE, AN_E_UNIT, AN_E_LIMIT, AN_E_MEMORY. */
 an_status an_grid_read(const char *path, an_grid *grid, char sha256[65], an_error *err);
+
+/* an_grid_write: the content of a grid document whose writer was started with the root "grid". */
 void an_grid_write(an_xml_writer *writer, const an_grid *grid);
+
+/* an_assessment_write, an_assessment_read: the element <assessment>, which master documents carry on.
+ *   root [in] the node that has it as a child. Returns AN_OK, AN_E_DOCUMENT or AN_E_VALUE. */
+void an_assessment_write(an_xml_writer *writer, const an_assessment *assessment);
+an_status an_assessment_read(const an_xml_node *root, an_assessment *assessment, an_error *err);
 
 /* an_grid_make: one or many points documents to a grid: isotherms, cells, readings, drift check, assessment.
  *   points [in] [n_points]; procedure [in]; grid [out] init'ed by the caller.

@@ -1,5 +1,5 @@
-/* assess.c: what the technician is told while the specimen is still in the clamps: usable, partial or repeat, why in plain words,
- * and what to measure again. The rule stands at an_grid_make in anelast/grid.h.
+/* assess.c: what the technician is told while the specimen is still in the clamps: usable, partial or repeat,
+ * why in plain words, and what to measure again. The rule stands at an_grid_make in anelast/grid.h.
  */
 #include "reduce/grid/parts.h"
 
@@ -59,7 +59,7 @@ static int count_remarks(const an_points *points, int n_points, const an_grid *g
     for (int i = 0; i < grid->n_cell; i++)
         for (size_t r = 0; r < grid->cell[i].remarks.n; r++) {
             const an_remark *remark = &grid->cell[i].remarks.rows[r];
-            if (strcmp(remark->kind->code, "drift") == 0 || strcmp(remark->kind->code, "outlier") == 0)
+            if (strcmp(remark->kind->code, "drift-check") == 0 || strcmp(remark->kind->code, "outlier") == 0)
                 count_remark(remark, tallies, &n);
         }
     return n;
@@ -77,12 +77,12 @@ static void say_tallies(tally *tallies, int n, an_severity severity, an_assessme
             return;
         const an_remark *remark = most->first;
         if (most->n > 1 && remark->burst > 0)
-            say(assessment, "%d bursts, the first %ld: %s; %s", most->n, remark->burst, remark->text,
+            say(assessment, "%d bursts, the first %ld: %s. %s", most->n, remark->burst, remark->text,
                 remark->kind->action);
         else if (remark->burst > 0)
-            say(assessment, "burst %ld: %s; %s", remark->burst, remark->text, remark->kind->action);
+            say(assessment, "burst %ld: %s. %s", remark->burst, remark->text, remark->kind->action);
         else
-            say(assessment, "%s; %s", remark->text, remark->kind->action);
+            say(assessment, "%s. %s", remark->text, remark->kind->action);
         most->n = 0;
     }
 }
@@ -125,17 +125,18 @@ static void say_what_to_redo(const an_points *points, int n_points, an_assessmen
             if (fabs(set - last) < 0.05)
                 used += (size_t)snprintf(list + used, sizeof list - used, ", %.3g", frequency);
             else
-                used += (size_t)snprintf(list + used, sizeof list - used, "%s%.1f °C: %.3g", used ? " Hz; " : "",
-                                         degc(set), frequency);
+                used += (size_t)snprintf(list + used, sizeof list - used, "%s%.1f °C: %.3g",
+                                         used ? " Hz; " : "", degc(set), frequency);
             last = set;
         }
     if (n > 0)
-        say(assessment, "before unclamping, measure again: %s Hz%s", list, used > sizeof list - 40 ? ", and more" : "");
+        say(assessment, "before unclamping, measure again: %s Hz%s", list,
+            used > sizeof list - 40 ? ", and more" : "");
 }
 
-static const char *const rung_phrases[AN_RUNG_COUNT] = {"gain and delay of the channels", "moving mass and shaft",
-                                                        "compliance of frame and transducer",
-                                                        "end, shear and constraint terms"};
+static const char *const rung_phrases[AN_RUNG_COUNT] = {
+    "gain and delay of the channels", "moving mass and shaft", "compliance of frame and transducer",
+    "end, shear and constraint terms"};
 
 static void find_largest_correction(const an_points *points, int n_points, an_assessment *assessment)
 {
@@ -157,8 +158,9 @@ static void find_largest_correction(const an_points *points, int n_points, an_as
         snprintf(assessment->largest_correction, sizeof assessment->largest_correction, "none");
     else
         snprintf(assessment->largest_correction, sizeof assessment->largest_correction,
-                 "%s, %.2g %% of the stiffness at burst %d (%.3g Hz, %.1f °C), K_s C = %.2g", rung_phrases[i_rung],
-                 100 * size, most->burst, most->frequency_Hz, degc(most->temperature_K), most->stiffness_compliance);
+                 "%s, %.2g %% of the stiffness at burst %d (%.3g Hz, %.1f °C), K_s C = %.2g",
+                 rung_phrases[i_rung], 100 * size, most->burst, most->frequency_Hz, degc(most->temperature_K),
+                 most->stiffness_compliance);
 }
 
 static void say_missing(const an_grid *grid, an_assessment *assessment)

@@ -1,8 +1,10 @@
-/* average.c: repeats and replicates of one cell to one value. ln|E*| and delta are averaged, which is ln E* as a complex
- * number, so that a specimen that is 1 % too stiff moves the mean by the same share at every level of modulus; covariances
- * go with it, noise as independent, common as shared wherever the source is the same one.
+/* average.c: repeats and replicates of one cell to one value. ln|E*| and delta are averaged, which is ln E*
+ * as a complex number, so that a specimen that is 1 % too stiff moves the mean by the same share at every
+ * level of modulus; covariances go with it, noise as independent, common as shared wherever the source is the
+ * same one.
  *
- * Each run is averaged first, then the runs, so that a specimen with more repeats does not outweigh the others.
+ * Each run is averaged first, then the runs, so that a specimen with more repeats does not outweigh the
+ * others.
  */
 #include "reduce/grid/average.h"
 
@@ -47,7 +49,8 @@ static void to_cell(const an_logarithm *logarithm, an_cell *cell)
     }
 }
 
-/* Dimensions belong to the specimen; everything else to the bench or to the material. In bending the span is the fixture's. */
+/* Dimensions belong to the specimen; everything else to the bench or to the material. In bending the span is
+ * the fixture's. */
 static int own_to_specimen(an_source source, an_geometry_kind kind)
 {
     int bends = kind == AN_CANTILEVER_GUIDED || kind == AN_CANTILEVER_FREE || kind == AN_CANTILEVER_DUAL ||

@@ -1,6 +1,6 @@
-/* cell.c: isotherms and cells from the bursts that isotherm.c sorted. A frequency repeated on an isotherm (within half a
- * percent) is one cell; the first of its bursts against the last is the drift check. What was skipped leaves no cell: a
- * missing cell stays missing and is never interpolated.
+/* cell.c: isotherms and cells from the bursts that isotherm.c sorted. A frequency repeated on an isotherm
+ * (within half a percent) is one cell; the first of its bursts against the last is the drift check. What was
+ * skipped leaves no cell: a missing cell stays missing and is never interpolated.
  */
 #include "reduce/grid/average.h"
 
@@ -69,10 +69,11 @@ static an_status check_drift(const an_member *member, int n, double limit, an_ce
         double u = 0, drift = m > 1 ? drift_of(&member[i], &member[i + m - 1], &u) : 0;
         if (fabs(expm1(drift)) - 2 * u <= limit)
             continue;
-        AN_TRY(an_remark_list_add(&cell->remarks, "drift", member[i + m - 1].point->burst, err,
-                                  "at %.4g Hz and %.2f K burst %d reads %+.1f %% against burst %d; up to %.3g %% is allowed",
-                                  cell->frequency_Hz, cell->temperature_K, member[i + m - 1].point->burst,
-                                  100 * expm1(drift), member[i].point->burst, 100 * limit));
+        AN_TRY(an_remark_list_add(
+            &cell->remarks, "drift-check", member[i + m - 1].point->burst, err,
+            "at %.4g Hz and %.2f K burst %d reads %+.1f %% against burst %d; up to %.3g %% is allowed",
+            cell->frequency_Hz, cell->temperature_K, member[i + m - 1].point->burst, 100 * expm1(drift),
+            member[i].point->burst, 100 * limit));
     }
     return AN_OK;
 }
@@ -97,10 +98,12 @@ static an_status fill_cell(an_member *member, int n, making *how, an_cell *cell,
     return check_drift(member, n, how->drift_limit, cell, err);
 }
 
-/* The mean temperature of an isotherm, its uncertainty (of noise, or of the scatter where that is more) and its spread. */
+/* The mean temperature of an isotherm, its uncertainty (of noise, or of the scatter where that is more) and
+ * its spread. */
 static void fill_isotherm(const an_member *member, int n, an_isotherm *isotherm)
 {
-    double least = INFINITY, most = -INFINITY, sum = 0, noise = 0, square = 0, set = member->point->set_temperature_K;
+    double least = INFINITY, most = -INFINITY, sum = 0, noise = 0, square = 0,
+           set = member->point->set_temperature_K;
     for (int i = 0; i < n; i++) {
         const an_point *point = member[i].point;
         least = fmin(least, point->temperature_K);
@@ -181,7 +184,8 @@ static an_status allocate(const an_gathering *gathering, an_grid *grid, an_error
     return AN_OK;
 }
 
-an_status an_cells_make(const an_gathering *gathering, const an_cell_rules *rules, an_grid *grid, an_error *err)
+an_status an_cells_make(const an_gathering *gathering, const an_cell_rules *rules, an_grid *grid,
+                        an_error *err)
 {
     making how = {.drift_limit = rules->drift_limit, .sharing = rules->sharing};
     AN_TRY(allocate(gathering, grid, err));

@@ -1,14 +1,16 @@
-/* glass.c: one glass-transition reading from one quantity over temperature, after ASTM E1640 (storage onset) and ISO 6721-11
- * (peaks). Isotherms stand some kelvin apart, so the curve between them is a local polynomial:
+/* glass.c: one glass-transition reading from one quantity over temperature, after ASTM E1640 (storage onset)
+ * and ISO 6721-11 (peaks). Isotherms stand some kelvin apart, so the curve between them is a local
+ * polynomial:
  *
- * - Peak: fourth degree through the five temperatures around the greatest value, by least squares over more of them where a
- *   ramp has more. A parabola through the same five reads skewed peaks up to 1.5 K too high, the fourth degree a
- *   quarter of that (made materials with 5 K between isotherms).
- * - Storage onset: the line through the glass, a median of slopes well below the transition, meets the tangent at the steepest
- *   fall of log10 E', taken from the same kind of local polynomial.
+ * - Peak: fourth degree through the five temperatures around the greatest value, by least squares over more
+ * of them where a ramp has more. A parabola through the same five reads skewed peaks up to 1.5 K too high,
+ * the fourth degree a quarter of that (made materials with 5 K between isotherms).
+ * - Storage onset: the line through the glass, a median of slopes well below the transition, meets the
+ * tangent at the steepest fall of log10 E', taken from the same kind of local polynomial.
  *
- * The noise part of a reading is what the noise of each value does to it. The part from the curve between the isotherms is
- * the difference to the polynomial one degree lower, taken as the half width of a rectangular distribution.
+ * The noise part of a reading is what the noise of each value does to it. The part from the curve between the
+ * isotherms is the difference to the polynomial one degree lower, taken as the half width of a rectangular
+ * distribution.
  */
 #include "reduce/grid/parts.h"
 
@@ -54,14 +56,16 @@ static int fit(const an_series *series, int first, int n, int degree, polynomial
 {
     const double *t = series->temperature_K + first;
     size_t n_row = (size_t)n, n_column = (size_t)degree + 1;
-    gsl_matrix *matrix = gsl_matrix_alloc(n_row, n_column), *covariance = gsl_matrix_alloc(n_column, n_column);
+    gsl_matrix *matrix = gsl_matrix_alloc(n_row, n_column),
+               *covariance = gsl_matrix_alloc(n_column, n_column);
     gsl_vector *value = gsl_vector_alloc(n_row), *solution = gsl_vector_alloc(n_column);
     gsl_multifit_linear_workspace *workspace = gsl_multifit_linear_alloc(n_row, n_column);
     int good = 0;
     double chi_square;
     if (!matrix || !covariance || !value || !solution || !workspace)
         goto cleanup;
-    *curve = (polynomial){.degree = degree, .centre_K = (t[0] + t[n - 1]) / 2, .scale_K = (t[n - 1] - t[0]) / 2};
+    *curve =
+        (polynomial){.degree = degree, .centre_K = (t[0] + t[n - 1]) / 2, .scale_K = (t[n - 1] - t[0]) / 2};
     for (size_t i = 0; i < n_row; i++) {
         double x = (t[i] - curve->centre_K) / curve->scale_K, power = 1;
         for (size_t k = 0; k < n_column; k++, power *= x)
@@ -80,7 +84,8 @@ cleanup:
     return good;
 }
 
-/* Where a derivative of the curve is greatest (sign > 0) or least between two temperatures: by steps, then by halving. */
+/* Where a derivative of the curve is greatest (sign > 0) or least between two temperatures: by steps, then by
+ * halving. */
 static double extreme(const polynomial *curve, int derivative, double sign, double from_K, double to_K)
 {
     enum { STEPS = 200 };
@@ -103,9 +108,9 @@ static double extreme(const polynomial *curve, int derivative, double sign, doub
 
 /* What a reading is taken from, found once and kept while values are disturbed. */
 typedef struct place {
-    int first, n;           /* window of the polynomial */
-    int n_glass;            /* the coldest ones, in the glass line; 0: a peak */
-    double from_K, to_K;    /* [K] where to look */
+    int first, n;        /* window of the polynomial */
+    int n_glass;         /* the coldest ones, in the glass line; 0: a peak */
+    double from_K, to_K; /* [K] where to look */
 } place;
 
 /* A window of five about an index, inside the series. */
@@ -129,7 +134,8 @@ static double median(double *value, int n)
     return n % 2 ? value[n / 2] : (value[n / 2 - 1] + value[n / 2]) / 2;
 }
 
-/* The glass line: the median of the slopes between all pairs of at most 20 values, and the median of what is left. */
+/* The glass line: the median of the slopes between all pairs of at most 20 values, and the median of what is
+ * left. */
 static void glass_line(const an_series *series, int n_glass, double *slope, double *level)
 {
     enum { MOST = 20 };
@@ -137,8 +143,8 @@ static void glass_line(const an_series *series, int n_glass, double *slope, doub
     int step = (n_glass + MOST - 1) / MOST, n = 0, n_rest = 0;
     for (int i = 0; i < n_glass; i += step)
         for (int k = i + step; k < n_glass; k += step)
-            slopes[n++] = (series->value[k] - series->value[i]) /
-                          (series->temperature_K[k] - series->temperature_K[i]);
+            slopes[n++] =
+                (series->value[k] - series->value[i]) / (series->temperature_K[k] - series->temperature_K[i]);
     *slope = median(slopes, n);
     for (int i = 0; i < n_glass; i += step)
         rest[n_rest++] = series->value[i] - *slope * series->temperature_K[i];
@@ -153,7 +159,8 @@ static double read_at(const an_series *series, const place *where, int degree)
         return NAN;
     if (where->n_glass == 0)
         return extreme(&curve, 0, 1, where->from_K, where->to_K);
-    double steepest = extreme(&curve, 1, -1, where->from_K, where->to_K), fall = evaluate(&curve, steepest, 1);
+    double steepest = extreme(&curve, 1, -1, where->from_K, where->to_K),
+           fall = evaluate(&curve, steepest, 1);
     glass_line(series, where->n_glass, &slope, &level);
     return (evaluate(&curve, steepest, 0) - fall * steepest - level) / (slope - fall);
 }
@@ -192,8 +199,8 @@ static int too_few(const an_series *series, an_reading *reading)
     if (series->n >= WINDOW_LEAST)
         return 0;
     refuse(reading, "");
-    snprintf(reading->reason, sizeof reading->reason, "%d temperatures at this frequency, at least %d are needed",
-             series->n, WINDOW_LEAST);
+    snprintf(reading->reason, sizeof reading->reason,
+             "%d temperatures at this frequency, at least %d are needed", series->n, WINDOW_LEAST);
     return 1;
 }
 
@@ -206,8 +213,8 @@ static int greatest(const an_series *series)
     return at;
 }
 
-/* Whether a second maximum stands beside the greatest, with too shallow a valley between the two. A rise has to stand out
- * of the noise and of 2 % to be a peak. */
+/* Whether a second maximum stands beside the greatest, with too shallow a valley between the two. A rise has
+ * to stand out of the noise and of 2 % to be a peak. */
 static int overlaps(const an_series *series, int at)
 {
     for (int i = 1; i + 1 < series->n; i++) {
@@ -244,16 +251,28 @@ static void look_about(const an_series *series, int before, int after, place *wh
     where->to_K = series->temperature_K[wide ? where->first + where->n - 1 : after];
 }
 
+/* Whether the curve has come down again on one side, by more than noise and 1 %: a peak whose one side is not
+ * seen may lie anywhere beyond. */
+static int comes_down(const an_series *series, int at, int side)
+{
+    for (int i = at + side; i >= 0 && i < series->n; i += side)
+        if (series->value[at] - series->value[i] > fmax(3 * hypot(series->u[at], series->u[i]), log10(1.01)))
+            return 1;
+    return 0;
+}
+
 void an_glass_peak(const an_series *series, an_reading *reading)
 {
     if (too_few(series, reading))
         return;
     int at = greatest(series);
     place where = {0};
-    if (at == 0)
-        refuse(reading, "greatest at the coldest temperature: the peak lies below the range");
-    else if (at == series->n - 1)
-        refuse(reading, "greatest at the hottest temperature: the peak lies above the range");
+    if (!comes_down(series, at, -1))
+        refuse(reading,
+               "greatest at the coldest temperatures: the peak lies at the edge of the range or below it");
+    else if (!comes_down(series, at, 1))
+        refuse(reading,
+               "greatest at the hottest temperatures: the peak lies at the edge of the range or above it");
     else if (overlaps(series, at))
         refuse(reading, "two peaks overlap");
     if (reading->reason[0])
@@ -266,10 +285,12 @@ void an_glass_peak(const an_series *series, an_reading *reading)
 
 static double slope_at(const an_series *series, int i)
 {
-    return (series->value[i + 1] - series->value[i]) / (series->temperature_K[i + 1] - series->temperature_K[i]);
+    return (series->value[i + 1] - series->value[i]) /
+           (series->temperature_K[i + 1] - series->temperature_K[i]);
 }
 
-/* How many of the coldest temperatures are glass: slopes well below the steepest, the last one before the fall left out. */
+/* How many of the coldest temperatures are glass: slopes well below the steepest, the last one before the
+ * fall left out. */
 static int count_glass(const an_series *series, double steepest)
 {
     int n = 0;

@@ -46,10 +46,12 @@ void an_grid_clear(an_grid *grid)
 
 static an_cell_rules rules_for(const an_points *points, int n_points, const an_procedure *procedure)
 {
-    an_cell_rules rules = {an_procedure_number(procedure, "drift_limit"), n_points, {0, 0, points->specimen.geometry.kind}};
+    an_cell_rules rules = {
+        an_procedure_number(procedure, "repeat_flag"), n_points, {0, 0, points->specimen.geometry.kind}};
     for (int i = 1; i < n_points; i++) {
         const an_points *run = &points[i];
-        rules.sharing.specimens_differ |= points->specimen.id[0] == 0 || strcmp(run->specimen.id, points->specimen.id) != 0;
+        rules.sharing.specimens_differ |=
+            points->specimen.id[0] == 0 || strcmp(run->specimen.id, points->specimen.id) != 0;
         rules.sharing.benches_differ |= strcmp(run->apparatus.id, points->apparatus.id) != 0;
     }
     return rules;
@@ -66,8 +68,8 @@ static an_status carry_head(const an_points *points, int n_points, an_grid *grid
     for (int i = 0; i < n_points; i++)
         for (size_t k = 0; k < points[i].remarks.n; k++) {
             const an_remark *remark = &points[i].remarks.rows[k];
-            AN_TRY(an_remark_list_add_as(&grid->remarks, remark->kind->code, remark->severity, remark->burst, err, "%s",
-                                         remark->text));
+            AN_TRY(an_remark_list_add_as(&grid->remarks, remark->kind->code, remark->severity, remark->burst,
+                                         err, "%s", remark->text));
         }
     return AN_OK;
 }
@@ -80,15 +82,16 @@ static an_status remark_motion(double rate_limit_K_s, an_grid *grid, an_error *e
         an_plateau motion = {.rate_K_s = isotherm->rate_K_s, .u_rate_K_s = isotherm->u_rate_K_s};
         isotherm->steady = !an_plateau_moving(&motion, rate_limit_K_s);
         if (!isotherm->steady)
-            AN_TRY(an_remark_list_add(&grid->remarks, "not-steady", 0, err,
-                                      "the isotherm at %.2f K moves by %+.2f K/min; up to %.2g K/min is steady",
-                                      isotherm->temperature_K, 60 * isotherm->rate_K_s, 60 * rate_limit_K_s));
+            AN_TRY(
+                an_remark_list_add(&grid->remarks, "temperature-unsteady", 0, err,
+                                   "the isotherm at %.2f K moves by %+.2f K/min; up to %.2g K/min is steady",
+                                   isotherm->temperature_K, 60 * isotherm->rate_K_s, 60 * rate_limit_K_s));
     }
     if (grid->n_ramp > 0)
-        AN_TRY(an_remark_list_add(&grid->remarks, "ramp", 0, err,
-                                  "%d bursts from %.2f to %.2f K were taken while the temperature was passing through",
-                                  grid->n_ramp, grid->ramp[0].temperature_K,
-                                  grid->ramp[grid->n_ramp - 1].temperature_K));
+        AN_TRY(an_remark_list_add(
+            &grid->remarks, "temperature-ramp", 0, err,
+            "%d bursts from %.2f to %.2f K were taken while the temperature was passing through",
+            grid->n_ramp, grid->ramp[0].temperature_K, grid->ramp[grid->n_ramp - 1].temperature_K));
     return AN_OK;
 }
 
@@ -96,10 +99,10 @@ static an_status sort_in(const an_points *points, int n_points, const an_procedu
                          an_error *err)
 {
     an_gathering gathering;
-    double rate_limit = an_procedure_number(procedure, "steady_rate");
+    double rate_limit = an_procedure_number(procedure, "isotherm_drift");
     an_cell_rules rules = rules_for(points, n_points, procedure);
-    AN_TRY(an_gathering_make(points, n_points, an_procedure_number(procedure, "isotherm_width"), rate_limit, &gathering,
-                             err));
+    AN_TRY(an_gathering_make(points, n_points, an_procedure_number(procedure, "isotherm_width"), rate_limit,
+                             &gathering, err));
     an_status status = an_cells_make(&gathering, &rules, grid, err);
     an_gathering_clear(&gathering);
     AN_TRY(status);
@@ -107,7 +110,8 @@ static an_status sort_in(const an_points *points, int n_points, const an_procedu
     return an_outliers_mark(grid, err);
 }
 
-an_status an_grid_make(const an_points *points, int n_points, const an_procedure *procedure, an_grid *grid, an_error *err)
+an_status an_grid_make(const an_points *points, int n_points, const an_procedure *procedure, an_grid *grid,
+                       an_error *err)
 {
     if (n_points < 1)
         return an_fail(err, AN_E_USAGE, NULL, "a grid of no points document");

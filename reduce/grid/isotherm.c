@@ -1,13 +1,14 @@
 /* isotherm.c: bursts to isotherms by the temperature that was measured, not by the one that was set.
  *
- * In time, bursts that follow one another within the isotherm width of their common mean make a plateau. A plateau whose
- * temperature moves, and whose neighbours lie where that movement leads, is a piece of a ramp and joins no isotherm. What is
- * left is joined by temperature, closest first, for as long as every burst stays within the width of the joint mean: complete
- * linkage, so that no chain of small differences can join what lies apart. Heating and cooling are kept apart: the
- * glassy state depends on its history.
+ * In time, bursts that follow one another within the isotherm width of their common mean make a plateau. A
+ * plateau whose temperature moves, and whose neighbours lie where that movement leads, is a piece of a ramp
+ * and joins no isotherm. What is left is joined by temperature, closest first, for as long as every burst
+ * stays within the width of the joint mean: complete linkage, so that no chain of small differences can join
+ * what lies apart. Heating and cooling are kept apart: the glassy state depends on its history.
  *
- * A rate is judged with its uncertainty. A short burst cannot tell 0.1 K/min from nothing; its own slope over N samples of
- * noise s and length t has the standard uncertainty s sqrt(12 / N) / t, which is sqrt(12) / t times that of its mean.
+ * A rate is judged with its uncertainty. A short burst cannot tell 0.1 K/min from nothing; its own slope over
+ * N samples of noise s and length t has the standard uncertainty s sqrt(12 / N) / t, which is sqrt(12) / t
+ * times that of its mean.
  */
 #include "reduce/grid/parts.h"
 
@@ -17,7 +18,8 @@
 /* A rate above the limit is noise until it stands out by this many standard uncertainties. */
 static const double rate_significance = 3;
 
-/* Two bursts follow one another on a ramp where the next lies where the rate leads, within this share of the way. */
+/* Two bursts follow one another on a ramp where the next lies where the rate leads, within this share of the
+ * way. */
 static const double ramp_share = 0.35;
 
 static double burst_length(const an_point *point)
@@ -31,7 +33,8 @@ static int has_modulus(const an_point *point)
            isfinite(point->temperature_K) && point->frequency_Hz > 0 && point->storage_Pa > 0;
 }
 
-/* Times count only where every burst of the run starts after the one before: some dumps begin each burst at zero. */
+/* Times count only where every burst of the run starts after the one before: some dumps begin each burst at
+ * zero. */
 static int times_follow(const an_points *run)
 {
     for (int i = 1; i < run->n_point; i++)
@@ -82,7 +85,8 @@ static void cut_plateaus(an_gathering *gathering, double width_K)
     }
 }
 
-/* The slope of temperature from burst to burst, and its uncertainty: of the noise, or of the scatter where that is more. */
+/* The slope of temperature from burst to burst, and its uncertainty: of the noise, or of the scatter where
+ * that is more. */
 static int slope_between(const an_member *member, int n, double *rate, double *u)
 {
     if (n < 2 || !isfinite(member->middle_s))
@@ -107,7 +111,8 @@ static int slope_between(const an_member *member, int n, double *rate, double *u
     return isfinite(*u) && *u > 0;
 }
 
-/* The rate of a plateau: the bursts' own slopes and the slope between them, weighted by their uncertainties. */
+/* The rate of a plateau: the bursts' own slopes and the slope between them, weighted by their uncertainties.
+ */
 static void find_rate(const an_gathering *gathering, an_plateau *plateau)
 {
     const an_member *member = &gathering->member[plateau->first];
@@ -135,7 +140,8 @@ int an_plateau_moving(const an_plateau *plateau, double rate_K_s)
 }
 
 /* Whether the neighbour in time lies where the plateau's movement leads (or comes from). */
-static int leads_to(const an_gathering *gathering, const an_plateau *from, const an_plateau *to, double width_K)
+static int leads_to(const an_gathering *gathering, const an_plateau *from, const an_plateau *to,
+                    double width_K)
 {
     int forward = to > from;
     const an_plateau *early = forward ? from : to, *late = forward ? to : from;
@@ -164,8 +170,9 @@ static void find_ramps(an_gathering *gathering, double width_K, double rate_K_s)
     }
 }
 
-/* Reached from above is cooling. The first plateau takes the direction of what follows; so does a return to the start, a
- * step down larger than twice the step that follows it, which opens a new sweep and is no slow cooling. */
+/* Reached from above is cooling. The first plateau takes the direction of what follows; so does a return to
+ * the start, a step down larger than twice the step that follows it, which opens a new sweep and is no slow
+ * cooling. */
 static void find_directions(an_gathering *gathering)
 {
     an_plateau *plateau = gathering->plateau;
@@ -213,7 +220,8 @@ static int join_groups(group *groups, int n, int *next, double width_K)
         int best = -1;
         double least = INFINITY;
         for (int i = 0; i + 1 < n; i++) {
-            double apart = groups[i + 1].sum_K / groups[i + 1].n_member - groups[i].sum_K / groups[i].n_member;
+            double apart =
+                groups[i + 1].sum_K / groups[i + 1].n_member - groups[i].sum_K / groups[i].n_member;
             if (apart < least && may_join(&groups[i], &groups[i + 1], width_K)) {
                 least = apart;
                 best = i;
@@ -223,8 +231,12 @@ static int join_groups(group *groups, int n, int *next, double width_K)
             return n;
         group *cold = &groups[best], *warm = &groups[best + 1];
         next[cold->last] = warm->plateau;
-        *cold = (group){fmin(cold->least_K, warm->least_K), fmax(cold->most_K, warm->most_K),
-                        cold->sum_K + warm->sum_K, cold->n_member + warm->n_member, cold->cooling, cold->plateau,
+        *cold = (group){fmin(cold->least_K, warm->least_K),
+                        fmax(cold->most_K, warm->most_K),
+                        cold->sum_K + warm->sum_K,
+                        cold->n_member + warm->n_member,
+                        cold->cooling,
+                        cold->plateau,
                         warm->last};
         for (int i = best + 1; i + 1 < n; i++)
             groups[i] = groups[i + 1];
@@ -245,7 +257,8 @@ static group group_of(const an_gathering *gathering, int i_plateau)
     return made;
 }
 
-/* By temperature over all; an isotherm of heating stands before one of cooling where directions share the grid. */
+/* By temperature over all; an isotherm of heating stands before one of cooling where directions share the
+ * grid. */
 static void number_isotherms(an_gathering *gathering, const group *groups, int n, const int *next)
 {
     for (int i = 0; i < n; i++)

@@ -1,22 +1,26 @@
-/* outlier.c: cells that do not lie on the smooth curve of their isotherm are marked, and stay in the document.
+/* outlier.c: cells that do not lie on the smooth curve of their isotherm are marked, and stay in the
+ * document.
  *
- * Relaxation is smooth in log frequency: one Maxwell element already spreads its loss over more than a decade [FE80]. So
- * ln|E*| and delta of a cell follow from its neighbours on the isotherm, two on each side, by cubic interpolation (quadratic
- * next to the edges). The miss is held against what can explain it: the noise of the cell and of its neighbours, a floor, and
- * a share of what separates the interpolation from a straight line, since where the curve bends interpolation is less
- * sure. The worst cell is marked first and the rest is judged again without it, so that it does not drag its neighbours along.
- * An isotherm of which more than a quarter would be marked is left alone: that is not an outlier but another material.
+ * Relaxation is smooth in log frequency: one Maxwell element already spreads its loss over more than a decade
+ * [FE80]. So ln|E*| and delta of a cell follow from its neighbours on the isotherm, two on each side, by
+ * cubic interpolation (quadratic next to the edges). The miss is held against what can explain it: the noise
+ * of the cell and of its neighbours, a floor, and a share of what separates the interpolation from a straight
+ * line, since where the curve bends interpolation is less sure. The worst cell is marked first and the rest
+ * is judged again without it, so that it does not drag its neighbours along. An isotherm of which more than a
+ * quarter would be marked is left alone: that is not an outlier but another material.
  */
 #include "reduce/grid/parts.h"
 
 #include <math.h>
 #include <stdlib.h>
 
-/* Smoothness better than this is not asked for: 0.2 % in |E*| and 2 mrad in delta, near what set-up and control of a
- * bench leave from burst to burst (common practice: isotherms repeat to a few tenths of a percent). */
+/* Smoothness better than this is not asked for: 0.2 % in |E*| and 2 mrad in delta, near what set-up and
+ * control of a bench leave from burst to burst (common practice: isotherms repeat to a few tenths of a
+ * percent). */
 static const double floor_modulus = 0.002, floor_delta_rad = 0.002;
 
-/* Share of the difference between the interpolation and the straight line that may be wrong in the interpolation. */
+/* Share of the difference between the interpolation and the straight line that may be wrong in the
+ * interpolation. */
 static const double bend_share = 0.3;
 
 /* Marked beyond this many of its explained deviations. */
@@ -31,8 +35,10 @@ typedef struct judged {
     an_cell *cell;       /* [n] */
 } judged;
 
-/* Interpolation at x by Lagrange through n neighbours; the sum of its squared weights times their variances beside it. */
-static double interpolate(const judged *curve, int i_quantity, const int *neighbour, int n, double x, double *variance)
+/* Interpolation at x by Lagrange through n neighbours; the sum of its squared weights times their variances
+ * beside it. */
+static double interpolate(const judged *curve, int i_quantity, const int *neighbour, int n, double x,
+                          double *variance)
 {
     double sum = 0;
     *variance = 0;
@@ -47,7 +53,8 @@ static double interpolate(const judged *curve, int i_quantity, const int *neighb
     return sum;
 }
 
-/* Unmarked neighbours, nearest first on each side; the inner pair first. Returns how many: 4 inside, 3 next to an edge. */
+/* Unmarked neighbours, nearest first on each side; the inner pair first. Returns how many: 4 inside, 3 next
+ * to an edge. */
 static int find_neighbours(const judged *curve, int at, int *neighbour)
 {
     int below[3], above[3], n_below = 0, n_above = 0, n = 0;
@@ -109,9 +116,10 @@ static an_status mark(an_cell *cell, int i_quantity, double by, an_error *err)
         return an_remark_list_add(&cell->remarks, "outlier", cell->burst, err,
                                   "at %.4g Hz and %.2f K |E*| lies %+.1f %% off the curve of its isotherm",
                                   cell->frequency_Hz, cell->temperature_K, 100 * expm1(by));
-    return an_remark_list_add(&cell->remarks, "outlier", cell->burst, err,
-                              "at %.4g Hz and %.2f K the phase lies %+.2f degrees off the curve of its isotherm",
-                              cell->frequency_Hz, cell->temperature_K, by * 180 / M_PI);
+    return an_remark_list_add(
+        &cell->remarks, "outlier", cell->burst, err,
+        "at %.4g Hz and %.2f K the phase lies %+.2f degrees off the curve of its isotherm",
+        cell->frequency_Hz, cell->temperature_K, by * 180 / M_PI);
 }
 
 static void judge_cell(judged *curve, int i, const an_cell *cell)
@@ -135,7 +143,8 @@ static an_status judge_isotherm(judged *curve, an_cell *cell, int n, an_error *e
     curve->cell = cell;
     for (int i = 0; i < n; i++)
         judge_cell(curve, i, &cell[i]);
-    for (int worst; n_marked < 64 && (worst = find_worst(curve, &i_quantity[n_marked], &by[n_marked])) >= 0;) {
+    for (int worst;
+         n_marked < 64 && (worst = find_worst(curve, &i_quantity[n_marked], &by[n_marked])) >= 0;) {
         marked[n_marked++] = worst;
         cell[worst].outlier = 1;
     }
@@ -161,7 +170,8 @@ an_status an_outliers_mark(an_grid *grid, an_error *err)
         curve.variance[k] = room + (3 + k) * grid->n_cell;
     }
     for (int i = 0; i < grid->n_isotherm && status >= 0; i++)
-        status = judge_isotherm(&curve, grid->cell + grid->isotherm[i].first_cell, grid->isotherm[i].n_cell, err);
+        status =
+            judge_isotherm(&curve, grid->cell + grid->isotherm[i].first_cell, grid->isotherm[i].n_cell, err);
     free(room);
     return status;
 }

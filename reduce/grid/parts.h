@@ -1,5 +1,5 @@
-/* parts.h: what the files of reduce/grid share, and nobody else needs: bursts on their way to isotherms, and series over
- * temperature on their way to glass-transition readings.
+/* parts.h: what the files of reduce/grid share, and nobody else needs: bursts on their way to isotherms, and
+ * series over temperature on their way to glass-transition readings.
  */
 #ifndef ANELAST_GRID_PARTS_H
 #define ANELAST_GRID_PARTS_H
@@ -11,9 +11,9 @@
 typedef struct an_member {
     const an_point *point; /* in its points document */
     int i_run;             /* which points document */
-    double middle_s;       /* [s] middle of the burst since its run's start; NAN: times do not follow one another */
-    double u_rate_K_s;     /* [K/s] noise part of the burst's own rate; NAN: no rate */
-    int isotherm;          /* index after gathering; -1: on a ramp */
+    double middle_s; /* [s] middle of the burst since its run's start; NAN: times do not follow one another */
+    double u_rate_K_s; /* [K/s] noise part of the burst's own rate; NAN: no rate */
+    int isotherm;      /* index after gathering; -1: on a ramp */
 } an_member;
 
 /* Bursts that follow one another at one temperature. */
@@ -38,9 +38,9 @@ typedef struct an_gathering {
 } an_gathering;
 
 /* an_gathering_make: sort the bursts of all documents into plateaus, ramps and isotherms.
- *   points [in] [n_points]; width_K [in, K] greatest distance of a burst from its isotherm's mean; rate_K_s [in, K/s]
- *   greatest rate of a steady plateau; gathering [out] clear with an_gathering_clear
- * Returns AN_OK or AN_E_MEMORY. */
+ *   points [in] [n_points]; width_K [in, K] greatest distance of a burst from its isotherm's mean; rate_K_s
+ * [in, K/s] greatest rate of a steady plateau; gathering [out] clear with an_gathering_clear Returns AN_OK or
+ * AN_E_MEMORY. */
 an_status an_gathering_make(const an_points *points, int n_points, double width_K, double rate_K_s,
                             an_gathering *gathering, an_error *err);
 void an_gathering_clear(an_gathering *gathering);
@@ -61,9 +61,10 @@ typedef struct an_cell_rules {
     an_sharing sharing;
 } an_cell_rules;
 
-/* an_cells_make: isotherms, cells and ramp of a grid from what was gathered; repeats averaged and compared, scatter.
- * Returns AN_OK or AN_E_MEMORY. */
-an_status an_cells_make(const an_gathering *gathering, const an_cell_rules *rules, an_grid *grid, an_error *err);
+/* an_cells_make: isotherms, cells and ramp of a grid from what was gathered; repeats averaged and compared,
+ * scatter. Returns AN_OK or AN_E_MEMORY. */
+an_status an_cells_make(const an_gathering *gathering, const an_cell_rules *rules, an_grid *grid,
+                        an_error *err);
 
 /* an_outliers_mark: mark the cells that do not lie on the smooth curve of their isotherm, with a remark each.
  * Returns AN_OK or AN_E_MEMORY. */
@@ -85,7 +86,8 @@ typedef struct an_series {
 } an_series;
 
 /* an_glass_peak / an_glass_onset: read the temperature of the greatest value, or of the storage onset.
- *   series [in]; reading [in, out] temperature and its uncertainties, or the reason of a refusal, are filled in. */
+ *   series [in]; reading [in, out] temperature and its uncertainties, or the reason of a refusal, are filled
+ * in. */
 void an_glass_peak(const an_series *series, an_reading *reading);
 void an_glass_onset(const an_series *series, an_reading *reading);
 

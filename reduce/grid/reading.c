@@ -1,12 +1,14 @@
-/* reading.c: glass-transition readings of a grid: storage onset, loss peak and loss factor peak at every frequency, on heating;
- * on cooling where nothing was heated; and from a ramp where there is one. Marked cells are left out.
+/* reading.c: glass-transition readings of a grid: storage onset, loss peak and loss factor peak at every
+ * frequency, on heating; on cooling where nothing was heated; and from a ramp where there is one. Marked
+ * cells are left out.
  */
 #include "reduce/grid/parts.h"
 
 #include <math.h>
 #include <stdlib.h>
 
-/* Frequencies of one column of the grid: what is set once is found alike on every isotherm, to 1 % (common practice). */
+/* Frequencies of one column of the grid: what is set once is found alike on every isotherm, to 1 % (common
+ * practice). */
 static const double same_column = 0.01;
 
 static int by_frequency(const void *a, const void *b)
@@ -29,7 +31,8 @@ static int by_temperature(const void *a, const void *b)
 static double quantity_of(const an_cell *cell, an_reading_kind kind, double *u)
 {
     double storage = cell->storage_Pa, loss = cell->loss_Pa;
-    double relative_storage = cell->noise[0] / storage / storage, relative_loss = cell->noise[2] / loss / loss;
+    double relative_storage = cell->noise[0] / storage / storage,
+           relative_loss = cell->noise[2] / loss / loss;
     double both = cell->noise[1] / storage / loss, variance = relative_storage;
     double value = log10(storage);
     if (kind == AN_READING_LOSS_PEAK) {
@@ -59,14 +62,16 @@ static void fill_series(an_cell *const *cell, int n, an_reading_kind kind, an_se
 }
 
 /* The readings of one column. */
-static void read_column(an_cell *const *cell, int n, int on_ramp, double u_bias_K, an_series *series, an_grid *grid)
+static void read_column(an_cell *const *cell, int n, int on_ramp, double u_bias_K, an_series *series,
+                        an_grid *grid)
 {
     double log_frequency = 0;
     for (int i = 0; i < n; i++)
         log_frequency += log(cell[i]->frequency_Hz) / n;
     for (int kind = AN_READING_STORAGE_ONSET; kind <= AN_READING_LOSS_FACTOR_PEAK; kind++) {
         an_reading *reading = &grid->reading[grid->n_reading++];
-        *reading = (an_reading){.kind = (an_reading_kind)kind, .frequency_Hz = exp(log_frequency), .on_ramp = on_ramp};
+        *reading = (an_reading){
+            .kind = (an_reading_kind)kind, .frequency_Hz = exp(log_frequency), .on_ramp = on_ramp};
         fill_series(cell, n, reading->kind, series);
         if (reading->kind == AN_READING_STORAGE_ONSET)
             an_glass_onset(series, reading);
