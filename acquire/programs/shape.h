@@ -65,7 +65,7 @@ typedef struct an_program {
 /* One option as it was given. */
 typedef struct an_given {
     const char *name;  /* long name */
-    const char *value; /* NULL for a switch */
+    const char *value; /* "" for a switch */
 } an_given;
 
 /* What the command line said. */

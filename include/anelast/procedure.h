@@ -16,7 +16,7 @@ enum { AN_CHOICES_MOST = 128 };
 /* One row: a number in a range, one of some words, or either ("auto" or a temperature). */
 typedef struct an_choice {
     const char *name;     /* as in the document: lower case, joined by underscores */
-    const char *unit;     /* SI, UCUM; NULL where only words are allowed */
+    const char *unit;     /* UCUM, as shown to people ("deg", "K/min"); NULL where only words are allowed */
     const char *words;    /* words allowed, separated by blanks; NULL where only numbers are */
     const char *standard; /* the default, a number [unit] or a word */
     double least, most;   /* [unit] range of the number, both included */
@@ -27,7 +27,7 @@ typedef struct an_choice {
 
 /* The value of one choice. */
 typedef struct an_choice_value {
-    double number; /* [unit of the row]; NAN where a word is in force */
+    double number; /* [SI: rad for a row in deg, K/s for one in K/min]; NAN where a word is in force */
     char word[32]; /* "" where a number is in force */
 } an_choice_value;
 
@@ -56,8 +56,9 @@ an_status an_procedure_read(const char *path, an_procedure *procedure, an_error 
 an_status an_procedure_set(an_procedure *procedure, const char *name, const char *text, const char *unit,
                            an_error *err);
 
-/* an_procedure_number: the number in force [unit of the row]; NAN where a word is in force or the name has no
- * row (which the unit tests of each stage exclude). */
+/* an_procedure_number: the number in force, in SI as everything inside: rad where the row says deg, K/s where
+ * it says K/min, 1 where it says %; NAN where a word is in force, or where the name has no row (which the
+ * unit tests of each stage exclude). */
 double an_procedure_number(const an_procedure *procedure, const char *name);
 
 /* an_procedure_word: the word in force; "" where a number is in force or the name has no row. */

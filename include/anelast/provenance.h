@@ -60,7 +60,10 @@ void an_made_clear(an_made *made);
 an_status an_made_add_input(an_made *made, const char *role, const char *path, const char *sha256,
                             an_error *err);
 
-/* an_made_add_number, an_made_add_word: add a choice. Returns AN_OK or AN_E_MEMORY. */
+/* an_made_add_choice: add a choice in force, its value as text; an_made_add_number and an_made_add_word make
+ * that text. unit [in] UCUM; "" for a word Return AN_OK or AN_E_MEMORY. */
+an_status an_made_add_choice(an_made *made, const char *name, const char *value, const char *unit,
+                             an_error *err);
 an_status an_made_add_number(an_made *made, const char *name, double value, const char *unit, an_error *err);
 an_status an_made_add_word(an_made *made, const char *name, const char *word, an_error *err);
 

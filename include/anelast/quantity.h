@@ -20,8 +20,9 @@ typedef struct an_measure {
 /* A measure that holds nothing. */
 #define AN_MEASURE_NONE ((an_measure){.value = (double)__builtin_nan(""), .u = (double)__builtin_nan("")})
 
-/* Exponents of the base dimensions, in this order: length, mass, time, temperature, plane angle, current. */
-enum { AN_N_DIMENSIONS = 6 };
+/* Exponents of the base dimensions, in this order: length, mass, time, temperature, plane angle, current,
+ * level (dB). */
+enum { AN_N_DIMENSIONS = 7 };
 
 /* One row of the unit table. value_SI = value * factor / divisor + offset. Factor and divisor stand apart so
  * that 12.4 mm is 12.4 / 1000 m, rounded once. */
@@ -54,7 +55,8 @@ an_status an_unit_read(const char *text, size_t n, an_conversion *conversion, an
  *   unit       [in]  what stands in the input, zero-terminated
  *   expected   [in]  UCUM code of the SI unit wanted ("Pa", "m/N", "K")
  *   conversion [out] factor, divisor and offset
- * Returns AN_OK, or AN_E_UNIT naming both units and some units that would do. */
+ * Returns AN_OK, AN_E_UNIT naming both units and some units that would do, or AN_E_USAGE where `expected` is
+ * no coherent SI unit ("dB" counts as one). */
 an_status an_unit_convert(const char *unit, const char *expected, an_conversion *conversion, an_error *err);
 
 /* an_unit_si: one value [by conversion] in SI. */
