@@ -7,7 +7,7 @@
 #define ANELAST_MASTER_H
 
 #include "anelast/grid.h"
-#include "anelast/law.h"
+#include "anelast/law_fit.h"
 #include "anelast/maxwell.h"
 
 typedef enum an_simplicity { AN_SIMPLE = 0, AN_DOUBTFUL, AN_COMPLEX } an_simplicity;
@@ -36,18 +36,6 @@ typedef struct an_master_point {
     double residual[2];                  /* [1] (measured - fitted) / u, storage and loss */
     int outlier;                         /* left out of the fit */
 } an_master_point;
-
-/* A law tried. */
-typedef struct an_law_trial {
-    an_law law;
-    double chi_square;   /* with the full covariance of the shifts */
-    int n_constant;
-    double criterion;    /* corrected information criterion, smaller is better */
-    int chosen;
-    char reason[160];    /* why it was refused; "" where it stands */
-} an_law_trial;
-
-enum { AN_LAW_TRIALS = 8 };
 
 typedef struct an_master {
     char id[160];
