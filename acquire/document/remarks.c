@@ -116,6 +116,8 @@ static const an_remark_kind table[] = {
     {"correction-large", AN_FLAG, "<rung> changes the stiffness by <value> %",
      "Check that calibration before all others."},
     /* ---- grid and glass transition ---- */
+    {"temperature-ramp", AN_NOTE, "<n> bursts were taken while the temperature was passing through",
+     "Read the glass transition from them; for a master curve hold each temperature."},
     {"isotherm-wide", AN_FLAG, "temperatures spread over <value> K in one isotherm",
      "Wait longer at each temperature."},
     {"isotherm-short", AN_FLAG, "the isotherm at <value> K holds <n> frequencies",

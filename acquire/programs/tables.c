@@ -1,0 +1,165 @@
+/* tables.c: which tables documents have, as data. Heads are agreed with spreadsheets and scripts outside and
+ * stay.
+ */
+#include "acquire/programs/table.h"
+
+#include <string.h>
+
+#define COLUMNS(columns) columns, sizeof columns / sizeof columns[0]
+
+static const an_column points[] = {
+    {"burst", "@burst", NULL},
+    {"temperature_K", "temperature/@value", "K"},
+    {"frequency_Hz", "frequency/@value", "Hz"},
+    {"storage_Pa", "storage/@value", "Pa"},
+    {"loss_Pa", "loss/@value", "Pa"},
+    {"loss_factor", "loss_factor/@value", "1"},
+    {"u_noise_storage_Pa", "storage/@u_noise", "Pa"},
+    {"u_noise_loss_Pa", "loss/@u_noise", "Pa"},
+    {"u_common_storage_Pa", "storage/@u_common", "Pa"},
+    {"u_common_loss_Pa", "loss/@u_common", "Pa"},
+    {"remarks", "codes()", NULL},
+};
+
+static const an_column cells[] = {
+    {"isotherm", "../@n", NULL},
+    {"burst", "@burst", NULL},
+    {"temperature_K", "temperature/@value", "K"},
+    {"frequency_Hz", "frequency/@value", "Hz"},
+    {"storage_Pa", "storage/@value", "Pa"},
+    {"loss_Pa", "loss/@value", "Pa"},
+    {"loss_factor", "loss_factor/@value", "1"},
+    {"u_noise_storage_Pa", "storage/@u_noise", "Pa"},
+    {"u_noise_loss_Pa", "loss/@u_noise", "Pa"},
+    {"u_common_storage_Pa", "storage/@u_common", "Pa"},
+    {"u_common_loss_Pa", "loss/@u_common", "Pa"},
+    {"remarks", "codes()", NULL},
+};
+
+static const an_column covariance[] = {
+    {"burst", "../@burst", NULL},
+    {"storage_storage_Pa2", "@storage_storage", "Pa2"},
+    {"storage_loss_Pa2", "@storage_loss", "Pa2"},
+    {"loss_loss_Pa2", "@loss_loss", "Pa2"},
+};
+
+static const an_column budget[] = {
+    {"burst", "../@burst", NULL},
+    {"source", "@source", NULL},
+    {"storage_Pa", "@storage", "Pa"},
+    {"loss_Pa", "@loss", "Pa"},
+};
+
+static const an_column isotherms[] = {
+    {"isotherm", "@n", NULL},
+    {"direction", "@direction", NULL},
+    {"steady", "@steady", NULL},
+    {"temperature_K", "temperature/@value", "K"},
+    {"u_temperature_K", "temperature/@u", "K"},
+    {"set_temperature_K", "set_temperature/@value", "K"},
+    {"spread_K", "spread/@value", "K"},
+    {"rate_K_s", "rate/@value", "K/s"},
+    {"u_rate_K_s", "rate/@u", "K/s"},
+};
+
+static const an_column readings[] = {
+    {"kind", "@kind", NULL},
+    {"from", "@from", NULL},
+    {"frequency_Hz", "frequency/@value", "Hz"},
+    {"temperature_K", "temperature/@value", "K"},
+    {"u_noise_K", "temperature/@u_noise", "K"},
+    {"u_form_K", "temperature/@u_form", "K"},
+    {"u_common_K", "temperature/@u_common", "K"},
+    {"refused", "@refused", NULL},
+};
+
+static const an_column reasons[] = {
+    {"verdict", "../@verdict", NULL},
+    {"reason", "text()", NULL},
+};
+
+static const an_column bursts[] = {
+    {"burst", "@n", NULL},
+    {"step", "@step", NULL},
+    {"kind", "@kind", NULL},
+    {"set_temperature_K", "set_temperature/@value", "K"},
+    {"set_frequency_Hz", "set_frequency/@value", "Hz"},
+    {"start_s", "clock/@start", "s"},
+    {"interval_s", "clock/@interval", "s"},
+    {"samples", "clock/@count", NULL},
+    {"remarks", "codes()", NULL},
+};
+
+static const an_column signals[] = {
+    {"burst", "../@n", NULL},    {"quantity", "@quantity", NULL}, {"unit", "@unit", NULL},
+    {"coding", "@coding", NULL}, {"scale", "@scale", NULL},       {"divisor", "@divisor", NULL},
+    {"offset", "@offset", NULL}, {"samples", "@count", NULL},
+};
+
+static const an_column remarks[] = {
+    {"code", "@code", NULL},  {"severity", "@severity", NULL}, {"burst", "@burst", NULL},
+    {"text", "text()", NULL}, {"action", "@action", NULL},
+};
+
+static const an_column inputs[] = {
+    {"role", "@role", NULL},
+    {"path", "@path", NULL},
+    {"sha256", "@sha256", NULL},
+};
+
+static const an_column choices[] = {
+    {"name", "@name", NULL},
+    {"value", "@value", NULL},
+    {"unit", "@unit", NULL},
+};
+
+static const an_column makers[] = {
+    {"by", "@by", NULL},
+    {"version", "@version", NULL},
+    {"sha256", "@sha256", NULL},
+};
+
+static const an_table tables[] = {
+    {"points", "points", "point", "one burst reduced: its complex modulus", COLUMNS(points)},
+    {"points", "covariance", "point/noise", "noise covariance of one burst", COLUMNS(covariance)},
+    {"points", "budget", "point/common", "what one source of common uncertainty does to one burst",
+     COLUMNS(budget)},
+    {"grid", "cells", "isotherm/cell", "one temperature and frequency: the complex modulus", COLUMNS(cells)},
+    {"grid", "isotherms", "isotherm", "one isotherm", COLUMNS(isotherms)},
+    {"grid", "ramp", "ramp/cell", "one burst on a ramp", COLUMNS(points)},
+    {"grid", "readings", "reading", "one glass-transition reading", COLUMNS(readings)},
+    {"grid", "reasons", "assessment/reason", "one reason of the assessment", COLUMNS(reasons)},
+    {"grid", "covariance", "isotherm/cell/noise", "noise covariance of one cell", COLUMNS(covariance)},
+    {"grid", "budget", "isotherm/cell/common", "what one source of common uncertainty does to one cell",
+     COLUMNS(budget)},
+    {"run", "bursts", "burst", "one burst", COLUMNS(bursts)},
+    {"run", "signals", "burst/signal", "one channel of one burst", COLUMNS(signals)},
+    {"procedure", "choices", "choice", "one choice", COLUMNS(choices)},
+    {"", "remarks", "remark */remark */*/remark", "one remark", COLUMNS(remarks)},
+    {"", "inputs", "made/input", "one input", COLUMNS(inputs)},
+    {"", "choices", "made/choice", "one choice in force", COLUMNS(choices)},
+    {"", "makers", "made/chain/maker", "one maker of the documents behind this one, oldest first",
+     COLUMNS(makers)},
+};
+
+const an_table *an_table_row(size_t i_row)
+{
+    return i_row < sizeof tables / sizeof tables[0] ? &tables[i_row] : NULL;
+}
+
+const an_table *an_table_find(const char *root, const char *name)
+{
+    for (size_t i = 0; i < sizeof tables / sizeof tables[0]; i++) {
+        int here = strcmp(tables[i].root, root) == 0 || tables[i].root[0] == '\0';
+        if (here && (!name || strcmp(tables[i].name, name) == 0))
+            return &tables[i];
+    }
+    return NULL;
+}
+
+void an_table_list(const char *root, FILE *out)
+{
+    for (size_t i = 0; i < sizeof tables / sizeof tables[0]; i++)
+        if (an_table_find(root, tables[i].name) == &tables[i])
+            fprintf(out, "%-12s %s\n", tables[i].name, tables[i].help);
+}
