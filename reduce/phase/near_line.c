@@ -1,0 +1,97 @@
+/* Noise near the line: the level that a coloured noise has where it matters, as the white noise of the same density. Stage:
+ * phase. Method: the residual is projected on sines a whole number of bins (1 / window) away from the line, harmonics left
+ * out; each projection's expectation under white noise is computed with what the fit has already taken out of the residual,
+ * so that the level is unbiased for white noise.
+ */
+#include "model.h"
+
+#include <math.h>
+#include <stddef.h>
+
+/* Bins each side, and the band that counts as near, in times the frequency. Common practice: half an octave below to more
+ * than an octave above, wide enough for some 20 degrees of freedom in seven cycles. */
+enum { BINS_EACH_SIDE = 16 };
+static const double BAND_LOW = 0.45, BAND_HIGH = 2.5;
+
+/* Sums of one probing sine against model, slope and residuals. Both its phases, cosine and sine. */
+typedef struct probe {
+    double self[2], column[2][AN_COLUMNS], slope[2][AN_CHANNELS], residual[2][AN_CHANNELS];
+} probe;
+
+static void probe_add(probe *p, const an_model *m, const an_solution *s, double t, const double *row,
+                      const double r[AN_CHANNELS], const double v[2])
+{
+    for (int k = 0; k < 2; k++) {
+        p->self[k] += v[k] * v[k];
+        for (int j = 0; j < m->n_column; j++)
+            p->column[k][j] += v[k] * row[j];
+        for (int c = 0; c < AN_CHANNELS; c++)
+            p->residual[k][c] += v[k] * r[c];
+    }
+    for (int c = 0; c < AN_CHANNELS; c++) {
+        double g = an_model_slope(m, t, row, s->coefficient[c]);
+        p->slope[0][c] += v[0] * g;
+        p->slope[1][c] += v[1] * g;
+    }
+}
+
+static void probe_run(probe *p, const an_model *m, const an_waveform *w, const an_solution *s, const double *residual,
+                      double omega)
+{
+    double row[AN_COLUMNS];
+    *p = (probe){0};
+    for (int i = 0; i < w->n; i++) {
+        if (w->use && !w->use[i])
+            continue;
+        double t = w->time_s[i], phase = omega * (t - m->origin);
+        double r[AN_CHANNELS] = {residual[i], residual[(size_t)w->n + (size_t)i]};
+        an_model_row(m, t, row);
+        probe_add(p, m, s, t, row, r, (double[]){cos(phase), sin(phase)});
+    }
+}
+
+/* Expectation of the squared projection per unit of white variance. */
+static double expectation(const probe *p, int k, int c, const an_model *m, const an_solution *s, double weight)
+{
+    double left = p->self[k], slope = p->slope[k][c];
+    for (int i = 0; i < m->n_column; i++) {
+        double back = 0;
+        for (int j = 0; j < m->n_column; j++)
+            back += s->inverse[i][j] * p->column[k][j];
+        left -= back * p->column[k][i];
+        slope -= back * s->slope_column[c][i];
+    }
+    if (weight > 0 && s->slope_self[c] > 0)
+        left -= weight * slope * slope / s->slope_self[c];
+    return left;
+}
+
+static int bin_free(const an_model *m, int bin)
+{
+    double cycles = m->n_cycle + bin; /* of the probing sine in the window */
+    if (cycles < BAND_LOW * m->n_cycle || cycles > BAND_HIGH * m->n_cycle)
+        return 0;
+    double harmonic = cycles / m->n_cycle, nearest = round(harmonic);
+    return fabs(harmonic - nearest) * m->n_cycle > 0.5;
+}
+
+void an_noise_near_line(const an_model *m, const an_waveform *w, const an_solution *s, const double *residual,
+                        const double weight[AN_CHANNELS], double level[AN_CHANNELS], double *freedom)
+{
+    double power[AN_CHANNELS] = {0}, expected[AN_CHANNELS] = {0};
+    probe p;
+    *freedom = 0;
+    for (int bin = -BINS_EACH_SIDE; bin <= BINS_EACH_SIDE; bin++) {
+        if (!bin_free(m, bin))
+            continue;
+        probe_run(&p, m, w, s, residual, m->omega * (1 + bin / m->n_cycle));
+        for (int c = 0; c < AN_CHANNELS; c++)
+            for (int k = 0; k < 2; k++) {
+                power[c] += p.residual[k][c] * p.residual[k][c];
+                expected[c] += expectation(&p, k, c, m, s, weight[c]);
+            }
+        *freedom += 2;
+    }
+    for (int c = 0; c < AN_CHANNELS; c++)
+        level[c] = expected[c] > 0 ? sqrt(power[c] / expected[c]) : NAN;
+}
