@@ -12,7 +12,7 @@
 #include <complex.h>
 
 enum { AN_DISPLACEMENT = 0, AN_FORCE = 1, AN_CHANNELS = 2 };
-enum { AN_HARMONICS = 9, AN_DRIFT_DEGREES = 4, AN_DECAYS = 2 };
+enum { AN_HARMONICS = 20, AN_DRIFT_DEGREES = 4, AN_DECAYS = 2 };
 
 /* Two channels sampled together. Borrowed arrays. */
 typedef struct an_waveform {
@@ -53,7 +53,7 @@ typedef struct an_sinefit {
     int n_used;                                   /* samples */
 } an_sinefit;
 
-/* an_sinefit_choice_init: quadratic drift, 3 harmonics, 2 decays, frequency free. */
+/* an_sinefit_choice_init: quadratic drift, 5 harmonics, 2 decays, frequency free. */
 void an_sinefit_choice_init(an_sinefit_choice *choice);
 
 /* an_sinefit_run: fit both channels.

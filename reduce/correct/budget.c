@@ -63,7 +63,7 @@ static void factor(const double c[3], double l[3])
 static an_status noise_drawn(const an_chain *chain, double complex measured, const double in[3], double out[3], an_error *err)
 {
     double l[3], sum[2] = {0}, square[3] = {0};
-    double complex centre, e;
+    double complex centre, e = 0;
     AN_TRY(modulus_of(chain, measured, &centre, err));
     gsl_rng *rng = gsl_rng_alloc(gsl_rng_taus2); /* GSL's default seed: the same draws for every burst */
     if (!rng)

@@ -16,7 +16,7 @@ static const double COLOUR_RISK = 0.005;
 
 void an_sinefit_choice_init(an_sinefit_choice *choice)
 {
-    *choice = (an_sinefit_choice){.drift_degree = 2, .n_harmonic = 3, .n_decay = 2};
+    *choice = (an_sinefit_choice){.drift_degree = 2, .n_harmonic = 5, .n_decay = 2};
 }
 
 double complex an_sinefit_line(int n, const double *time_s, const double *y, const unsigned char *use, double frequency_Hz)

@@ -1,0 +1,151 @@
+/* The head of a run on its way into points, and what only all points together can tell: swapped or inverted channels, a wrong
+ * unit, a temperature channel that stands still. Stage: correct. Limits: common practice of the trade.
+ */
+#include "reducer.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <string.h>
+
+/* A temperature that does not move by a bit for so long is no measurement [s]. Common practice: 20 minutes. */
+static const double FROZEN_S = 1200;
+
+/* The shear term that an isotropic beam of Poisson's ratio 0.35 would need, worth a note from 1 %. */
+static an_status note_shear(an_points *points, an_error *err)
+{
+    const an_geometry *g = &points->specimen.geometry;
+    int beam = g->kind == AN_CANTILEVER_GUIDED || g->kind == AN_CANTILEVER_FREE || g->kind == AN_CANTILEVER_DUAL ||
+               g->kind == AN_BENDING_THREE_POINT;
+    double slender = g->length.value / g->thickness.value, term = 2.4 * 1.35 / (slender * slender);
+    if (!beam || !isnan(g->poisson.value) || !isnan(g->modulus_ratio.value) || term < 0.01)
+        return AN_OK;
+    return an_remark_list_add(&points->remarks, "geometry-slender", 0, err,
+                              "length over thickness is %.1f and no E/G or Poisson ratio is given: the result is an apparent "
+                              "flexural modulus, low by %.1f %% where nu is 0.35",
+                              slender, 100 * term);
+}
+
+/* Dates compare as texts of their first ten characters, YYYY-MM-DD. */
+static an_status note_calibration(an_points *points, an_error *err)
+{
+    const char *until = points->apparatus.valid_until, *at = points->specimen.started;
+    if (strlen(until) < 10 || strlen(at) < 10 || strncmp(at, until, 10) <= 0)
+        return AN_OK;
+    return an_remark_list_add(&points->remarks, "calibration-expired", 0, err, "the apparatus' calibration ended on %.10s, the "
+                              "run is of %.10s", until, at);
+}
+
+an_status an_reducer_begin(an_reducer *reducer, const an_run *run, an_points *points, an_error *err)
+{
+    char names[160];
+    snprintf(points->id, sizeof points->id, "%s", run->id);
+    points->specimen = run->specimen;
+    points->apparatus = run->apparatus;
+    for (size_t i = 0; i < run->remarks.n; i++) {
+        const an_remark *row = &run->remarks.rows[i];
+        AN_TRY(an_remark_list_add_as(&points->remarks, row->kind->code, row->severity, row->burst, err, "%s", row->text));
+    }
+    AN_TRY(an_specimen_check(&points->specimen, err));
+    if (an_budget_assume(&points->specimen.geometry, reducer->limits.dimension_u, names, sizeof names))
+        AN_TRY(an_remark_list_add(&points->remarks, "uncertainty-assumed", 0, err,
+                                  "no uncertainty of %s is given; %.2g %% was assumed", names,
+                                  100 * reducer->limits.dimension_u));
+    if (!points->apparatus.n_compliance)
+        AN_TRY(an_remark_list_add(&points->remarks, "apparatus-ideal", 0, err,
+                                  "the frame's compliance is not given; the frame was taken as rigid"));
+    AN_TRY(note_calibration(points, err));
+    return note_shear(points, err);
+}
+
+/* Votes of the bursts on the sign of the phase, after the channel rung: K'' < 0 beyond 3 uncertainties, K' below or above 0. */
+typedef struct votes {
+    int n, inverted, swapped, implausible;
+} votes;
+
+static void vote(const an_point *p, const an_limits *l, votes *v)
+{
+    double common[3];
+    if (isnan(p->storage_Pa) || isnan(p->measured_stiffness[0]))
+        return;
+    double complex measured = p->measured_stiffness[0] + I * p->measured_stiffness[1];
+    double complex channel = measured + cabs(measured) * (p->rung[AN_RUNG_CHANNEL][0] + I * p->rung[AN_RUNG_CHANNEL][1]);
+    an_point_common(p, common);
+    double u = sqrt(p->noise[2] + common[2]) / hypot(p->storage_Pa, p->loss_Pa); /* [rad] of the phase */
+    double lag = cimag(channel) / cabs(channel);
+    v->n++;
+    if (lag < -3 * u && creal(channel) > 0)
+        v->swapped++;
+    if (lag < 3 * u && creal(channel) < 0)
+        v->inverted++;
+    if (p->state != AN_POINT_SKIPPED && !(p->storage_Pa >= l->modulus_least && p->storage_Pa <= l->modulus_most))
+        v->implausible++;
+}
+
+static const an_point *first_implausible(const an_points *points, const an_limits *l)
+{
+    for (int i = 0; i < points->n_point; i++) {
+        const an_point *p = &points->point[i];
+        if (p->state != AN_POINT_SKIPPED && !(p->storage_Pa >= l->modulus_least && p->storage_Pa <= l->modulus_most))
+            return p;
+    }
+    return NULL;
+}
+
+/* Skip the points of a stretch in which the temperature did not change by a bit. */
+static an_status skip_frozen(an_points *points, int first, int last, int *n_skipped, an_error *err)
+{
+    double length = points->point[last].start_s - points->point[first].start_s;
+    if (last == first || !(length > FROZEN_S))
+        return AN_OK;
+    for (int i = first; i <= last; i++) {
+        an_point *p = &points->point[i];
+        AN_TRY(an_remark_list_add(&p->remarks, "temperature-frozen", p->burst, err,
+                                  "the temperature stands at %.3f K for %.0f s", p->temperature_K, length));
+        an_point_settle(p);
+        ++*n_skipped;
+    }
+    return AN_OK;
+}
+
+static an_status judge_temperature(an_points *points, int *n_skipped, an_error *err)
+{
+    int first = 0;
+    for (int i = 1; i <= points->n_point; i++) {
+        const an_point *p = &points->point[first];
+        if (i < points->n_point && points->point[i].temperature_K == p->temperature_K &&
+            points->point[i].temperature_rate_K_s == 0 && p->temperature_rate_K_s == 0)
+            continue;
+        AN_TRY(skip_frozen(points, first, i - 1, n_skipped, err));
+        first = i;
+    }
+    return AN_OK;
+}
+
+an_status an_points_judge(an_points *points, const an_procedure *procedure, an_error *err)
+{
+    an_limits limits;
+    votes v = {0};
+    int n_skipped = 0, n_left = 0;
+    an_limits_read(&limits, procedure);
+    for (int i = 0; i < points->n_point; i++)
+        vote(&points->point[i], &limits, &v);
+    if (v.n && 2 * v.inverted > v.n)
+        return an_fail(err, AN_E_SCIENCE, NULL, "the phase is near 180 degrees in %d of %d bursts: one channel is inverted; "
+                       "correct its sign in the layout", v.inverted, v.n);
+    if (v.n && 2 * v.swapped > v.n)
+        return an_fail(err, AN_E_SCIENCE, NULL, "the phase is negative in %d of %d bursts: force and displacement are swapped, "
+                       "or the channel delay has the wrong sign", v.swapped, v.n);
+    if (2 * v.implausible > v.n) {
+        const an_point *p = first_implausible(points, &limits);
+        return an_fail(err, AN_E_SCIENCE, NULL, "burst %d: storage modulus %.3g Pa is outside %.0e to %.0e Pa, as in %d of %d "
+                       "bursts; check the units of force, displacement and dimensions", p->burst, p->storage_Pa,
+                       limits.modulus_least, limits.modulus_most, v.implausible, v.n);
+    }
+    AN_TRY(judge_temperature(points, &n_skipped, err));
+    for (int i = 0; i < points->n_point; i++)
+        n_left += points->point[i].state != AN_POINT_SKIPPED;
+    if (!n_left && points->n_point)
+        return an_fail(err, AN_E_SCIENCE, NULL, "none of %d bursts could be used; the first: %s", points->n_point,
+                       points->point[0].remarks.n ? points->point[0].remarks.rows[0].text : "no reason");
+    return n_skipped ? AN_DUBIOUS : AN_OK;
+}
