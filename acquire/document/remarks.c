@@ -106,6 +106,13 @@ static const an_remark_kind table[] = {
      "Check the channel delays and the apparatus document."},
     {"self-heating", AN_FLAG, "dissipation heats the specimen by <value> K",
      "Use a smaller amplitude or fewer cycles."},
+    {"frozen-samples", AN_SKIP, "<channel> stands still for <n> samples",
+     "Check the acquisition for lost transfers; measure the burst again."},
+    {"preload-sign", AN_NOTE, "the force changes sign in <n> cycles, though no even harmonics show slack",
+     "Check that the force was not tared after the preload."},
+    {"fit-failed", AN_SKIP, "the burst could not be reduced: <reason>",
+     "Look at the waveform of this burst."},
+    {"not-oscillation", AN_NOTE, "<n> holds or pulls are no oscillation and give no point", "Nothing to do."},
     {"fit-poor", AN_FLAG, "the sine leaves <value> % of <channel>", "Look at the waveform of this burst."},
     /* ---- modulus ---- */
     {"stiffness-compliance-large", AN_HOLD, "specimen stiffness times frame compliance is <value>",

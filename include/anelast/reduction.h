@@ -34,4 +34,11 @@ an_status an_burst_reduce(an_reducer *reducer, const an_specimen *specimen, cons
  * Returns AN_OK, AN_DUBIOUS (remarks were added), or AN_E_SCIENCE: no result, with the reason. */
 an_status an_points_judge(an_points *points, const an_procedure *procedure, an_error *err);
 
+/* an_points_make: a whole run document to points: what anelast-phase does. Streams burst by burst; memory is bounded by the
+ * largest burst and the points. Holds and pulls give no point, and a remark that counts them.
+ *   path [in] run document, "-" for standard input; procedure [in]; by [in] name of the program, for the record
+ *   points [in, out] init'ed by the caller, who clears it also after a refusal
+ * Returns AN_OK, AN_DUBIOUS, or what reading, an_reducer_begin or an_points_judge refuse. */
+an_status an_points_make(const char *path, const an_procedure *procedure, const char *by, an_points *points, an_error *err);
+
 #endif

@@ -40,6 +40,7 @@ void an_limits_read(an_limits *l, const an_procedure *p)
     l->compliance_refuse = an_procedure_number(p, "compliance_refuse");
     l->compliance_draws = an_procedure_number(p, "compliance_sampling");
     l->dimension_u = an_procedure_number(p, "dimension_uncertainty");
+    l->frozen_s = an_procedure_number(p, "temperature_frozen");
     l->modulus_least = an_procedure_number(p, "modulus_least");
     l->modulus_most = an_procedure_number(p, "modulus_most");
 }

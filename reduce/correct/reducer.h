@@ -30,6 +30,7 @@ typedef struct an_limits {
     double compliance_refuse; /* [1] */
     double compliance_draws;  /* [1] above: noise by Monte Carlo */
     double dimension_u;       /* [1] relative standard uncertainty of a dimension that came without one */
+    double frozen_s;          /* [s] a temperature that does not move by a bit for longer is none */
     double modulus_least;     /* [Pa] plausible moduli */
     double modulus_most;      /* [Pa] */
 } an_limits;

@@ -7,9 +7,6 @@
 #include <stdio.h>
 #include <string.h>
 
-/* A temperature that does not move by a bit for so long is no measurement [s]. Common practice: 20 minutes. */
-static const double FROZEN_S = 1200;
-
 /* The shear term that an isotropic beam of Poisson's ratio 0.35 would need, worth a note from 1 %. */
 static an_status note_shear(an_points *points, an_error *err)
 {
@@ -57,7 +54,8 @@ an_status an_reducer_begin(an_reducer *reducer, const an_run *run, an_points *po
     return note_shear(points, err);
 }
 
-/* Votes of the bursts on the sign of the phase, after the channel rung: K'' < 0 beyond 3 uncertainties, K' below or above 0. */
+/* Votes of the bursts on the sign of the phase: K'' after the channel rung below 0 beyond 3 uncertainties, K' after the parallel
+ * elements below 0. */
 typedef struct votes {
     int n, inverted, swapped, implausible;
 } votes;
@@ -69,14 +67,15 @@ static void vote(const an_point *p, const an_limits *l, votes *v)
         return;
     double complex measured = p->measured_stiffness[0] + I * p->measured_stiffness[1];
     double complex channel = measured + cabs(measured) * (p->rung[AN_RUNG_CHANNEL][0] + I * p->rung[AN_RUNG_CHANNEL][1]);
+    double inner = creal(channel) + cabs(channel) * p->rung[AN_RUNG_PARALLEL][0]; /* a moving mass may turn K' legally */
     an_point_common(p, common);
     double u = sqrt(p->noise[2] + common[2]) / hypot(p->storage_Pa, p->loss_Pa); /* [rad] of the phase */
     double lag = cimag(channel) / cabs(channel);
     v->n++;
-    if (lag < -3 * u && creal(channel) > 0)
-        v->swapped++;
-    if (lag < 3 * u && creal(channel) < 0)
+    if (lag < 3 * u && inner < 0)
         v->inverted++;
+    else if (lag < -3 * u)
+        v->swapped++;
     if (p->state != AN_POINT_SKIPPED && !(p->storage_Pa >= l->modulus_least && p->storage_Pa <= l->modulus_most))
         v->implausible++;
 }
@@ -92,10 +91,10 @@ static const an_point *first_implausible(const an_points *points, const an_limit
 }
 
 /* Skip the points of a stretch in which the temperature did not change by a bit. */
-static an_status skip_frozen(an_points *points, int first, int last, int *n_skipped, an_error *err)
+static an_status skip_frozen(an_points *points, int first, int last, double longest_s, int *n_skipped, an_error *err)
 {
     double length = points->point[last].start_s - points->point[first].start_s;
-    if (last == first || !(length > FROZEN_S))
+    if (last == first || !(length > longest_s))
         return AN_OK;
     for (int i = first; i <= last; i++) {
         an_point *p = &points->point[i];
@@ -107,7 +106,7 @@ static an_status skip_frozen(an_points *points, int first, int last, int *n_skip
     return AN_OK;
 }
 
-static an_status judge_temperature(an_points *points, int *n_skipped, an_error *err)
+static an_status judge_temperature(an_points *points, double longest_s, int *n_skipped, an_error *err)
 {
     int first = 0;
     for (int i = 1; i <= points->n_point; i++) {
@@ -115,7 +114,7 @@ static an_status judge_temperature(an_points *points, int *n_skipped, an_error *
         if (i < points->n_point && points->point[i].temperature_K == p->temperature_K &&
             points->point[i].temperature_rate_K_s == 0 && p->temperature_rate_K_s == 0)
             continue;
-        AN_TRY(skip_frozen(points, first, i - 1, n_skipped, err));
+        AN_TRY(skip_frozen(points, first, i - 1, longest_s, n_skipped, err));
         first = i;
     }
     return AN_OK;
@@ -141,7 +140,7 @@ an_status an_points_judge(an_points *points, const an_procedure *procedure, an_e
                        "bursts; check the units of force, displacement and dimensions", p->burst, p->storage_Pa,
                        limits.modulus_least, limits.modulus_most, v.implausible, v.n);
     }
-    AN_TRY(judge_temperature(points, &n_skipped, err));
+    AN_TRY(judge_temperature(points, limits.frozen_s, &n_skipped, err));
     for (int i = 0; i < points->n_point; i++)
         n_left += points->point[i].state != AN_POINT_SKIPPED;
     if (!n_left && points->n_point)
