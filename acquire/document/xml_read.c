@@ -184,6 +184,21 @@ static bool is_streamed(const reader *r, const char *name)
     return false;
 }
 
+/* An attribute's value [n]: libxml2 hands every ampersand over as "&#38;", and only those. */
+static char *copy_value(const xmlChar *raw, size_t n)
+{
+    static const char ampersand[] = "&#38;";
+    char *value = strndup((const char *)raw, n), *to = value;
+    for (const char *from = value; from && *from;) {
+        bool escaped = strncmp(from, ampersand, sizeof ampersand - 1) == 0;
+        *to++ = *from;
+        from += escaped ? sizeof ampersand - 1 : 1;
+    }
+    if (to)
+        *to = '\0';
+    return value;
+}
+
 /* The attributes as libxml2 hands them over: five pointers each (name, prefix, namespace, value, end of
  * value). */
 static bool take_attributes(reader *r, an_xml_node *node, int n, const xmlChar **raw)
@@ -208,7 +223,7 @@ static bool take_attributes(reader *r, an_xml_node *node, int n, const xmlChar *
         }
         an_xml_attribute *attribute = &node->attributes[node->n_attributes++];
         attribute->name = strdup((const char *)raw[0]);
-        attribute->value = strndup((const char *)raw[3], n_value);
+        attribute->value = copy_value(raw[3], n_value);
         if (!attribute->name || !attribute->value) {
             node->n_attributes -= !attribute->value;
             if (!attribute->value)

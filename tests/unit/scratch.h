@@ -1,0 +1,68 @@
+/* tests/unit/scratch.h: a folder of its own for a test that needs files. Include after cmocka.h. */
+#ifndef ANELAST_TESTS_SCRATCH_H
+#define ANELAST_TESTS_SCRATCH_H
+
+#include <dirent.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <unistd.h>
+
+/* scratch_enter, scratch_leave: group setup and teardown: make a folder, work in it, remove it with its
+ * files. */
+static inline int scratch_enter(void **state)
+{
+    char *folder = strdup("/tmp/anelast-test-XXXXXX");
+    *state = folder;
+    return folder && mkdtemp(folder) && chdir(folder) == 0 ? 0 : -1;
+}
+
+static inline int scratch_count(void)
+{
+    int n = 0;
+    DIR *folder = opendir(".");
+    for (struct dirent *entry; folder && (entry = readdir(folder));)
+        n += entry->d_name[0] != '.';
+    if (folder)
+        closedir(folder);
+    return n;
+}
+
+static inline int scratch_leave(void **state)
+{
+    DIR *folder = opendir(".");
+    for (struct dirent *entry; folder && (entry = readdir(folder));)
+        if (entry->d_name[0] != '.')
+            unlink(entry->d_name);
+    if (folder)
+        closedir(folder);
+    int failed = chdir("/") || rmdir(*state);
+    free(*state);
+    return failed;
+}
+
+/* scratch_write: a file with a text. */
+static inline void scratch_write(const char *path, const char *text)
+{
+    FILE *stream = fopen(path, "wb");
+    assert_non_null(stream);
+    assert_true(fputs(text, stream) >= 0);
+    assert_int_equal(fclose(stream), 0);
+}
+
+/* scratch_read: the text of a file; free it. */
+static inline char *scratch_read(const char *path)
+{
+    FILE *stream = fopen(path, "rb");
+    assert_non_null(stream);
+    char *text = NULL;
+    size_t n = 0;
+    FILE *memory = open_memstream(&text, &n);
+    for (int c; (c = fgetc(stream)) != EOF;)
+        fputc(c, memory);
+    fclose(memory);
+    fclose(stream);
+    return text;
+}
+
+#endif
