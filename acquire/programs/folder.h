@@ -1,0 +1,29 @@
+/* folder.h: a folder of results that appears whole or not at all.
+ */
+#ifndef ANELAST_FOLDER_H
+#define ANELAST_FOLDER_H
+
+#include "anelast/status.h"
+
+#include <stddef.h>
+
+/* Names of the documents of a run, ended by NULL. */
+extern const char *const an_folder_documents[];
+
+/* an_folder_begin: make the folder `into` with what leads to it, and a folder of one's own in it to work in.
+ *   work [out] [n_work] ends with an_folder_publish or an_folder_drop. Returns AN_OK or AN_E_IO. */
+an_status an_folder_begin(const char *into, char *work, size_t n_work, an_error *err);
+
+/* an_folder_name: an id as the name of a folder: no slash, no blank at its ends, no dot in front, no control characters.
+ *   name [out] [n_name], never empty. */
+void an_folder_name(const char *id, char *name, size_t n_name);
+
+/* an_folder_publish: put the work folder in its place. What stands there is exchanged in one step; files in it that are no
+ * documents of a run are kept.
+ *   into, name [in] the place is into/name. Returns AN_OK or AN_E_IO; then the old folder still stands. */
+an_status an_folder_publish(const char *work, const char *into, const char *name, an_error *err);
+
+/* an_folder_drop: remove a work folder and all in it. */
+void an_folder_drop(const char *work);
+
+#endif
