@@ -21,8 +21,8 @@ typedef struct an_startup {
 
 void an_startup_choice_init(an_startup_choice *choice);
 
-/* an_startup_fit: drop leading cycles until two successive ones agree (the first of the two is dropped too), then until the
- * force's residual near the line is no more than noise, and fit what is left. Cycles agree within the choice's limits or
+/* an_startup_fit: drop leading cycles, one at least where any can be spared, until the first two left agree; then until
+ * the force's residual near the line is no more than noise; and fit what is left. Cycles agree within the choice's limits or
  * within 2.5 standard uncertainties of their difference.
  *   waveform [in] whole burst; choice [in] of the fit, frequency_Hz the start; start_choice [in]
  *   startup [out]; fit [out]; residual [out] [AN_CHANNELS][n], of the samples kept, at their place in the burst, 0 before

@@ -32,7 +32,7 @@ void an_limits_read(an_limits *l, const an_procedure *p)
     l->third_note = an_procedure_number(p, "third_harmonic_note");
     l->third_flag = an_procedure_number(p, "third_harmonic_flag");
     l->second_flag = an_procedure_number(p, "second_harmonic_flag");
-    l->mains_flag = an_procedure_number(p, "mains_flag");
+    l->mains_flag = pow(10, an_procedure_number(p, "mains_flag") / 20); /* dB of an amplitude */
     l->frequency_flag = an_procedure_number(p, "frequency_flag");
     l->frequency_skip = an_procedure_number(p, "frequency_halt");
     l->jitter_flag = an_procedure_number(p, "jitter_flag");

@@ -94,7 +94,7 @@ static int agree(const an_sinefit *a, const an_sinefit *b, const an_startup_choi
            fabs(carg(ratio)) < fmax(choice->agree_phase, 2.5 * u);
 }
 
-/* First cycle (0-based) that agrees with the one before it; -1: none may, or could be fitted. */
+/* Cycle (0-based) to keep from: the first that the one after it agrees with, but never the very first; -1: none agree. */
 static int first_steady(const cycles *c, const an_sinefit *settled, const an_startup_choice *choice)
 {
     an_sinefit before, now;
@@ -102,7 +102,7 @@ static int first_steady(const cycles *c, const an_sinefit *settled, const an_sta
     for (int k = 1; k <= c->n - choice->least_cycles; k++) {
         an_status status = cycle_fit(c, k, settled, &now);
         if (status >= 0 && last >= 0 && agree(&before, &now, choice))
-            return k;
+            return k > 1 ? k - 1 : 1;
         before = now;
         last = status;
     }
