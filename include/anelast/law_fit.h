@@ -14,16 +14,15 @@
 #include "anelast/law.h"
 #include "anelast/status.h"
 
-/* Shift factors to be described. */
+/* Shift factors to be described. The covariance holds all that may scatter a shift about a law; shifts of
+ * zero variance are left out, as the reference's own. u_temperature_K is the noise part of each isotherm's
+ * temperature: it adds (slope u)^2. */
 typedef struct an_law_data {
-    size_t n_shift;              /* number of isotherms */
-    const double *temperature_K; /* [n_shift] K, rising */
-    const double *log10_aT;      /* [n_shift] dimensionless, relative to the reference temperature */
-    const double
-        *covariance; /* [n_shift x n_shift] of log10 a_T, dimensionless: all that may scatter a shift about a
-                                       law; rows of zero variance are left out */
-    double
-        u_temperature_K; /* K, noise part of each isotherm's temperature; adds (slope u)^2 to a variance; 0: none */
+    size_t n_shift;                 /* number of isotherms */
+    const double *temperature_K;    /* [n_shift] K, rising */
+    const double *log10_aT;         /* [n_shift] dimensionless, relative to the reference temperature */
+    const double *covariance;       /* [n_shift x n_shift] of log10 a_T, dimensionless */
+    double u_temperature_K;         /* K, >= 0 */
     double reference_temperature_K; /* K */
 } an_law_data;
 
