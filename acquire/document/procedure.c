@@ -101,7 +101,7 @@ an_status an_procedure_set(an_procedure *procedure, const char *name, const char
     if (!row->unit)
         return an_fail(err, AN_E_VALUE, NULL, "choice '%s' is '%.60s'; allowed is %s", name, text, allowed);
     size_t n = strspn(text, "+-.0123456789eE");
-    if (!an_number_parse(text, n, '.', &number) || (unit && text[n]))
+    if (!an_number_parse(text, n, '.', &number) || text[n] == ',' || (unit && text[n]))
         return an_fail(err, AN_E_VALUE, NULL, "choice '%s' is '%.60s'; allowed is %s", name, text, allowed);
     if (!unit)
         unit = text[n + strspn(text + n, " ")] ? text + n : row->unit;
