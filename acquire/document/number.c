@@ -1,8 +1,11 @@
 /* Decimal texts to numbers and back, exact and in no locale. Most numbers of a dump have at most 15 digits
- * and a small exponent: there one multiplication or division of exact doubles rounds correctly [CL90]. What
- * is longer goes to the C library in the C locale, whose strtod rounds correctly too.
+ * and a small exponent: there one multiplication or division of exact doubles rounds correctly [CL90]. Up to
+ * 19 digits one product with a power of five of 128 bits does [LE21]. What is longer, or has a huge exponent,
+ * goes to the C library in the C locale, whose strtod rounds correctly too.
  */
 #include "anelast/number.h"
+
+#include "powers_of_five.h"
 
 #include <limits.h>
 #include <locale.h>
@@ -84,6 +87,45 @@ static bool take_apart(const char *s, size_t n, char mark, pieces *p)
     return i == n;
 }
 
+/* The product of w and 5^q to 128 bits, of which the high word, and what it may still carry, suffice [LE21,
+ * Section 5]. */
+static uint64_t multiply(uint64_t w, int q, uint64_t *low)
+{
+    __extension__ typedef unsigned __int128 wide;
+    const uint64_t *power = powers_of_five[q - POWER_FIRST];
+    wide first = (wide)w * power[0];
+    uint64_t high = (uint64_t)(first >> 64);
+    *low = (uint64_t)first;
+    if ((high & 0x1ff) == 0x1ff) {
+        uint64_t second = (uint64_t)((wide)w * power[1] >> 64);
+        *low += second;
+        high += second > *low;
+    }
+    return high;
+}
+
+/* w * 10^q for w > 0 and q in the table, rounded to nearest, ties to even [LE21, Algorithm 1]. No value is
+ * subnormal here. */
+static double scale_exactly(uint64_t w, int q)
+{
+    int shift = __builtin_clzll(w);
+    uint64_t low, high = multiply(w << shift, q, &low);
+    int top = (int)(high >> 63);
+    /* 54 bits: the 53 of a double and one to round by. */
+    uint64_t m = high >> (top + 9);
+    /* floor(log2 10^q) by a product that is exact for these q, and the place of the highest bit. */
+    int exponent = ((217706 * q) >> 16) + 63 + top - shift;
+    /* Just halfway: to even, by taking away the bit that would round up. */
+    if (low <= 1 && q >= -4 && q <= 23 && (m & 3) == 1 && m << (top + 9) == high)
+        m &= ~UINT64_C(1);
+    m = (m + (m & 1)) >> 1;
+    /* The bit of 2^52 in m adds the missing one to the exponent, a carry to 2^53 adds two. */
+    uint64_t bits = ((uint64_t)(exponent + 1022) << 52) + m;
+    double value;
+    memcpy(&value, &bits, sizeof value);
+    return value;
+}
+
 /* The slow way: the same text with a point, by strtod in the C locale. */
 static bool read_slowly(const char *s, size_t n, char mark, double *value)
 {
@@ -113,10 +155,15 @@ bool an_number_parse(const char *s, size_t n, char decimal_mark, double *value)
     if (!take_apart(s, n, decimal_mark, &p))
         return false;
     int exponent = p.exponent - p.decimals;
-    if (p.n_digits > 19 || p.mantissa > UINT64_C(1) << 53 || exponent < -22 || exponent > 22)
+    double m;
+    if (p.n_digits <= 19 && p.mantissa <= UINT64_C(1) << 53 && exponent >= -22 && exponent <= 22) {
+        m = (double)p.mantissa;
+        m = exponent < 0 ? m / power[-exponent] : m * power[exponent];
+    } else if (p.n_digits <= 19 && p.mantissa && exponent >= POWER_FIRST && exponent <= POWER_LAST) {
+        m = scale_exactly(p.mantissa, exponent);
+    } else {
         return read_slowly(s, n, decimal_mark, value);
-    double m = (double)p.mantissa;
-    m = exponent < 0 ? m / power[-exponent] : m * power[exponent];
+    }
     *value = p.negative ? -m : m;
     return true;
 }

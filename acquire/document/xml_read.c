@@ -130,12 +130,17 @@ static bool load_schema(reader *r, const char *root)
         refuse(r, status, "%s", err.text);
         return false;
     }
+    /* A part that is missing is told to the thread's handler, which would print it. */
+    xmlStructuredErrorFunc before = xmlStructuredError;
+    void *before_context = xmlStructuredErrorContext;
+    xmlSetStructuredErrorFunc(first, on_schema_load_error);
     xmlSchemaParserCtxt *context = xmlSchemaNewParserCtxt(path);
     if (context) {
         xmlSchemaSetParserStructuredErrors(context, on_schema_load_error, first);
         r->schema = xmlSchemaParse(context);
         xmlSchemaFreeParserCtxt(context);
     }
+    xmlSetStructuredErrorFunc(before_context, before);
     if (!r->schema)
         refuse(r, AN_E_IO, "the schema %s does not load: %s", path, first);
     return r->schema != NULL;
