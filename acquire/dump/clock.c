@@ -1,84 +1,62 @@
-/* Printed times to a clock. A dump prints t0 + i dt to so many digits; a line through the points, weighted by the square of
- * each one's last digit, nearly always passes within half a digit of all. Where it does not, the weights are moved towards the
- * worst points until it does (Lawson's algorithm, which tends to the line with the least greatest deviation), so that a
- * clock is missed only where there is none. Range: times up to 2^53 of their last digits.
+/* Printed times to a clock. A dump prints t0 + i dt rounded to its last digit, so every time allows a band for the line, and
+ * a clock exists where one line passes through all bands. For a slope b the intercepts allowed are
+ * [max (t_i - tol_i - b i), min (t_i + tol_i - b i)]; the width of that interval is concave in b, so its greatest is found
+ * by halving a bracket by the sign of its slope. The clock is the line in the middle of what is allowed there, whose error
+ * falls as 1/n. Where times are printed as exact halves of the last digit, that line is the only one.
  */
 #include "acquire/dump/clock.h"
 
 #include <math.h>
-#include <stdlib.h>
 
-enum { ROUNDS = 40 };
+enum { HALVINGS = 64 };
 
-/* A few rounding errors of double on top of half a digit. */
-static const double slack = 1 + 1e-6;
+/* Part of the tightest band that rounding errors of the arithmetic here may take. */
+static const double slack = 1e-4;
 
-/* A line through (i, time) in coordinates about the middle, which keeps the sums well conditioned. */
-typedef struct line_fit {
-    double i_middle, t_middle; /* [1], [time] */
-    double slope;              /* [time] a sample */
-} line_fit;
+/* The intercepts that a slope allows. */
+typedef struct allowed {
+    double least, most; /* [time] */
+    double leaning;     /* [samples] derivative of the width to the slope */
+} allowed;
 
-static double index_of(const size_t *index, size_t i)
+static allowed look(const double *time, const double *tolerance, const size_t *index, size_t n, double slope)
 {
-    return (double)(index ? index[i] : i);
-}
-
-static line_fit fit_line(const double *time, const double *weight, const size_t *index, size_t n)
-{
-    double sum = 0, sum_i = 0, sum_t = 0, sum_ii = 0, sum_it = 0;
+    allowed result = {-INFINITY, INFINITY, 0};
+    double i_least = 0, i_most = 0;
     for (size_t i = 0; i < n; i++) {
-        sum += weight[i];
-        sum_i += weight[i] * index_of(index, i);
-        sum_t += weight[i] * (time[i] - time[0]);
+        double x = (double)(index ? index[i] : i);
+        double along = time[i] - time[0] - slope * x;
+        if (along - tolerance[i] > result.least) {
+            result.least = along - tolerance[i];
+            i_least = x;
+        }
+        if (along + tolerance[i] < result.most) {
+            result.most = along + tolerance[i];
+            i_most = x;
+        }
     }
-    line_fit fit = {sum_i / sum, sum_t / sum, 0};
-    for (size_t i = 0; i < n; i++) {
-        double x = index_of(index, i) - fit.i_middle;
-        sum_ii += weight[i] * x * x;
-        sum_it += weight[i] * x * (time[i] - time[0] - fit.t_middle);
-    }
-    fit.slope = sum_ii > 0 ? sum_it / sum_ii : 0;
-    return fit;
-}
-
-/* The greatest deviation in tolerances; moves the weights for another round. */
-static double judge(const line_fit *fit, const double *time, const double *tolerance, double *weight,
-                    const size_t *index, size_t n)
-{
-    double worst = 0, sum = 0;
-    for (size_t i = 0; i < n; i++) {
-        double along = fit->t_middle + fit->slope * (index_of(index, i) - fit->i_middle);
-        double deviation = fabs(time[i] - time[0] - along) / tolerance[i];
-        worst = fmax(worst, deviation);
-        weight[i] *= deviation + 1e-3;
-        sum += weight[i];
-    }
-    for (size_t i = 0; i < n; i++)
-        weight[i] /= sum;
-    return worst;
+    result.leaning = i_least - i_most;
+    return result;
 }
 
 bool an_clock_fit(const double *time, const double *tolerance, const size_t *index, size_t n, double *start,
                   double *interval)
 {
+    double tightest = INFINITY;
     if (n < 2)
         return false;
-    double *weight = malloc(n * sizeof *weight);
-    bool found = false;
-    if (!weight)
-        return false;
     for (size_t i = 0; i < n; i++)
-        weight[i] = tolerance[0] * tolerance[0] / (tolerance[i] * tolerance[i]);
-    for (int i_round = 0; i_round < ROUNDS && !found; i_round++) {
-        line_fit fit = fit_line(time, weight, index, n);
-        double worst = judge(&fit, time, tolerance, weight, index, n);
-        found = fit.slope > 0 && worst <= slack;
-        *interval = fit.slope;
-        *start = time[0] + fit.t_middle - fit.slope * fit.i_middle;
-        if (worst > 50) /* no rounding: far from any uniform clock */
-            break;
+        tightest = fmin(tightest, tolerance[i]);
+    double steps = index ? (double)(index[n - 1] - index[0]) : (double)(n - 1);
+    double across = (tolerance[0] + tolerance[n - 1]) / steps, middle = (time[n - 1] - time[0]) / steps;
+    double low = middle - across, high = middle + across;
+    allowed best = look(time, tolerance, index, n, middle);
+    for (int i = 0; i < HALVINGS && best.leaning != 0; i++) {
+        *(best.leaning > 0 ? &low : &high) = middle;
+        middle = 0.5 * (low + high);
+        best = look(time, tolerance, index, n, middle);
     }
-    free(weight);
-    return found;
+    *interval = middle;
+    *start = time[0] + 0.5 * (best.least + best.most);
+    return middle > 0 && best.most - best.least >= -slack * tightest;
 }
