@@ -1,0 +1,164 @@
+/* The closed-form start: the area between neighbouring isotherms. Stage: superpose, before the joint fit. Method: [GE11], with
+ * the integral of the piecewise-linear segments taken exactly, on the quantity that promises the least uncertainty. Range:
+ * segments that overlap in ordinate and run steadily; others are refused by name. */
+#include "anelast/superpose.h"
+
+#include <math.h>
+#include <stdio.h>
+
+enum { quantities = 3 };
+static const char *const quantity_word[quantities] = {"loss factor", "storage modulus", "loss modulus"};
+static const double most_u = 1; /* decades: a pair known no better has no slope */
+/* A gap up to this share of the smaller segment's range is bridged by the mean slope: the joint fit, whose spectrum is smooth
+ * across it, has the last word and its covariance says what the bridge is worth. */
+static const double widest_gap = 0.25;
+
+/* log10 of a quantity at a point, and its standard uncertainty. */
+static double ordinate(const an_superpose_point *p, int quantity, double *u)
+{
+    double rs = sqrt(p->noise[0]) / p->storage_Pa, rl = sqrt(p->noise[2]) / fabs(p->loss_Pa);
+    static const double log10_e = 0.4342944819032518;
+    *u = log10_e * (quantity == 0 ? hypot(rs, rl) : quantity == 1 ? rs : rl);
+    double value = quantity == 0 ? p->loss_Pa / p->storage_Pa : quantity == 1 ? p->storage_Pa : p->loss_Pa;
+    return value > 0 ? log10(value) : NAN;
+}
+
+/* One isotherm's segment in one quantity. */
+typedef struct segment {
+    const an_superpose_point *point;
+    size_t n;
+    int quantity;
+    double sign;      /* +1: rises with frequency; -1: falls */
+    double low, high; /* range of the ordinate */
+    double u;         /* rms uncertainty of the ordinate */
+} segment;
+
+/* Fill range, sign and uncertainty. Returns 0 where the ordinate turns by more than its noise, or is not positive. */
+static int survey(segment *s)
+{
+    double u, first = ordinate(&s->point[0], s->quantity, &u), last = ordinate(&s->point[s->n - 1], s->quantity, &u);
+    double before = first, u_before = u, sum = 0;
+    if (s->n < 2 || !(first != last))
+        return 0;
+    s->sign = last > first ? 1 : -1;
+    s->low = s->high = first;
+    for (size_t i = 0; i < s->n; i++) {
+        double y = ordinate(&s->point[i], s->quantity, &u);
+        if (!isfinite(y) || s->sign * (y - before) < -3 * hypot(u, u_before))
+            return 0;
+        s->low = fmin(s->low, y);
+        s->high = fmax(s->high, y);
+        before = y;
+        u_before = u;
+        sum += u * u;
+    }
+    s->u = sqrt(sum / (double)s->n);
+    return 1;
+}
+
+/* Integral of x = log10 omega over the ordinate from low to high along a segment; where noise turns the curve back, the steps
+ * back count negative, as the area demands. *n: points inside the range. */
+static double area_under(const segment *s, double low, double high, size_t *n)
+{
+    double area = 0, u;
+    *n = 0;
+    for (size_t i = 0; i < s->n; i++) {
+        double y1 = ordinate(&s->point[i], s->quantity, &u), x1 = log10(s->point[i].omega_rad_s);
+        *n += y1 >= low && y1 <= high;
+        if (i + 1 == s->n)
+            break;
+        double y2 = ordinate(&s->point[i + 1], s->quantity, &u), x2 = log10(s->point[i + 1].omega_rad_s);
+        double from = fmin(fmax(y1, low), high), to = fmin(fmax(y2, low), high);
+        if (from == to)
+            continue;
+        double slope = (x2 - x1) / (y2 - y1);
+        area += (to - from) * (x1 + slope * ((from + to) / 2 - y1));
+    }
+    return s->sign * area;
+}
+
+/* Decades of ordinate a decade of frequency, mean of a segment. */
+static double mean_slope(const segment *s)
+{
+    return (s->high - s->low) / log10(s->point[s->n - 1].omega_rad_s / s->point[0].omega_rad_s);
+}
+
+/* Shift across a gap between the two ranges, low > high: from end to end, and the gap at the mean slope. */
+static void bridge_gap(const segment *cold, const segment *warm, double gap, an_area_shift *shift)
+{
+    int cold_first = (cold->low > warm->low) == (cold->sign > 0); /* the cold segment continues the warm one */
+    double x_cold = log10(cold->point[cold_first ? 0 : cold->n - 1].omega_rad_s);
+    double x_warm = log10(warm->point[cold_first ? warm->n - 1 : 0].omega_rad_s);
+    double width = 2 * gap / (mean_slope(cold) + mean_slope(warm));
+    shift->log10_a = x_cold - x_warm + (cold_first ? -width : width);
+    shift->u = width / 2;
+}
+
+/* One quantity. Returns 0 where it does not serve; *overlap tells whether overlap was there. */
+static int area_of(segment cold, segment warm, an_area_shift *shift, int *overlap)
+{
+    if (!survey(&cold) || !survey(&warm) || cold.sign != warm.sign)
+        return 0;
+    double low = fmax(cold.low, warm.low), high = fmin(cold.high, warm.high);
+    size_t n_cold = 1, n_warm = 1;
+    if (low - high > widest_gap * fmin(cold.high - cold.low, warm.high - warm.low))
+        return 0;
+    *overlap = 1;
+    if (high > low) {
+        double difference = area_under(&cold, low, high, &n_cold) - area_under(&warm, low, high, &n_warm);
+        shift->log10_a = difference / (high - low);
+    } else {
+        bridge_gap(&cold, &warm, low - high, shift);
+    }
+    double n = fmax(1, 0.5 * (double)(n_cold + n_warm));
+    shift->u += hypot(cold.u, warm.u) / (sqrt(n) * mean_slope(&cold)); /* (2/n)^1/2 s_y / |dy/dx| */
+    shift->quantity = quantity_word[cold.quantity];
+    return shift->u <= most_u;
+}
+
+/* Mean log10 |E*| of the warmer against the colder at equal reduced frequency. */
+static double scale_between(const segment *cold, const segment *warm, double log10_a)
+{
+    double sum = 0;
+    size_t n = 0;
+    for (size_t i = 0; i < warm->n; i++) {
+        double x = log10(warm->point[i].omega_rad_s) + log10_a;
+        for (size_t j = 0; j + 1 < cold->n; j++) {
+            double x1 = log10(cold->point[j].omega_rad_s), x2 = log10(cold->point[j + 1].omega_rad_s);
+            if (x < x1 || x > x2)
+                continue;
+            double y1 = log10(hypot(cold->point[j].storage_Pa, cold->point[j].loss_Pa));
+            double y2 = log10(hypot(cold->point[j + 1].storage_Pa, cold->point[j + 1].loss_Pa));
+            sum += log10(hypot(warm->point[i].storage_Pa, warm->point[i].loss_Pa)) - (y1 + (y2 - y1) * (x - x1) / (x2 - x1));
+            n++;
+            break;
+        }
+    }
+    return n ? sum / (double)n : 0;
+}
+
+an_status an_area_between(const an_superpose_input *input, size_t i_cold, an_vertical vertical, an_area_shift *shift,
+                          an_error *err)
+{
+    const an_superpose_isotherm *c = &input->isotherm[i_cold], *w = c + 1;
+    segment cold = {.point = input->point + c->first_point, .n = c->n_point};
+    segment warm = {.point = input->point + w->first_point, .n = w->n_point};
+    int overlap = 0, found = 0;
+    for (int quantity = 0; quantity < quantities; quantity++) {
+        an_area_shift one = {0};
+        cold.quantity = warm.quantity = quantity;
+        if (!area_of(cold, warm, &one, &overlap))
+            continue;
+        if (!found || one.u < shift->u)
+            *shift = one;
+        found = 1;
+        if (vertical == AN_VERTICAL_FREE && quantity == 0)
+            break;
+    }
+    if (!found)
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "isotherms %.2f K and %.2f K cannot be joined: no %s in storage modulus, loss modulus or loss factor",
+                       c->temperature_K, w->temperature_K, overlap ? "slope" : "overlap");
+    shift->log10_b = scale_between(&cold, &warm, shift->log10_a);
+    return AN_OK;
+}
