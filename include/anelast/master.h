@@ -9,10 +9,9 @@
 #include "anelast/grid.h"
 #include "anelast/law_fit.h"
 #include "anelast/maxwell.h"
+#include "anelast/spectrum.h"
+#include "anelast/superpose.h"
 
-typedef enum an_simplicity { AN_SIMPLE = 0, AN_DOUBTFUL, AN_COMPLEX } an_simplicity;
-typedef enum an_vertical { AN_VERTICAL_NONE = 0, AN_VERTICAL_DENSITY_TEMPERATURE, AN_VERTICAL_FREE } an_vertical;
-typedef enum an_end_state { AN_UNDETERMINED = 0, AN_SOLID, AN_LIQUID } an_end_state;
 
 typedef struct an_shift {
     double temperature_K;    /* [K] */
@@ -72,8 +71,5 @@ void an_master_write(an_xml_writer *writer, const an_master *master);
  * Returns AN_OK, AN_DUBIOUS (doubtful or complex, all the same whole), AN_E_SCIENCE naming the isotherms that cannot be joined. */
 an_status an_master_make(const an_grid *grid, const an_procedure *procedure, an_master *master, an_error *err);
 
-const char *an_simplicity_word(an_simplicity simplicity); /* "simple", "doubtful", "complex" */
-const char *an_vertical_word(an_vertical vertical);       /* "none", "density-temperature", "free" */
-const char *an_end_state_word(an_end_state state);        /* "solid", "liquid", "undetermined" */
 
 #endif
