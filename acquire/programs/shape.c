@@ -79,40 +79,80 @@ int an_program_end(const an_program *program)
     return AN_EXIT_DONE;
 }
 
+/* Where help breaks its lines. */
+enum { HELP_WIDTH = 96, HELP_INDENT = 28 };
+
+/* Print words from a column on, lines broken at HELP_WIDTH and indented; a line feed in the text breaks too.
+ */
+static void print_words(const char *text, int column, int indent)
+{
+    while (*text) {
+        int n = (int)strcspn(text, " \n");
+        bool starts = column <= indent;
+        if (!starts && column + 1 + n > HELP_WIDTH) {
+            printf("\n%*s", indent, "");
+            starts = true;
+        }
+        printf("%s%.*s", starts ? "" : " ", n, text);
+        column = starts ? indent + n : column + 1 + n;
+        text += n;
+        if (*text == '\n') {
+            printf("\n%*s", indent, "");
+            column = indent;
+        }
+        text += *text != '\0';
+    }
+}
+
+/* "help [unit]; range (default: standard)". */
+static void describe_option(const an_option *option, char *text, size_t n_text)
+{
+    snprintf(text, n_text, "%s%s%s%s%s%s%s%s%s", option->help, option->unit ? " [" : "",
+             option->unit ? option->unit : "", option->unit ? "]" : "", option->range ? "; " : "",
+             option->range ? option->range : "", option->standard ? " (default: " : "",
+             option->standard ? option->standard : "", option->standard ? ")" : "");
+}
+
 static void print_option(const an_option *option)
 {
-    char head[80];
+    char head[80], text[700];
     int n = option->letter ? snprintf(head, sizeof head, "  -%c, --%s", option->letter, option->name)
                            : snprintf(head, sizeof head, "      --%s", option->name);
     if (option->argument)
         snprintf(head + n, sizeof head - (size_t)n, " %s", option->argument);
-    printf("%-28s%s", head, strlen(head) > 27 ? "\n                            " : "");
-    printf("%s", option->help);
-    if (option->unit)
-        printf(" [%s]", option->unit);
-    if (option->range)
-        printf("; %s", option->range);
-    if (option->standard)
-        printf(" (default: %s)", option->standard);
+    printf("%-*s", HELP_INDENT, head);
+    if (strlen(head) >= HELP_INDENT)
+        printf("\n%*s", HELP_INDENT, "");
+    describe_option(option, text, sizeof text);
+    print_words(text, HELP_INDENT, HELP_INDENT);
     putchar('\n');
 }
+
+#define EXITS                                                                                                \
+    "Exit codes: 0 done; 1 refused, or the data do not allow it; 2 wrong usage; 3 cannot read or write"
 
 static void print_help(const an_program *program)
 {
     const an_option *option;
+    char exits[400];
     printf("%s: %s\n\nUsage: %s [OPTION]... %s\n", program->name, program->summary, program->name,
            program->operands ? program->operands : "");
-    for (const char *const *paragraph = program->about; paragraph && *paragraph; paragraph++)
-        printf("\n%s\n", *paragraph);
+    for (const char *const *paragraph = program->about; paragraph && *paragraph; paragraph++) {
+        putchar('\n');
+        print_words(*paragraph, 0, 0);
+        putchar('\n');
+    }
     printf("\nExample%s:\n", program->examples && program->examples[0] && program->examples[1] ? "s" : "");
     for (const char *const *example = program->examples; example && *example; example++)
         printf("  %s\n", *example);
     printf("\nOptions:\n");
     for (size_t i = 0; (option = option_row(program, i)); i++)
         print_option(option);
-    printf("\nExit codes: 0 done; 1 refused, or the data do not allow it; 2 wrong usage; 3 cannot read or "
-           "write%s%s.\n",
-           program->exits ? "; " : "", program->exits ? program->exits : "");
+    snprintf(exits, sizeof exits, EXITS "%s%s.", program->exits ? "; " : "",
+             program->exits ? program->exits : "");
+    putchar('\n');
+    print_words(exits, 0, 0);
+    putchar('\n');
 }
 
 /* ---- the command line ---- */
