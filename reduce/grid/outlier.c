@@ -1,13 +1,12 @@
-/* outlier.c: cells that do not lie on the smooth curve of their isotherm are marked, and stay in the
- * document.
+/* outlier.c: cells that do not lie on the smooth curve of their isotherm are marked, and stay in the document.
  *
- * Relaxation is smooth in log frequency: one Maxwell element already spreads its loss over more than a decade
- * [FE80]. So ln|E*| and delta of a cell follow from its neighbours on the isotherm, two on each side, by
- * cubic interpolation (quadratic next to the edges). The miss is held against what can explain it: the noise
- * of the cell and of its neighbours, a floor, and a share of what separates the interpolation from a straight
- * line, since where the curve bends interpolation is less sure. The worst cell is marked first and the rest
- * is judged again without it, so that it does not drag its neighbours along. An isotherm of which more than a
- * quarter would be marked is left alone: that is not an outlier but another material.
+ * Relaxation is smooth in log frequency: one Maxwell element already spreads its loss over more than a decade [FE80]. So
+ * ln|E*| and delta of a cell follow from its neighbours on the isotherm, two on each side, by cubic interpolation
+ * (quadratic next to the edges). The miss is held against what can explain it: the noise of the cell and of its
+ * neighbours, a floor, and a share of what separates the interpolation from a straight line, since where the curve bends
+ * interpolation is less sure. Of the cells that miss, the one is marked without which the others miss least, and the rest
+ * is judged again without it: a bad cell makes its neighbours miss too. An isotherm of which more than a quarter would be
+ * marked is left alone: that is not an outlier but another material.
  */
 #include "reduce/grid/parts.h"
 
@@ -90,20 +89,46 @@ static double miss(const judged *curve, int at, int i_quantity, double *by)
     return fabs(*by) / sqrt(variance + curve->variance[i_quantity][at] + bend * bend);
 }
 
-/* The cell that misses most; -1 where none misses enough. */
+/* The larger miss of the two quantities of a cell. */
+static double larger_miss(const judged *curve, int at, int *i_quantity, double *by)
+{
+    double by_modulus, by_delta;
+    double modulus = miss(curve, at, 0, &by_modulus), delta = miss(curve, at, 1, &by_delta);
+    *i_quantity = delta > modulus;
+    *by = delta > modulus ? by_delta : by_modulus;
+    return fmax(modulus, delta);
+}
+
+/* What is left of the misses of all unmarked cells. */
+static double misfit(const judged *curve)
+{
+    double sum = 0, by;
+    int i_quantity;
+    for (int i = 0; i < curve->n; i++)
+        if (!curve->cell[i].outlier)
+            sum += pow(larger_miss(curve, i, &i_quantity, &by), 2);
+    return sum;
+}
+
+/* Of the cells that miss, the one without which the others miss least: a bad cell makes its neighbours miss
+ * as well. -1 where none misses enough. */
 static int find_worst(const judged *curve, int *i_quantity, double *by)
 {
     int worst = -1;
-    double most = significance;
+    double least = INFINITY;
     for (int i = 0; i < curve->n; i++) {
-        for (int k = 0; k < 2 && !curve->cell[i].outlier; k++) {
-            double one, ratio = miss(curve, i, k, &one);
-            if (ratio > most) {
-                most = ratio;
-                worst = i;
-                *i_quantity = k;
-                *by = one;
-            }
+        int quantity;
+        double one;
+        if (curve->cell[i].outlier || larger_miss(curve, i, &quantity, &one) <= significance)
+            continue;
+        curve->cell[i].outlier = 1;
+        double rest = misfit(curve);
+        curve->cell[i].outlier = 0;
+        if (rest < least) {
+            least = rest;
+            worst = i;
+            *i_quantity = quantity;
+            *by = one;
         }
     }
     return worst;
