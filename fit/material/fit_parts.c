@@ -137,6 +137,12 @@ an_status an_law_read(const an_xml_node *node, an_law *law, an_error *err)
     return AN_OK;
 }
 
+/* An uncertainty without bound is written like one that is not known: it is left out. */
+static double known(double u)
+{
+    return isfinite(u) ? u : NAN;
+}
+
 static void write_mode(an_xml_writer *writer, const an_maxwell *model, const an_mode_marks *marks, size_t i)
 {
     double u = marks && marks->u_modulus_Pa ? marks->u_modulus_Pa[i] : NAN;
@@ -145,7 +151,7 @@ static void write_mode(an_xml_writer *writer, const an_maxwell *model, const an_
     if (marks && marks->trusted)
         an_xml_put(writer, "trusted", marks->trusted[i] ? "true" : "false");
     an_xml_put_measure(writer, "relaxation_time", (an_measure){model->time_s[i], NAN}, "s");
-    an_xml_put_measure(writer, "modulus", (an_measure){model->modulus_Pa[i], u}, "Pa");
+    an_xml_put_measure(writer, "modulus", (an_measure){model->modulus_Pa[i], known(u)}, "Pa");
     an_xml_put_measure(writer, "relative_weight", (an_measure){weight, NAN}, "1");
     an_xml_end(writer);
 }
@@ -154,7 +160,7 @@ void an_maxwell_write(an_xml_writer *writer, const an_maxwell *model, const an_m
                       double u_long_term_Pa)
 {
     an_measure instantaneous = {an_maxwell_instantaneous(model), NAN};
-    an_measure long_term = {model->equilibrium_Pa, u_long_term_Pa};
+    an_measure long_term = {model->equilibrium_Pa, known(u_long_term_Pa)};
     an_xml_put_measure(writer, "instantaneous_modulus", instantaneous, "Pa");
     an_xml_put_measure(writer, "long_term_modulus", long_term, "Pa");
     for (size_t i = 0; i < model->n_mode; i++)
