@@ -1,5 +1,5 @@
-/* beside.c: what kind a document is stands in its first element; looking there is enough to choose one, and the program that
- * reads it will judge it.
+/* beside.c: what kind a document is stands in its first element; looking there is enough to choose one, and
+ * the program that reads it will judge it.
  */
 #include "acquire/programs/beside.h"
 
@@ -13,7 +13,8 @@
 #include <string.h>
 #include <unistd.h>
 
-/* The first element's name in the head of a document, behind declaration and comments; 0 where there is none. */
+/* The first element's name in the head of a document, behind declaration and comments; 0 where there is none.
+ */
 static int root_name(const char *text, char *name, size_t n_name)
 {
     for (const char *at = text; (at = strchr(at, '<')); at++) {
@@ -82,8 +83,9 @@ static an_status find_only(const char *folder, const char *kind, char *path, siz
     if (n >= 0)
         free(entries);
     if (n_found > 1)
-        return an_fail(err, AN_E_USAGE, folder, "%d %s documents stand beside the dump (%s, %s%s); say which with --%s",
-                       n_found, kind, first, n_found > 2 ? "..., " : "", second, kind);
+        return an_fail(err, AN_E_USAGE, folder,
+                       "%d %s documents stand beside the dump (%s, %s%s); say which with --%s", n_found, kind,
+                       first, n_found > 2 ? "..., " : "", second, kind);
     if (n_found == 1)
         snprintf(path, n_path, "%s/%s", folder, first);
     return AN_OK;

@@ -1,5 +1,5 @@
-/* folder.c: results are made in a folder of their own beside their place and put there by one rename, so that a reader sees an
- * old folder, a whole new one, or none.
+/* folder.c: results are made in a folder of their own beside their place and put there by one rename, so that
+ * a reader sees an old folder, a whole new one, or none.
  */
 #include "acquire/programs/folder.h"
 
@@ -14,7 +14,7 @@
 #include <sys/stat.h>
 #include <unistd.h>
 
-const char *const an_folder_documents[] = {"run.xml",    "points.xml",   "grid.xml",    "master.xml",
+const char *const an_folder_documents[] = {"run.xml",      "points.xml",  "grid.xml", "master.xml",
                                            "material.xml", "report.html", NULL};
 
 /* Like mkdir -p. */
@@ -129,7 +129,7 @@ static int exchange(const char *work, const char *place)
     return rename(aside, work);
 }
 
-an_status an_folder_publish(const char *work, const char *into, const char *name, an_error *err)
+an_status an_folder_publish(char *work, const char *into, const char *name, an_error *err)
 {
     char place[PATH_MAX];
     struct stat about;
@@ -140,15 +140,20 @@ an_status an_folder_publish(const char *work, const char *into, const char *name
         if (rename(work, place) != 0)
             return an_fail(err, AN_E_IO, place, "cannot be put in place: %s", strerror(errno));
         sync_folder(into);
+        work[0] = '\0';
         return AN_OK;
     }
     if (!S_ISDIR(about.st_mode))
         return an_fail(err, AN_E_IO, place, "is there already, and is no folder");
     if (exchange(work, place) != 0)
         return an_fail(err, AN_E_IO, place, "cannot be replaced: %s", strerror(errno));
-    if (keep_others(work, place) != 0)
-        return an_fail(err, AN_E_IO, work, "other files of the old folder are left here: %s", strerror(errno));
+    if (keep_others(work, place) != 0) {
+        an_fail(err, AN_E_IO, work, "other files of the old folder are left here: %s", strerror(errno));
+        work[0] = '\0';
+        return AN_E_IO;
+    }
     an_folder_drop(work);
+    work[0] = '\0';
     sync_folder(into);
     return AN_OK;
 }
@@ -163,5 +168,6 @@ static int remove_one(const char *path, const struct stat *about, int kind, stru
 
 void an_folder_drop(const char *work)
 {
-    nftw(work, remove_one, 16, FTW_DEPTH | FTW_PHYS);
+    if (work[0])
+        nftw(work, remove_one, 16, FTW_DEPTH | FTW_PHYS);
 }

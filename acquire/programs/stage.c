@@ -1,4 +1,5 @@
-/* stage.c: stage programs are started by posix_spawn and waited for; what they say is kept, to be shown or summed up.
+/* stage.c: stage programs are started by posix_spawn and waited for; what they say is kept, to be shown or
+ * summed up.
  */
 #include "acquire/programs/stage.h"
 
@@ -84,7 +85,8 @@ an_status an_stage_run(const char *folder, const char *const *arguments, an_stag
     if (status >= 0) {
         collect(said, end);
         if (end->exit_code >= 128 && !end->said[0])
-            snprintf(end->said, sizeof end->said, "%s: ended by signal %d", arguments[0], end->exit_code - 128);
+            snprintf(end->said, sizeof end->said, "%s: ended by signal %d", arguments[0],
+                     end->exit_code - 128);
     }
     close(said);
     return status;
