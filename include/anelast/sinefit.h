@@ -47,6 +47,7 @@ typedef struct an_sinefit {
     double level[AN_CHANNELS];                    /* [unit of y] the one the covariance was made with */
     double excess[AN_CHANNELS];                   /* [1] probability of so high a level near the line from white noise */
     double covariance[4][4];                      /* displacement Re, -Im, force Re, -Im of A_1: [unit of y squared] */
+    double tie[4];                                /* d (the same four) / d omega: [unit of y s/rad]; 0 where it was known */
     double complex stiffness;                     /* [N/m] force / displacement */
     double stiffness_noise[3];                    /* [N2/m2] var K', cov(K', K''), var K'' */
     double n_cycle;                               /* [1] in the window */

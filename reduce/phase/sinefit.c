@@ -117,14 +117,14 @@ static double correlation(const an_model *m, const an_solution *s)
 /* Covariance of Re and Im of both amplitudes: linear part, correlation, and the frequency's. */
 static void fill_covariance(const an_waveform *w, const an_model *m, const an_solution *s, double var_omega, an_sinefit *fit)
 {
-    double shift[4] = {0}, rho = correlation(m, s);
-    for (int a = 0; a < 4; a++)
+    double rho = correlation(m, s), *tie = fit->tie;
+    for (int a = 0; a < 4 && var_omega > 0; a++)
         for (int j = 0; j < m->n_column; j++)
-            shift[a] -= s->inverse[a % 2][j] * s->slope_column[a / 2][j];
+            tie[a] -= s->inverse[a % 2][j] * s->slope_column[a / 2][j];
     for (int a = 0; a < 4; a++)
         for (int b = 0; b < 4; b++) {
             double level = fit->level[a / 2] * fit->level[b / 2] * (a / 2 == b / 2 ? 1 : rho);
-            fit->covariance[a][b] = level * s->inverse[a % 2][b % 2] + var_omega * shift[a] * shift[b];
+            fit->covariance[a][b] = level * s->inverse[a % 2][b % 2] + var_omega * tie[a] * tie[b];
         }
     for (int a = 0; a < 4; a++)
         fit->covariance[a][a] += recurring_rounding(w, m, a / 2, fit->level[a / 2]);
