@@ -11,11 +11,12 @@
 /* Samples in a block whose repetition is no chance. */
 enum { BLOCK = 8 };
 
-/* Longest run of one value while the fit, y less residual, moves by more than 6 noise levels and 6 steps. */
+/* Longest run of one value while the fit, y less residual, moves by more than 6 noise levels and 6 steps. The fault itself
+ * raises the level, so a tenth of the amplitude is enough. */
 static int frozen(const an_waveform *w, int c, int first, const an_sinefit *fit, const double *residual)
 {
     const double *y = w->y[c], *r = residual + (size_t)c * (size_t)w->n;
-    double far = 6 * fit->level[c] + 6 * w->resolution[c];
+    double far = fmin(6 * fit->level[c], 0.1 * cabs(fit->amplitude[c][0])) + 6 * w->resolution[c];
     int longest = 0;
     for (int i = first, start = first; i < w->n; i++) {
         if (y[i] != y[start] || (w->use && !w->use[i]))
@@ -91,7 +92,8 @@ static void mains(const an_waveform *w, int first, const an_sinefit *fit, const 
     for (size_t k = 0; k < sizeof LINES_HZ / sizeof *LINES_HZ; k++) {
         double f = LINES_HZ[k], order = f / fit->frequency_Hz;
         double off = fabs(order - fmax(1, round(order))) * fit->frequency_Hz;
-        if (f > 0.9 * nyquist || f * span < 3 || off * span < 1.5)
+        int own = order < 2 * fit->n_harmonic && off * span < 1.5; /* may be a harmonic of ours */
+        if (f > 0.9 * nyquist || f * span < 3 || own)
             continue;
         double size = cabs(an_sinefit_line(n, w->time_s + first, residual + (size_t)w->n + (size_t)first,
                                            w->use ? w->use + first : NULL, f));
