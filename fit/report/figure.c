@@ -162,6 +162,7 @@ void an_figure_add_series(an_figure *figure, const an_figure_series *series)
     i->series.u = take_array(figure, series->u, series->n);
     i->series.hovers = take_hovers(figure, series->hovers, series->n);
     i->series.name = take_text(figure, series->name);
+    i->series.legend = take_text(figure, series->legend);
     if (!i->series.x || !i->series.y)
         i->series.n = 0;
     if (!(series->style.radius > 0))

@@ -27,7 +27,7 @@ static const char *item_name(const item *i)
 {
     switch (i->kind) {
     case ITEM_SERIES:
-        return i->series.legend ? i->series.name : NULL;
+        return i->series.legend;
     case ITEM_BAND:
         return i->band.name;
     case ITEM_SHADE:
@@ -285,6 +285,14 @@ static void draw_exponent(FILE *out, int exponent, const char *anchor, double x,
     fputs("</text>\n", out);
 }
 
+/* A label longer than its panel is set smaller, so that it stays clear of its neighbours'. */
+static double y_label_size(const panel *p)
+{
+    double width = markup_width(p->y.label, FIGURE_LABEL_SIZE);
+    double room = p->height + 8;
+    return width <= room ? FIGURE_LABEL_SIZE : fmax(FIGURE_LABEL_SIZE * room / width, 10);
+}
+
 static void draw_y_labels(FILE *out, const frame *f, const panel *p, const scale *y, const tick_set *ticks)
 {
     double top = y->origin + y->length;
@@ -297,11 +305,13 @@ static void draw_y_labels(FILE *out, const frame *f, const panel *p, const scale
     draw_exponent(out, ticks->exponent, "start", f->left, top - 6);
     if (!p->y.label)
         return;
-    fprintf(out, "<text text-anchor=\"middle\" font-size=\"%g\" transform=\"translate(15 ",
-            FIGURE_LABEL_SIZE);
+    double size = y_label_size(p);
+    fputs("<text text-anchor=\"middle\"", out);
+    markup_attribute(out, "font-size", size);
+    fputs(" transform=\"translate(15 ", out);
     markup_coordinate(out, top + p->height / 2);
     fputs(") rotate(-90)\">", out);
-    markup_label(out, p->y.label, MARKUP_SVG, FIGURE_LABEL_SIZE);
+    markup_label(out, p->y.label, MARKUP_SVG, size);
     fputs("</text>\n", out);
 }
 

@@ -91,8 +91,8 @@ tick_set ticks_make(const scale *s, int most_labels);
 void tick_write(FILE *out, const tick_set *ticks, int i_major, double size);
 double tick_width(const tick_set *ticks, int i_major, double size);
 
-#define FIGURE_TICK_SIZE  13.0 /* font sizes [viewBox unit] */
-#define FIGURE_LABEL_SIZE 14.0
+#define FIGURE_TICK_SIZE  14.0 /* font sizes [viewBox unit] */
+#define FIGURE_LABEL_SIZE 15.0
 
 /* Where everything stands [viewBox unit]. */
 typedef struct frame {

@@ -70,9 +70,9 @@ typedef struct an_figure_series {
     const double *y; /* [n], unit of the axis */
     const double *u; /* [n] half-length of the error bars, unit of y; NULL: none */
     size_t n;
-    const char *name;           /* plain; in the legend and in hover texts; NULL: neither */
-    const char *const *hovers;  /* [n] plain hover texts in place of the made ones; NULL, or an item NULL: made */
-    bool legend;                /* show name in the legend; a name already there is not repeated */
+    const char *name;          /* plain; opens the made hover texts; NULL: no hover texts are made */
+    const char *const *hovers; /* [n] plain hover texts in place of the made ones; NULL, or an item NULL: made */
+    const char *legend;        /* plain; what the legend calls it; NULL or known there already: no entry */
     bool neutral;               /* the legend shows the style in ink, since colour stands for another quantity */
     bool loose;                 /* does not widen the ranges of the axes */
     an_figure_style style;

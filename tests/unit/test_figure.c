@@ -138,7 +138,7 @@ static an_figure *everything(void)
                                                      .u = u,
                                                      .n = 4,
                                                      .name = "lot <A>",
-                                                     .legend = true,
+                                                     .legend = "lot <A>",
                                                      .style = {.color = an_ramp_color(0.3),
                                                                .marker = AN_MARKER_RING,
                                                                .stroke = AN_STROKE_DASHED}});
@@ -217,7 +217,7 @@ static void test_everything_shown_is_escaped(void **state)
                                                      .n = 2,
                                                      .name = evil,
                                                      .hovers = hovers,
-                                                     .legend = true,
+                                                     .legend = evil,
                                                      .style = {.marker = AN_MARKER_DISC}});
     an_figure_add_band(figure, &(an_figure_band){.x = x, .low = low, .high = y, .n = 2, .name = evil});
     an_figure_add_shade(figure, 1, 2, AN_SHADE_TINT, evil);
@@ -264,12 +264,9 @@ static void test_legend_entries_do_not_overlap(void **state)
     an_figure *figure = new_figure(AN_AXIS_LINEAR);
     an_figure_add_panel(figure, &(an_figure_axis){0}, 100);
     for (int k = 0; k < 7; k++)
-        an_figure_add_series(figure, &(an_figure_series){.x = x,
-                                                         .y = y,
-                                                         .n = 2,
-                                                         .name = names[k],
-                                                         .legend = true,
-                                                         .style = {.stroke = AN_STROKE_SOLID}});
+        an_figure_add_series(
+            figure, &(an_figure_series){
+                        .x = x, .y = y, .n = 2, .legend = names[k], .style = {.stroke = AN_STROKE_SOLID}});
     char *text = text_of(figure);
     double end_x = -1, row = -1;
     for (int k = 0; k < 7; k++) {
@@ -283,7 +280,7 @@ static void test_legend_entries_do_not_overlap(void **state)
         assert_int_equal(sscanf(found, "<text text-anchor=\"start\" x=\"%lf\" y=\"%lf\"", &at, &y_at), 2);
         assert_true(y_at > row || at - 31 >= end_x); /* 31: sample and gap before the text */
         end_x =
-            at + 13 * 0.55 * (double)strlen(names[k]); /* mean advance of sans-serif text, common practice */
+            at + 14 * 0.55 * (double)strlen(names[k]); /* mean advance of sans-serif text, common practice */
         row = y_at;
         assert_true(end_x <= AN_FIGURE_WIDTH);
     }

@@ -1,0 +1,169 @@
+/* What the sections of the page share: numbered figures, tables in their own scrolling box, and which
+ * document speaks for what. Stage report.
+ */
+#include "fit/report/page.h"
+
+#include <ctype.h>
+#include <string.h>
+
+static void keep(page *p, an_status status)
+{
+    if (status < 0 && p->status >= 0)
+        p->status = status;
+}
+
+an_figure *page_figure_new(page *p, const an_figure_spec *spec)
+{
+    an_figure *figure = NULL;
+    if (p->status >= 0)
+        keep(p, an_figure_new(&figure, spec, p->err));
+    return figure;
+}
+
+void page_figure_end(page *p, an_figure **figure, const char *caption)
+{
+    if (!*figure)
+        return;
+    fputs("<figure>\n", p->out);
+    if (an_figure_is_empty(*figure))
+        fputs(
+            "<p class=\"absent\">Nothing to draw: the documents hold no finite value for this figure.</p>\n",
+            p->out);
+    else
+        keep(p, an_figure_write(*figure, p->out, p->err));
+    fprintf(p->out, "<figcaption><b>Figure %d.</b> %s</figcaption>\n</figure>\n", ++p->n_figure, caption);
+    an_figure_free(figure);
+}
+
+void page_ramp_temperature(const page *p, an_figure *figure)
+{
+    an_figure_set_ramp(figure, &(an_figure_ramp){.label = "Temperature (°C)",
+                                                 .from = p->cells.temperature_C[0],
+                                                 .to = p->cells.temperature_C[1]});
+}
+
+void page_absent(page *p, const char *what, const char *why)
+{
+    fputs("<p class=\"absent\"><b>", p->out);
+    markup_plain(p->out, what);
+    fputs("</b> ", p->out);
+    markup_plain(p->out, why);
+    fputs("</p>\n", p->out);
+}
+
+void page_sentence(FILE *out, const char *text)
+{
+    size_t n = strlen(text);
+    if (n == 0)
+        return;
+    bool lower = islower((unsigned char)text[0]) && isascii(text[0]);
+    const char capital[2] = {(char)toupper((unsigned char)text[0]), '\0'};
+    markup_plain(out, lower ? capital : "");
+    markup_plain(out, lower ? text + 1 : text);
+    if (!strchr(".!?", text[n - 1]))
+        fputc('.', out);
+}
+
+const char *page_law_name(an_law_kind kind)
+{
+    switch (kind) {
+    case AN_LAW_WLF:
+        return "WLF";
+    case AN_LAW_ARRHENIUS:
+        return "Arrhenius";
+    case AN_LAW_VFT:
+        return "VFT";
+    case AN_LAW_CROSSOVER:
+        return "WLF over Arrhenius";
+    case AN_LAW_POLYNOMIAL:
+        return "polynomial";
+    default:
+        return "none";
+    }
+}
+
+const an_specimen *page_specimen(const an_report *report)
+{
+    if (report->has_run)
+        return &report->run.specimen;
+    if (report->has_points)
+        return &report->points.specimen;
+    if (report->has_grid)
+        return &report->grid.specimen;
+    if (report->has_master)
+        return &report->master.specimen;
+    return report->has_material ? &report->material.specimen : NULL;
+}
+
+const an_assessment *page_assessment(const an_report *report)
+{
+    if (report->has_grid)
+        return &report->grid.assessment;
+    return report->has_master ? &report->master.assessment : NULL;
+}
+
+const char *page_no_material(const an_report *report)
+{
+    if (report->has_material)
+        return NULL;
+    if (!report->has_master)
+        return "No spectrum was made: the isotherms were not joined to a master curve.";
+    if (report->master.simplicity == AN_COMPLEX)
+        return "No spectrum was handed over: the isotherms do not superpose, so that one spectrum with one "
+               "shift would not "
+               "describe this material outside the measured temperatures and frequencies.";
+    return "No material document was given to this page.";
+}
+
+void cell_text(FILE *out, const char *text)
+{
+    fputs("<td>", out);
+    markup_plain(out, text);
+    fputs("</td>", out);
+}
+
+void cell_words(FILE *out, const char *text)
+{
+    fputs("<td class=\"w\">", out);
+    markup_plain(out, text);
+    fputs("</td>", out);
+}
+
+void cell_number(FILE *out, double value, int digits)
+{
+    fputs("<td class=\"n\">", out);
+    markup_number(out, value, digits);
+    fputs("</td>", out);
+}
+
+void cell_with_u(FILE *out, double value, double u)
+{
+    fputs("<td class=\"n\">", out);
+    markup_with_u(out, value, u);
+    fputs("</td>", out);
+}
+
+void cell_integer(FILE *out, long value)
+{
+    fprintf(out, "<td class=\"n\">%ld</td>", value);
+}
+
+void table_begin(FILE *out, const char *caption, const char *const *heads)
+{
+    fputs("<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"", out);
+    markup_plain(out, caption);
+    fputs("\"><table>\n<caption><span>", out);
+    markup_plain(out, caption);
+    fputs("</span></caption>\n<thead><tr>", out);
+    for (; *heads; heads++) {
+        fputs("<th scope=\"col\">", out);
+        markup_label(out, *heads, MARKUP_HTML, 0);
+        fputs("</th>", out);
+    }
+    fputs("</tr></thead>\n<tbody>\n", out);
+}
+
+void table_end(FILE *out)
+{
+    fputs("</tbody></table></div>\n", out);
+}
