@@ -14,8 +14,6 @@ static const char evil[] = "\"><script>alert('pad & rail')</script>";
 
 enum { TEMPERATURES = 7, FREQUENCIES = 6, SAMPLES = 600 };
 
-static const char evil[] = "\"><script>alert('pad & rail')</script>";
-
 static double temperature_of(int i)
 {
     return 253.15 + 15 * i;
