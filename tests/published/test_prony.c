@@ -7,6 +7,7 @@
 
 #include "anelast/interconvert.h"
 #include "anelast/law.h"
+#include "anelast/material.h"
 #include "check_spectra.h"
 
 static void load(const check_row *row, an_maxwell *model)
@@ -190,6 +191,42 @@ static an_status there_and_back(const check_row *row, double *actual, an_error *
     return status;
 }
 
+static void write_document(const char *path, const an_material *material)
+{
+    FILE *stream = fopen(path, "w");
+    assert_non_null(stream);
+    an_xml_writer *writer = an_xml_writer_new(stream, "material");
+    an_material_write(writer, material);
+    assert_true(an_xml_writer_finish(writer, NULL) >= 0);
+    an_xml_writer_free(&writer);
+    fclose(stream);
+}
+
+/* The series as a material document, written here whatever it holds, and read by the reader that judges. */
+static an_status document(const check_row *row, double *actual, an_error *err)
+{
+    static const char path[] = "published_material.xml";
+    an_material material;
+    an_material_init(&material);
+    check_spectrum(row, 1e6, &material.modes);
+    material.reference_temperature_K = 293.15;
+    material.window_time_s[0] = material.modes.time_s[0];
+    material.window_time_s[1] = 1e12;
+    material.window_temperature_K[0] = material.window_temperature_K[1] = 293.15;
+    strcpy(material.id, "published");
+    strcpy(material.end_state, "solid");
+    strcpy(material.vertical, "none");
+    strcpy(material.simplicity, "simple");
+    assert_int_equal(an_made_init(&material.made, "test_prony", NULL), AN_OK);
+    write_document(path, &material);
+    an_material_clear(&material);
+    an_status status = an_material_read(path, &material, NULL, err);
+    *actual = (double)material.modes.n_mode;
+    an_material_clear(&material);
+    remove(path);
+    return status;
+}
+
 static void table(void **state)
 {
     (void)state;
@@ -198,6 +235,7 @@ static void table(void **state)
         {"complex", complex_row}, {"complex at", complex_at}, {"instantaneous", instantaneous},
         {"viscosity", viscosity}, {"steady", steady},         {"retardation", retardation},
         {"glass", glass},         {"creep", creep},           {"back", there_and_back},
+        {"document", document},
     };
     check_table_run("prony.txt", quantity, sizeof quantity / sizeof quantity[0]);
 }
