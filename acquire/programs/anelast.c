@@ -27,8 +27,8 @@ static const an_option rows[] = {
     {"apparatus", 'a', "FILE", NULL, NULL, "the one beside the dump, if any",
      "The bench and its calibration"},
     {"into", 'd', "DIR", NULL, NULL, ".", "Folder of the run folders; made where it does not exist"},
-    {"override", 0, "REASON", NULL, NULL, NULL,
-     "Hand over a material that does not superpose all the same; who says so and why stands in it"},
+    {"override-complex", 0, "TEXT", NULL, "who and why", NULL,
+     "Hand over a material that does not superpose all the same; the text stands in it"},
 };
 static const an_program program = {
     .name = "anelast",
@@ -79,9 +79,10 @@ int main(int argc, char **argv)
     if (an_stage_folder(programs, sizeof programs, &err) < 0)
         return an_program_refuse(&program, &err);
     const char *into = an_argument(&arguments, "into");
-    an_after_options options = {an_argument(&arguments, "layout"),    an_argument(&arguments, "specimen"),
-                                an_argument(&arguments, "apparatus"), an_argument(&arguments, "procedure"),
-                                an_argument(&arguments, "override"),  into ? into : "."};
+    an_after_options options = {
+        an_argument(&arguments, "layout"),           an_argument(&arguments, "specimen"),
+        an_argument(&arguments, "apparatus"),        an_argument(&arguments, "procedure"),
+        an_argument(&arguments, "override-complex"), into ? into : "."};
     int worst = 0;
     for (int i = 0; i < arguments.n_files; i++) {
         int exit_code = reduce_one(programs, arguments.files[i], &options, arguments.quiet);

@@ -96,6 +96,114 @@ static const an_column signals[] = {
     {"offset", "@offset", NULL}, {"samples", "@count", NULL},
 };
 
+static const an_column shifts[] = {
+    {"temperature_K", "temperature/@value", "K"}, {"log10_aT", "log10_aT/@value", "1"},
+    {"u_log10_aT", "log10_aT/@u", "1"},           {"log10_bT", "log10_bT/@value", "1"},
+    {"u_log10_bT", "log10_bT/@u", "1"},
+};
+
+static const an_column shift_parts[] = {
+    {"temperature_K", "temperature/@value", "K"},     {"determined", "@determined", NULL},
+    {"u_temperature_K", "temperature/@u", "K"},       {"u_noise_log10_aT", "log10_aT/@u_noise", "1"},
+    {"u_common_log10_aT", "log10_aT/@u_common", "1"}, {"u_noise_log10_bT", "log10_bT/@u_noise", "1"},
+    {"u_common_log10_bT", "log10_bT/@u_common", "1"},
+};
+
+static const an_column shift_covariance[] = {
+    {"log10_aT_then_log10_bT_by_rows", "text()", NULL},
+};
+
+static const an_column superposition[] = {
+    {"verdict", "@verdict", NULL},
+    {"reason", "@reason", NULL},
+    {"vertical", "@vertical", NULL},
+    {"reference_temperature_K", "reference_temperature/@value", "K"},
+    {"chi_square", "chi_square/@value", "1"},
+    {"degrees_of_freedom", "@degrees_of_freedom", NULL},
+    {"reduced_chi_square", "reduced_chi_square/@value", "1"},
+    {"separation_rad", "separation/@value", "rad"},
+};
+
+static const an_column trials[] = {
+    {"law", "@kind", NULL},
+    {"chosen", "@chosen", NULL},
+    {"constants", "@constants", NULL},
+    {"chi_square", "chi_square/@value", "1"},
+    {"criterion", "criterion/@value", "1"},
+    {"refused", "@refused", NULL},
+};
+
+static const an_column constants[] = {
+    {"law", "../@kind", NULL},   {"reference_temperature_K", "../reference_temperature/@value", "K"},
+    {"constant", "@name", NULL}, {"value", "@value", NULL},
+    {"unit", "@unit", NULL},     {"u", "@u", NULL},
+};
+
+static const an_column curve[] = {
+    {"isotherm", "@isotherm", NULL},
+    {"burst", "@burst", NULL},
+    {"temperature_K", "temperature/@value", "K"},
+    {"frequency_Hz", "frequency/@value", "Hz"},
+    {"reduced_omega_rad_s", "reduced_omega/@value", "rad/s"},
+    {"storage_Pa", "storage/@value", "Pa"},
+    {"u_storage_Pa", "storage/@u", "Pa"},
+    {"loss_Pa", "loss/@value", "Pa"},
+    {"u_loss_Pa", "loss/@u", "Pa"},
+    {"residual_storage", "residual/@storage", NULL},
+    {"residual_loss", "residual/@loss", NULL},
+    {"outlier", "@outlier", NULL},
+};
+
+static const an_column modes[] = {
+    {"relaxation_time_s", "relaxation_time/@value", "s"},
+    {"modulus_Pa", "modulus/@value", "Pa"},
+    {"relative_weight", "relative_weight/@value", "1"},
+    {"trusted", "@trusted", NULL},
+};
+
+static const an_column limits[] = {
+    {"basis", "../spectrum/@basis", NULL},
+    {"end_state", "../spectrum/@end_state", NULL},
+    {"reference_temperature_K", "../spectrum/reference_temperature/@value", "K"},
+    {"instantaneous_modulus_Pa", "../spectrum/instantaneous_modulus/@value", "Pa"},
+    {"long_term_modulus_Pa", "../spectrum/long_term_modulus/@value", "Pa"},
+    {"time_from_s", "time_from/@value", "s"},
+    {"time_to_s", "time_to/@value", "s"},
+    {"temperature_from_K", "temperature_from/@value", "K"},
+    {"temperature_to_K", "temperature_to/@value", "K"},
+    {"strain_to", "strain_to/@value", "1"},
+};
+
+static const an_column cautions[] = {{"caution", "text()", NULL}};
+
+static const an_column scaling[] = {
+    {"temperature_K", "temperature/@value", "K"},
+    {"log10_bT", "log10_bT/@value", "1"},
+};
+
+static const an_column ladder[] = {
+    {"burst", "../@burst", NULL},
+    {"rung", "@name", NULL},
+    {"storage", "@storage", "1"},
+    {"loss", "@loss", "1"},
+};
+
+static const an_column quality[] = {
+    {"burst", "@burst", NULL},
+    {"state", "@state", NULL},
+    {"samples", "record/@samples", NULL},
+    {"cycles", "record/@cycles", NULL},
+    {"cycles_dropped", "record/@cycles_dropped", NULL},
+    {"second_harmonic", "record/@second_harmonic", NULL},
+    {"third_harmonic", "record/@third_harmonic", NULL},
+    {"snr_dB", "record/@snr_dB", NULL},
+    {"static_force_N", "static_force/@value", "N"},
+    {"force_N", "force/@value", "N"},
+    {"displacement_m", "displacement/@value", "m"},
+    {"strain", "strain/@value", "1"},
+    {"stiffness_compliance", "stiffness_compliance/@value", "1"},
+};
+
 static const an_column remarks[] = {
     {"code", "@code", NULL},  {"severity", "@severity", NULL}, {"burst", "@burst", NULL},
     {"text", "text()", NULL}, {"action", "@action", NULL},
@@ -124,6 +232,9 @@ static const an_table tables[] = {
     {"points", "covariance", "point/noise", "noise covariance of one burst", COLUMNS(covariance)},
     {"points", "budget", "point/common", "what one source of common uncertainty does to one burst",
      COLUMNS(budget)},
+    {"points", "ladder", "point/rung", "what one rung of corrections did to one burst, of |K|",
+     COLUMNS(ladder)},
+    {"points", "quality", "point", "the record of one burst", COLUMNS(quality)},
     {"grid", "cells", "isotherm/cell", "one temperature and frequency: the complex modulus", COLUMNS(cells)},
     {"grid", "isotherms", "isotherm", "one isotherm", COLUMNS(isotherms)},
     {"grid", "ramp", "ramp/cell", "one burst on a ramp", COLUMNS(points)},
@@ -132,6 +243,23 @@ static const an_table tables[] = {
     {"grid", "covariance", "isotherm/cell/noise", "noise covariance of one cell", COLUMNS(covariance)},
     {"grid", "budget", "isotherm/cell/common", "what one source of common uncertainty does to one cell",
      COLUMNS(budget)},
+    {"master", "shifts", "shifts/shift", "one isotherm's shift factors", COLUMNS(shifts)},
+    {"master", "shift_parts", "shifts/shift", "parts of the uncertainty of one isotherm's shift factors",
+     COLUMNS(shift_parts)},
+    {"master", "covariance", "shifts/covariance", "noise covariance of all shift factors",
+     COLUMNS(shift_covariance)},
+    {"master", "superposition", "superposition", "the verdict with its numbers", COLUMNS(superposition)},
+    {"master", "laws", "trial", "one shift law that was tried", COLUMNS(trials)},
+    {"master", "constants", "trial/law/constant", "one constant of one law", COLUMNS(constants)},
+    {"master", "curve", "point", "one cell on the master curve", COLUMNS(curve)},
+    {"master", "modes", "spectrum/mode", "one mode of the joint fit", COLUMNS(modes)},
+    {"master", "reasons", "assessment/reason", "one reason of the assessment", COLUMNS(reasons)},
+    {"material", "modes", "spectrum/mode", "one mode handed over", COLUMNS(modes)},
+    {"material", "limits", "valid", "moduli, reference and valid ranges", COLUMNS(limits)},
+    {"material", "constants", "law/constant", "one constant of the shift law", COLUMNS(constants)},
+    {"material", "scaling", "elastic_scaling/scale", "the elastic scaling at one temperature",
+     COLUMNS(scaling)},
+    {"material", "cautions", "caution", "one caution", COLUMNS(cautions)},
     {"run", "bursts", "burst", "one burst", COLUMNS(bursts)},
     {"run", "signals", "burst/signal", "one channel of one burst", COLUMNS(signals)},
     {"procedure", "choices", "choice", "one choice", COLUMNS(choices)},

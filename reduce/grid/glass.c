@@ -269,10 +269,10 @@ void an_glass_peak(const an_series *series, an_reading *reading)
     place where = {0};
     if (!comes_down(series, at, -1))
         refuse(reading,
-               "greatest at the coldest temperatures: the peak lies at the edge of the range or below it");
+               "does not fall at the cold end beyond noise: the peak lies near the edge of the range or below it");
     else if (!comes_down(series, at, 1))
         refuse(reading,
-               "greatest at the hottest temperatures: the peak lies at the edge of the range or above it");
+               "does not fall at the hot end beyond noise: the peak lies near the edge of the range or above it");
     else if (overlaps(series, at))
         refuse(reading, "two peaks overlap");
     if (reading->reason[0])

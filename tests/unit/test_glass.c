@@ -145,8 +145,8 @@ static void what_cannot_be_read_is_refused_with_the_reason(void **state)
 {
     (void)state;
     expect_refusal(235, 3, 6, AN_READING_LOSS_PEAK,
-                   "hottest"); /* ends at 250 K, before the peak near 256 K */
-    expect_refusal(260, 5, 11, AN_READING_LOSS_PEAK, "coldest");
+                   "hot end"); /* ends at 250 K, before the peak near 256 K */
+    expect_refusal(260, 5, 11, AN_READING_LOSS_PEAK, "cold end");
     expect_refusal(245, 5, 4, AN_READING_LOSS_PEAK, "4 temperatures");
     expect_refusal(252, 5, 11, AN_READING_STORAGE_ONSET, "no glass");
     expect_refusal(225, 3, 6, AN_READING_STORAGE_ONSET, "no transition");
