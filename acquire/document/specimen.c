@@ -56,8 +56,8 @@ enum { N_DIMENSIONS = sizeof dimensions / sizeof *dimensions };
 
 /* What a kind needs: alternatives separated by '|', all of an alternative's names by blanks. */
 static const char *const needed[AN_GEOMETRY_COUNT] = {
-    [AN_TENSION] = "length area|length width thickness|length diameter",
-    [AN_COMPRESSION_FREE] = "height area|height width length|height diameter",
+    [AN_TENSION] = "length width thickness|length diameter|length area",
+    [AN_COMPRESSION_FREE] = "height width length|height diameter|height area",
     [AN_COMPRESSION_BONDED] = "height area shape_factor|height width length|height diameter",
     [AN_SHEAR_DOUBLE_LAP] = "height length area|height length width",
     [AN_CANTILEVER_GUIDED] = "length width thickness",
@@ -292,16 +292,18 @@ static const an_measure *dimension_named(const an_geometry *geometry, const char
     return NULL;
 }
 
-/* How many dimensions of one alternative are not there; the first of them in missing. */
-static int count_missing(const an_geometry *geometry, const char *names, size_t n, const dimension **missing)
+/* How many dimensions of one alternative are not there; the first of them in missing; those that are there in given. */
+static int count_missing(const an_geometry *geometry, const char *names, size_t n, const dimension **missing, int *given)
 {
     int n_missing = 0;
+    *given = 0;
     for (size_t at = 0; at < n;) {
         size_t length = strcspn(names + at, " |");
         const dimension *row = NULL;
         const an_measure *measure = dimension_named(geometry, names + at, length, &row);
         if (measure && isnan(measure->value) && n_missing++ == 0)
             *missing = row;
+        *given += measure && !isnan(measure->value);
         at += length + 1;
     }
     return n_missing;
@@ -311,20 +313,19 @@ static an_status check_needed(const an_specimen *specimen, an_error *err)
 {
     const char *rule = needed[specimen->geometry.kind];
     const dimension *missing = NULL;
-    int fewest = N_DIMENSIONS;
+    int most_given = -1, given;
     for (const char *at = rule; *at;) {
         size_t length = strcspn(at, "|");
         const dimension *first = NULL;
-        int n_missing = count_missing(&specimen->geometry, at, length, &first);
-        if (n_missing == 0)
+        if (count_missing(&specimen->geometry, at, length, &first, &given) == 0)
             return AN_OK;
-        if (n_missing < fewest) {
-            fewest = n_missing;
+        if (given > most_given) { /* what was begun is what was meant */
+            most_given = given;
             missing = first;
         }
         at += length + (at[length] == '|');
     }
-    return an_fail(err, AN_E_VALUE, NULL, "specimen: %s is not given; %s needs %s",
+    return an_fail(err, AN_E_VALUE, NULL, "specimen: %s is not given; %s needs one of: %s",
                    missing ? missing->name : "a dimension", an_geometry_word(specimen->geometry.kind), rule);
 }
 

@@ -109,7 +109,9 @@ static an_status bind_channel(counts_reader *reader, int i, an_error *err)
                        "channel %d '%s' is not mapped; give it a role in the layout, or list it as ignored", i + 1,
                        said->name);
     }
-    AN_TRY(an_rows_bind(&reader->rows, channel, i, said->unit, strlen(said->unit), err));
+    an_status status = an_rows_bind(&reader->rows, channel, i, said->unit, strlen(said->unit), err);
+    if (status < 0)
+        return err ? an_error_at(err, reader->source->sidecar ? reader->source->sidecar : reader->source->path) : status;
     reader->in[i] = &reader->rows.in[channel->role];
     if (!isnan(said->size) && said->size != 0)
         reader->in[i]->size = said->size;
@@ -217,6 +219,23 @@ static an_status read_tabled_burst(counts_reader *reader, const an_burst_facts *
     return an_rows_end_burst(rows, err);
 }
 
+/* Where one channel stands after the other, a missing byte moves all channels but the first: nothing can be saved. */
+static an_status check_planar(const counts_reader *reader, an_error *err)
+{
+    size_t n_needed = 0;
+    for (size_t i = 0; i < reader->sidecar.n_burst; i++) {
+        double end = reader->sidecar.bursts[i].first_sample + reader->sidecar.bursts[i].samples;
+        if (end < 1e12 && (size_t)end > n_needed)
+            n_needed = (size_t)end;
+    }
+    if (!reader->form->planar || (reader->n_rest == 0 && n_needed <= reader->n_frame))
+        return AN_OK;
+    return an_fail(err, AN_E_FORMAT, reader->source->path,
+                   "the dump ends after %zu samples a channel and %zu bytes, the burst table names %zu; with one channel "
+                   "after the other nothing of it can be told apart",
+                   reader->n_frame, reader->n_rest, n_needed);
+}
+
 static an_status read_bursts(counts_reader *reader, an_error *err)
 {
     an_rows *rows = &reader->rows;
@@ -247,6 +266,7 @@ static an_status read_all(counts_reader *reader, an_error *err)
         AN_TRY(an_sidecar_read(source->sidecar, source->layout, &reader->sidecar, err));
     AN_TRY(bind_channels(reader, err));
     AN_TRY(open_dump(reader, err));
+    AN_TRY(check_planar(reader, err));
     AN_TRY(reader->rows.visitor->head(&reader->sidecar.head.specimen, reader->rows.visitor->user, err));
     return read_bursts(reader, err);
 }

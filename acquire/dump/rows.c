@@ -76,9 +76,11 @@ void an_rows_release(an_rows *rows)
 static an_status convert_unit(an_channel_in *in, an_role role, const char *unit, an_error *err)
 {
     const char *torsion = role == AN_ROLE_DISPLACEMENT ? "rad" : role == AN_ROLE_FORCE ? "N.m" : NULL;
-    an_status status = an_unit_convert(unit, an_role_unit(role), &in->conversion, err);
-    if (status >= 0 || !torsion || an_unit_convert(unit, torsion, &in->conversion, NULL) < 0)
-        return status;
+    an_error why;
+    if (an_unit_convert(unit, an_role_unit(role), &in->conversion, &why) >= 0)
+        return AN_OK;
+    if (!torsion || an_unit_convert(unit, torsion, &in->conversion, NULL) < 0)
+        return an_fail(err, AN_E_UNIT, NULL, "%s: %s", an_role_name(role), why.text);
     in->torsion = true;
     return AN_OK;
 }

@@ -83,7 +83,8 @@ static an_status hand_head(text_reader *reader, an_error *err)
         return AN_OK;
     reader->head_handed = true;
     AN_TRY(an_head_finish(&reader->head, reader->source->path, err));
-    return reader->rows.visitor->head(&reader->head.specimen, reader->rows.visitor->user, err);
+    an_status status = reader->rows.visitor->head(&reader->head.specimen, reader->rows.visitor->user, err);
+    return status < 0 && err && !err->place[0] ? an_error_at(err, reader->source->path) : status;
 }
 
 static an_status open_block(text_reader *reader, long step, an_error *err)

@@ -1,0 +1,173 @@
+#!/bin/bash
+# Bad dumps: each gives its message with program, file, line and what is allowed, its exit code, and no output file; what can
+# be saved of a cut dump is saved, and held. The dumps are pieces of the demo lab's, each broken in one way.
+set -u
+failed=0
+lab=$ANELAST_SOURCE/fixtures/lower_quay
+pads=$lab/rail_pad
+laminates=$lab/hull_laminate
+rm -rf work && mkdir work && cd work || exit 1
+
+fail() {
+    echo "FAIL: $*" >&2
+    failed=1
+}
+
+# The first four bursts of a good dump: 12 lines of head, 1 of units, 128 rows a burst.
+head -n 525 "$pads/RP-0522-1.csv" >good.csv
+
+take() {
+    "$ANELAST_BIN/anelast-intake" "$1" --layout "${layout:-$pads/layout.xml}" --specimen "${specimen:-$pads/specimen.xml}" \
+        --apparatus "$pads/apparatus.xml" -o out.xml >out.txt 2>err.txt
+}
+
+# refuse CODE DUMP TEXT...: taking DUMP in ends with CODE, says each TEXT, and leaves no file.
+refuse() {
+    local code=$1 dump=$2 got text
+    shift 2
+    take "$dump"
+    got=$?
+    [ "$got" = "$code" ] || fail "$dump: exit code $got, expected $code: $(cat err.txt)"
+    for text in "anelast-intake: " "$@"; do
+        grep -qF -- "$text" err.txt || fail "$dump: '$text' is not said: $(cat err.txt)"
+    done
+    [ -s out.txt ] && fail "$dump: something on standard output"
+    [ -z "$(find . -name '*out.xml*')" ] || fail "$dump: left behind: $(find . -name '*out.xml*')"
+    rm -f ./*out.xml*
+}
+
+# accept DUMP TEXT...: taking DUMP in ends with 0, and the document says each TEXT.
+accept() {
+    local dump=$1 text
+    shift
+    take "$dump" || fail "$dump: refused: $(cat err.txt)"
+    for text in "$@"; do
+        grep -qF -- "$text" out.xml || fail "$dump: the document does not say '$text': $(grep -o '<remark.*' out.xml)"
+    done
+    rm -f out.xml
+}
+
+accept good.csv '<end bursts="4"/>' 'id="RP-0522-1_2026-03-22T214000"' 'started="2026-03-22T21:40:00+01:00"'
+grep -q . err.txt && fail "good.csv: something on standard error: $(cat err.txt)"
+
+# files that are not there
+refuse 3 absent.csv "absent.csv: "
+layout=absent.xml refuse 3 good.csv "absent.xml: "
+specimen=absent.xml refuse 3 good.csv "absent.xml: "
+cp "$laminates/HL-0140.bin" alone.bin
+layout=$laminates/layout.xml specimen=$laminates/specimen.xml refuse 3 alone.bin "alone.txt: "
+
+# columns and keys
+sed '12s/Oven/Oven,Humidity/; 13s/$/,1/; 14,$s/$/,41/' good.csv >unmapped.csv
+refuse 1 unmapped.csv "unmapped.csv:12: " "columns that are not mapped: 'Humidity'"
+sed '12s/Load/Pull/' good.csv >renamed.csv
+refuse 1 renamed.csv "renamed.csv:12: " "no column for force ('Load')" "'Pull'"
+sed '4s/Lot/Batch/' good.csv >key.csv
+refuse 1 key.csv "key.csv:4: " "maps no key 'Batch' (line 4)"
+sed '12s/,/;/g' good.csv >separator.csv
+refuse 1 separator.csv "separator.csv: no row names the columns 'Step', 'Time', 'Position', 'Load'"
+sed '100s/$/,7/' good.csv >ragged.csv
+refuse 1 ragged.csv "ragged.csv:100: " "7 fields where the header row names 6 columns"
+
+# units
+sed '13s/,N,/,kN,/' good.csv >factor.csv
+refuse 1 factor.csv "factor.csv:13: force: the dump says unit 'kN', the layout 'N'"
+sed '13s/,N,/,mm,/' good.csv >dimension.csv
+refuse 1 dimension.csv "dimension.csv:13: force: the dump says unit 'mm', which is no unit of force"
+sed '8s/15.02/15.02 kg/' good.csv >mass.csv
+refuse 1 mass.csv "mass.csv:8: " "'Free length [mm]'" "kg"
+
+# numbers
+awk -F, -v OFS=, 'NR == 300 { $4 = "1;2" } 1' good.csv >text.csv
+refuse 1 text.csv "text.csv:300: step 3: force '1;2' is not a number (column 4 'Load')"
+awk -F, -v OFS=, 'NR == 300 { $4 = "4.12V" } 1' good.csv >unit.csv
+refuse 1 unit.csv "unit.csv:300: step 3: force '4.12V' is not a number (column 4 'Load')"
+sed '14,$s/,/;/g; 14,$s/\./,/g; 12,13s/,/;/g; 1,11s/,/;/' good.csv >comma.csv
+sed 's/separator="comma"/separator="semicolon"/' "$pads/layout.xml" >semicolon.xml
+layout=semicolon.xml refuse 1 comma.csv "comma.csv:14: step 1: " "is not a number" "the layout's decimal mark is '.'"
+sed '8s/15.02/about 15/' good.csv >about.csv
+refuse 1 about.csv "about.csv:8: " "'about 15' is not a number"
+sed '6s/22.03/2203/' good.csv >date.csv
+refuse 1 date.csv "date.csv:6: started: '2203.2026 21:40' is no date and time of the form"
+
+# the specimen
+sed '10d' good.csv >thickness.csv
+refuse 1 thickness.csv "thickness.csv: specimen: thickness is not given"
+sed '8s/15.02/15020000/' good.csv >long.csv
+refuse 1 long.csv "specimen: length 15020 m is outside"
+
+# encodings
+printf 'Operator,Pr\374fer\n' | cat - good.csv >latin.csv
+refuse 1 latin.csv "latin.csv:1: bytes that are no UTF-8"
+iconv -f UTF-8 -t UTF-16 good.csv >wide.csv
+refuse 1 wide.csv "a mark of UTF-16 stands at its beginning"
+printf '\0\0\0\0' | cat good.csv - >zero.csv
+refuse 1 zero.csv "zero.csv:526: a zero byte"
+: >empty.csv
+refuse 1 empty.csv "empty.csv: no row names the columns"
+head -n 13 good.csv >headonly.csv
+refuse 1 headonly.csv "headonly.csv: no row of samples"
+
+# cut dumps: the complete bursts stay, the last is to be skipped, the run is held
+head -c -30 good.csv >cut.csv
+accept cut.csv '<end bursts="4">' 'code="truncated" severity="skip" burst="4"' 'code="truncated" severity="hold"' \
+    "the dump ends within a row at line 525, 127 samples into burst 4; 3 bursts are complete"
+grep -qF "cut.csv: held: the dump ends within a row" err.txt || fail "cut.csv: not held: $(cat err.txt)"
+head -c -3 good.csv >digit.csv # "...,0.3" became "...,0"
+sed -n '$p' digit.csv | grep -q ',3$' && head -c -4 good.csv >digit.csv
+accept digit.csv 'code="truncated" severity="hold"'
+head -n 500 good.csv >short.csv
+accept short.csv "the dump ends too early at line 500, 103 samples into burst 4; 3 bursts are complete"
+head -c -1 good.csv >unended.csv
+accept unended.csv '<end bursts="4"/>'
+
+# marks instead of values: few are left out, many skip the burst
+awk -F, -v OFS=, 'NR == 150 { $4 = "9.91E37" } 1' good.csv >mark.csv
+sed 's/separator="comma"/separator="comma" unit_row="yes"/' "$pads/layout.xml" >marks.xml
+cat >patient.xml <<'X'
+<?xml version="1.0" encoding="UTF-8"?>
+<procedure xmlns="urn:x-anelast:documents:1" version="1.0"><choice name="missing_skip" value="0.02"/></procedure>
+X
+accept mark.csv 'code="missing-values" severity="skip" burst="2"' "1 of 128 rows have a mark instead of a value"
+"$ANELAST_BIN/anelast-intake" mark.csv -l marks.xml -s "$pads/specimen.xml" -p patient.xml -o out.xml 2>err.txt ||
+    fail "mark.csv with a patient procedure: $(cat err.txt)"
+grep -qF 'code="missing-values" severity="note" burst="2"' out.xml || fail "mark.csv: $(grep -o '<remark.*' out.xml)"
+[ "$(grep -c 'quantity="time"' out.xml)" = 1 ] || fail "mark.csv: the burst with a gap has no times of its own"
+[ "$(grep -c 'count="127"' out.xml)" = 4 ] || fail "mark.csv: the row with a mark was not left out of all signals"
+rm -f out.xml
+for mark in NaN --- ""; do
+    awk -F, -v OFS=, -v mark="$mark" 'NR == 150 { $4 = mark } 1' good.csv >mark.csv
+    accept mark.csv 'code="missing-values" severity="skip" burst="2"'
+done
+
+# binary dumps
+cp "$laminates/HL-0140.txt" .
+layout=$laminates/layout.xml
+specimen=$laminates/specimen.xml
+cp "$laminates/HL-0140.bin" .
+accept HL-0140.bin '<end bursts="55"/>'
+head -c -1001 "$laminates/HL-0140.bin" >HL-0140.bin
+refuse 1 HL-0140.bin "HL-0140.bin: " "one channel after the other"
+cp "$laminates/HL-0140.bin" .
+sed -i 's/type=int16/type=int32/' HL-0140.txt
+refuse 1 HL-0140.bin "HL-0140.txt:2: type: the dump says 'int32', the layout 'int16'"
+sed 's/position m/height m/' "$laminates/HL-0140.txt" >HL-0140.txt
+refuse 1 HL-0140.bin "HL-0140.txt: channel 1 'height' is not mapped"
+sed 's/position m/position N/' "$laminates/HL-0140.txt" >HL-0140.txt
+refuse 1 HL-0140.bin "displacement: " "'N'"
+sed 's/lot=/batch=/' "$laminates/HL-0140.txt" >HL-0140.txt
+refuse 1 HL-0140.bin "HL-0140.txt:8: " "'batch'"
+unset layout specimen
+
+# places that cannot be written
+if [ -w /dev/full ]; then
+    "$ANELAST_BIN/anelast-intake" good.csv -l "$pads/layout.xml" -s "$pads/specimen.xml" >/dev/full 2>err.txt
+    [ $? = 3 ] || fail "a full standard output: $(cat err.txt)"
+fi
+"$ANELAST_BIN/anelast-intake" good.csv -l "$pads/layout.xml" -s "$pads/specimen.xml" -o nowhere/out.xml 2>err.txt
+[ $? = 3 ] || fail "a folder that is not there: $(cat err.txt)"
+"$ANELAST_BIN/anelast-intake" good.csv 2>err.txt
+[ $? = 2 ] || fail "no layout: exit code $?"
+grep -qF -- "--layout is needed" err.txt || fail "no layout: $(cat err.txt)"
+
+exit $failed
