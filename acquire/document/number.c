@@ -114,7 +114,7 @@ static double scale_exactly(uint64_t w, int q)
     /* 54 bits: the 53 of a double and one to round by. */
     uint64_t m = high >> (top + 9);
     /* floor(log2 10^q) by a product that is exact for these q, and the place of the highest bit. */
-    int exponent = ((217706 * q) >> 16) + 63 + top - shift;
+    int exponent = (217706 * q - (q < 0 ? 65535 : 0)) / 65536 + 63 + top - shift;
     /* Just halfway: to even, by taking away the bit that would round up. */
     if (low <= 1 && q >= -4 && q <= 23 && (m & 3) == 1 && m << (top + 9) == high)
         m &= ~UINT64_C(1);
