@@ -96,20 +96,23 @@ FILE *an_output_stream(an_output *output)
     return output->stream;
 }
 
-/* Flush to the disk and close; the first error counts. */
-static int close_stream(an_output *output)
+/* Flush to the disk and close; the first error counts. Standard output stays open for others: what a close
+ * would tell is asked of a duplicate.
+ */
+static int finish_stream(an_output *output)
 {
     FILE *stream = output->stream;
     bool failed = ferror(stream) != 0;
-    int error = 0;
-    if (fflush(stream) != 0)
+    int error = fflush(stream) != 0 ? errno : failed ? EIO : 0;
+    if (!error && output->temporary && fsync(fileno(stream)) != 0)
         error = errno;
-    if (!error && !failed && output->temporary && fsync(fileno(stream)) != 0)
+    int duplicate = output->path ? -1 : dup(fileno(stream));
+    if (duplicate >= 0 && close(duplicate) != 0 && !error)
         error = errno;
-    if (fclose(stream) != 0 && !error)
+    if (output->path && fclose(stream) != 0 && !error)
         error = errno;
     output->stream = NULL;
-    return error ? error : failed ? EIO : 0;
+    return error;
 }
 
 /* Make the rename itself last: sync the folder. A file system that cannot sync a folder is no reason to
@@ -131,13 +134,12 @@ an_status an_output_commit(an_output **output, an_error *err)
 {
     an_output *o = *output;
     const char *place = o->path ? o->path : "standard output";
-    int error = close_stream(o);
+    int error = finish_stream(o);
     if (!error && o->temporary && rename(o->temporary, o->path) != 0)
         error = errno;
     an_status status = AN_OK;
     if (error) {
-        status =
-            an_fail(err, AN_E_IO, place, "cannot be written: %s; nothing was left there", strerror(error));
+        status = an_fail(err, AN_E_IO, place, "cannot be written: %s", strerror(error));
         if (o->temporary)
             unlink(o->temporary);
     } else if (o->temporary) {

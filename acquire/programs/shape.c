@@ -3,15 +3,13 @@
  */
 #include "acquire/programs/shape.h"
 
-#include "anelast/number.h"
+#include "anelast/output.h"
 #include "anelast/quantity.h"
 
-#include <errno.h>
 #include <getopt.h>
 #include <stdarg.h>
 #include <stdio.h>
 #include <string.h>
-#include <unistd.h>
 
 /* Options that several programs take; a program says which by its AN_TAKES_ bits. */
 static const struct {
@@ -66,17 +64,12 @@ int an_program_refuse(const an_program *program, const an_error *err)
 
 int an_program_end(const an_program *program)
 {
-    /* A stream that an_output_commit closed was checked there; fileno tells. */
-    bool closed = fileno(stdout) < 0;
-    if (closed)
-        return AN_EXIT_DONE;
-    bool failed = ferror(stdout) != 0;
-    errno = 0;
-    if (fflush(stdout) != 0 || failed || (close(STDOUT_FILENO) != 0 && errno != EBADF)) {
-        an_program_say(program, "standard output", "cannot be written: %s", strerror(errno ? errno : EIO));
-        return AN_EXIT_IO;
-    }
-    return AN_EXIT_DONE;
+    an_output *output = NULL;
+    an_error err = {0};
+    an_status status = an_output_open("-", &output, &err);
+    if (status == AN_OK)
+        status = an_output_commit(&output, &err);
+    return status < 0 ? an_program_refuse(program, &err) : AN_EXIT_DONE;
 }
 
 /* Where help breaks its lines. */

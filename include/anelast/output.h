@@ -22,8 +22,8 @@ an_status an_output_open(const char *path, an_output **output, an_error *err);
  * them. */
 FILE *an_output_stream(an_output *output);
 
-/* an_output_commit: flush, sync, close and rename; *output becomes NULL. Standard output is flushed and
- * closed, and its errors found (a full disk, a closed pipe). Where it fails nothing stands at the place that
+/* an_output_commit: flush, sync, close and rename; *output becomes NULL. Standard output is flushed, and its
+ * errors found (a full disk, a closed pipe); it stays open. Where it fails nothing stands at the place that
  * did not stand there before. Returns AN_OK or AN_E_IO. */
 an_status an_output_commit(an_output **output, an_error *err);
 
