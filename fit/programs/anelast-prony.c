@@ -16,10 +16,10 @@ static const char *const about[] = {"Makes of a master curve what a simulation n
 static const char *const examples[] = {
     "anelast-prony master.xml --output material.xml",
     "anelast-grid points.xml | anelast-shift | anelast-prony > material.xml",
-    "anelast-prony master.xml --override-complex 'K. Adeyemi: at 20 degC only'", NULL};
+    "anelast-prony master.xml --override 'K. Adeyemi: at 20 degC only'", NULL};
 static const an_option options[] = {
-    {"override-complex", 0, "TEXT", NULL, "who and why", NULL,
-     "Hand over a spectrum of a material called complex; the text stands in the document"},
+    {"override", 0, "REASON", NULL, "who and why", NULL,
+     "Hand over a spectrum of a material called complex; the reason stands in the document"},
 };
 static const an_program program = {
     .name = "anelast-prony",
@@ -37,12 +37,12 @@ static const an_program program = {
 static an_status record(const an_arguments *arguments, const an_master *master, const char *sha256,
                         an_made *made, an_error *err)
 {
-    const char *reason = an_argument(arguments, "override-complex");
+    const char *reason = an_argument(arguments, "override");
     AN_TRY(an_made_init(made, program.name, err));
     AN_TRY(an_made_add_input(made, "master", an_argument_file(arguments, 0), sha256, err));
     AN_TRY(an_made_extend(made, &master->made, sha256, err));
     AN_TRY(an_procedure_record(&arguments->procedure, "spectrum", made, err));
-    return reason ? an_made_add_word(made, "override-complex", reason, err) : AN_OK;
+    return reason ? an_made_add_word(made, "override", reason, err) : AN_OK;
 }
 
 static an_status write_material(const char *path, const an_material *material, an_error *err)
@@ -71,8 +71,8 @@ static an_status work(const an_arguments *arguments, an_error *err)
     an_master_init(&master);
     an_material_init(&material);
     AN_CLEAN(an_master_read(an_argument_file(arguments, 0), &master, sha256, err));
-    AN_CLEAN(an_handover_make(&master, &arguments->procedure, an_argument(arguments, "override-complex"),
-                              &material, err));
+    AN_CLEAN(
+        an_handover_make(&master, &arguments->procedure, an_argument(arguments, "override"), &material, err));
     AN_CLEAN(record(arguments, &master, sha256, &material.made, err));
     status = write_material(arguments->output, &material, err);
 cleanup:

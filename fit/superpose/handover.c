@@ -71,7 +71,7 @@ static an_status judge(const an_master *master, const an_procedure *procedure, c
         return an_fail(
             err, AN_E_SCIENCE, "",
             "superposition does not apply (%s): no spectrum is handed over; whoever answers for one says so "
-            "with --override-complex or override_complex in the procedure",
+            "with --override or override_complex in the procedure",
             master->simplicity_reason);
     return an_remark_list_add(&material->remarks, "overridden", 0, err,
                               "the verdict complex was overridden: %s", material->override_reason);
