@@ -233,24 +233,13 @@ static void draw_rule(const canvas *c, const item *i)
     double x = scale_place(&c->f->x, i->rule.at);
     if (!(x >= c->f->left && x <= c->f->right))
         return;
-    fprintf(c->out, "<g fill=\"#%06x\"><path stroke=\"#%06x\" stroke-dasharray=\"3 3\" fill=\"none\" d=\"",
-            AN_COLOR_MUTED, AN_COLOR_MUTED);
+    fprintf(c->out, "<path stroke=\"#%06x\" stroke-dasharray=\"3 3\" fill=\"none\" d=\"", AN_COLOR_MUTED);
     put_point(c->out, 'M', x, c->top);
     fputc('V', c->out);
     markup_coordinate(c->out, c->bottom);
-    fputs("\"/>", c->out);
-    if (i->rule.name) {
-        fputs("<text text-anchor=\"end\" stroke=\"#fff\" stroke-width=\"3\" paint-order=\"stroke\" "
-              "transform=\"translate(",
-              c->out);
-        markup_coordinate(c->out, x - 4);
-        fputc(' ', c->out);
-        markup_coordinate(c->out, c->top + 5);
-        fputs(") rotate(-90)\">", c->out);
-        markup_plain(c->out, i->rule.name);
-        fputs("</text>", c->out);
-    }
-    fputs("</g>\n", c->out);
+    fputs("\"><title>", c->out);
+    markup_plain(c->out, i->rule.name);
+    fputs("</title></path>\n", c->out);
 }
 
 static void draw_item(const canvas *c, const item *i)

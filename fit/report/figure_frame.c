@@ -32,6 +32,8 @@ static const char *item_name(const item *i)
         return i->band.name;
     case ITEM_SHADE:
         return i->shade.name;
+    case ITEM_RULE:
+        return i->rule.name;
     default:
         return NULL;
     }
@@ -110,8 +112,18 @@ static void series_sample(FILE *out, const an_figure_series *s, double x, double
     if (style.marker == AN_MARKER_NONE)
         return;
     draw_marker_group(out, &style);
-    draw_marker(out, style.marker, x + LEGEND_MARK / 2, y, fmin(style.radius, 4), "/>");
+    draw_marker(out, style.marker, x + LEGEND_MARK / 2, y, fmin(fmax(style.radius, 2.5), 4), "/>");
     fputs("</g>", out);
+}
+
+static void rule_sample(FILE *out, double x, double y)
+{
+    fprintf(out, "<line stroke=\"#%06x\" stroke-dasharray=\"3 3\"", AN_COLOR_MUTED);
+    markup_attribute(out, "x1", x + LEGEND_MARK / 2);
+    markup_attribute(out, "x2", x + LEGEND_MARK / 2);
+    markup_attribute(out, "y1", y - 8);
+    markup_attribute(out, "y2", y + 8);
+    fputs("/>", out);
 }
 
 static void area_sample(FILE *out, const an_figure *figure, const item *i, double x, double y)
@@ -153,6 +165,8 @@ void draw_legend(FILE *out, const an_figure *figure, const frame *f)
         }
         if (i->kind == ITEM_SERIES)
             series_sample(out, &i->series, x, y);
+        else if (i->kind == ITEM_RULE)
+            rule_sample(out, x, y);
         else
             area_sample(out, figure, i, x, y);
         text_at(out, "start", x + LEGEND_MARK + 5, y + 4.5);

@@ -75,6 +75,9 @@ const char *page_law_name(an_law_kind kind);
 const an_specimen *page_specimen(const an_report *report);
 const an_assessment *page_assessment(const an_report *report);
 
+/* page_reading: of a kind of reading the one whose frequency is nearest to 1 Hz; NULL where none stands. */
+const an_reading *page_reading(const an_grid *grid, an_reading_kind kind);
+
 /* page_no_material: why there is no material, in plain words; NULL where there is one. */
 const char *page_no_material(const an_report *report);
 

@@ -43,9 +43,11 @@ static const char style[] =
     "code{font-size:.82rem;overflow-wrap:anywhere}\n"
     "summary{cursor:pointer;font-weight:600;margin:.4rem 0}\n"
     "footer{color:#4c5a63;font-size:.88rem;padding-bottom:2rem}\n"
-    "@media screen and (max-width:860px){.figures{grid-template-columns:minmax(0,1fr)}main,header,footer{padding:0 10px}"
+    "@media screen and "
+    "(max-width:860px){.figures{grid-template-columns:minmax(0,1fr)}main,header,footer{padding:0 10px}"
     "figure{padding:6px 4px}figcaption{padding:0 6px}dl{grid-template-columns:minmax(0,2fr) minmax(0,3fr)}}\n"
-    "@media print{body{background:#fff;font-size:10pt}table{font-size:.72rem}th,td{padding:2px 5px}.figures{gap:8px}main,header,footer{max-width:none;padding:0}"
+    "@media print{body{background:#fff;font-size:10pt}table{font-size:.72rem}th,td{padding:2px "
+    "5px}.figures{gap:8px}main,header,footer{max-width:none;padding:0}"
     ".scroll,.tall{overflow:visible;max-height:none;border:0}thead{display:table-header-group}tr{break-"
     "inside:avoid}"
     "h2,h3{break-after:avoid}figure{border:0;padding:0}@page{size:A4;margin:14mm}}\n";
@@ -126,25 +128,12 @@ static void write_before_unclamping(FILE *out, const an_assessment *assessment)
     fputs("</ul>\n", out);
 }
 
-/* Of every kind of reading the one whose frequency is nearest to 1 Hz. */
-static const an_reading *usual_reading(const an_grid *grid, int kind)
-{
-    const an_reading *usual = NULL;
-    for (int i = 0; i < grid->n_reading; i++) {
-        const an_reading *r = &grid->reading[i];
-        if ((int)r->kind == kind && isfinite(r->temperature_K) &&
-            (!usual || fabs(log(r->frequency_Hz)) < fabs(log(usual->frequency_Hz))))
-            usual = r;
-    }
-    return usual;
-}
-
 static void write_transition(FILE *out, const an_grid *grid)
 {
     int n_written = 0;
     fputs("<dt>Glass transition</dt><dd>", out);
     for (int kind = AN_READING_STORAGE_ONSET; kind <= AN_READING_LOSS_FACTOR_PEAK; kind++) {
-        const an_reading *r = usual_reading(grid, kind);
+        const an_reading *r = page_reading(grid, (an_reading_kind)kind);
         if (!r)
             continue;
         fprintf(out, "%s%s ", n_written++ ? "; " : "", an_reading_word(r->kind));

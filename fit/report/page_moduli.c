@@ -149,18 +149,22 @@ static void add_quantity(page *p, an_figure *figure, strand *s, direction way, i
     }
 }
 
-static void add_readings(const page *p, an_figure *figure)
+/* The loss factor peak whose frequency is nearest to 1 Hz. */
+static void add_reading(const page *p, an_figure *figure)
 {
-    if (!p->report->has_grid)
+    const an_reading *r =
+        p->report->has_grid ? page_reading(&p->report->grid, AN_READING_LOSS_FACTOR_PEAK) : NULL;
+    if (!r)
         return;
-    const an_grid *grid = &p->report->grid;
-    for (int i = 0; i < grid->n_reading; i++) {
-        const an_reading *r = &grid->reading[i];
-        if (r->kind != AN_READING_LOSS_FACTOR_PEAK || !isfinite(r->temperature_K))
-            continue;
-        an_figure_add_rule(figure, r->temperature_K - ZERO_CELSIUS_K, "loss factor peak");
+    char name[64] = "";
+    FILE *out = fmemopen(name, sizeof name, "w");
+    if (!out)
         return;
-    }
+    fputs("loss factor peak at ", out);
+    markup_number(out, r->frequency_Hz, 3);
+    fputs(" Hz", out);
+    fclose(out);
+    an_figure_add_rule(figure, r->temperature_K - ZERO_CELSIUS_K, name);
 }
 
 static void figure_along(page *p, strand *s, direction way)
@@ -205,7 +209,7 @@ static void figure_along(page *p, strand *s, direction way)
                         &(an_figure_axis){.label = "tan δ", .symbol = "tan δ", .scale = AN_AXIS_LOG10}, 130);
     add_quantity(p, figure, s, way, 2, "tan δ");
     if (over_temperature)
-        add_readings(p, figure);
+        add_reading(p, figure);
     page_figure_end(
         p, &figure,
         over_temperature

@@ -4,6 +4,7 @@
 #include "fit/report/page.h"
 
 #include <ctype.h>
+#include <math.h>
 #include <string.h>
 
 static void keep(page *p, an_status status)
@@ -113,6 +114,18 @@ const char *page_no_material(const an_report *report)
                "shift would not "
                "describe this material outside the measured temperatures and frequencies.";
     return "No material document was given to this page.";
+}
+
+const an_reading *page_reading(const an_grid *grid, an_reading_kind kind)
+{
+    const an_reading *usual = NULL;
+    for (int i = 0; i < grid->n_reading; i++) {
+        const an_reading *r = &grid->reading[i];
+        if (r->kind == kind && isfinite(r->temperature_K) &&
+            (!usual || fabs(log(r->frequency_Hz)) < fabs(log(usual->frequency_Hz))))
+            usual = r;
+    }
+    return usual;
 }
 
 void cell_text(FILE *out, const char *text)

@@ -117,6 +117,17 @@ static const double *values_of(const an_report_wave *w, int k)
     return k ? w->force : w->displacement;
 }
 
+/* The drawn part without the start-up. */
+static drawn without_start(const drawn *d)
+{
+    drawn kept = *d;
+    while (kept.n > 0 && kept.wave->time_s[kept.first] < kept.kept_from_s) {
+        kept.first++;
+        kept.n--;
+    }
+    return kept;
+}
+
 /* A scaled copy of the drawn part; NULL without memory, which the page remembers. */
 static double *scaled(page *p, const drawn *d, const double *values, double scale)
 {
@@ -189,8 +200,9 @@ static void figure_waveform(page *p, const drawn *d)
         "leaves, in percent of the amplitude.");
 }
 
-static void figure_loop(page *p, const drawn *d)
+static void figure_loop(page *p, const drawn *whole)
 {
+    const drawn kept = without_start(whole), *d = &kept;
     const channel *x = &channels[d->wave->rotary][0], *y = &channels[d->wave->rotary][1];
     an_figure_spec spec = {.id = "loop",
                            .title = "Force over displacement of the same burst",
@@ -223,10 +235,10 @@ static void figure_loop(page *p, const drawn *d)
                             .legend = "fitted",
                             .style = {.color = AN_COLOR_SECOND, .stroke = AN_STROKE_SOLID, .width = 1}});
     }
-    page_figure_end(
-        p, &figure,
-        "Force over displacement. A healthy burst draws one closed oval; a kink, a flat or a wandering loop "
-        "tells of slack, slip or a record that has not settled.");
+    page_figure_end(p, &figure,
+                    "Force over displacement of the cycles kept. A healthy burst draws one closed oval; a "
+                    "kink, a flat or a wandering loop "
+                    "tells of slack, slip or a record that has not settled.");
     for (int k = 0; k < 2; k++) {
         free(data[k]);
         free(fit[k]);

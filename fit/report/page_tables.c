@@ -140,7 +140,7 @@ typedef struct budget_line {
     double angle;   /* [rad] largest change of the loss angle */
 } budget_line;
 
-#define ROUNDING 1e-12 /* [rad] what is left of a change of scale that leaves the angle alone */
+#define ROUNDING 1e-12 /* [rad], [1] what floating point leaves of a change that is none */
 
 static int by_size(const void *a, const void *b)
 {
@@ -231,6 +231,7 @@ static void table_corrections(page *p)
         for (int i = 0; i < points->n_point; i++) {
             const an_point *point = &points->point[i];
             double size = hypot(point->rung[rung][0], point->rung[rung][1]);
+            size = size < ROUNDING ? 0 : size;
             if (point->state != AN_POINT_SKIPPED && size > largest) {
                 largest = size;
                 worst = point;

@@ -120,7 +120,7 @@ void an_figure_add_shade(an_figure *figure, double from, double to, an_shade kin
 
 /* an_figure_add_rule: a thin vertical line over the last panel.
  *   x    [in] [unit of x]
- *   name [in] plain; written beside it and as hover; NULL: none */
+ *   name [in] plain; in the legend and as hover; NULL: none */
 void an_figure_add_rule(an_figure *figure, double x, const char *name);
 
 /* an_figure_add_level: a thin horizontal line at y [unit of y] over the last panel; y widens the range. */

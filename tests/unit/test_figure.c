@@ -192,7 +192,7 @@ static void test_parts_are_there_once(void **state)
     assert_int_equal(count_nodes(text, "//s:text[.='lot <A>']"), 1);
     assert_int_equal(count_nodes(text, "//s:clipPath"), 2);
     assert_int_equal(count_nodes(text, "//s:linearGradient"), 1);
-    /* every reference leads to an id of this figure, no id stands twice */
+    /* every id is of this figure, none stands twice */
     assert_int_equal(count_nodes(text, "//*[@id and not(starts-with(@id, 'all-'))]"), 0);
     assert_int_equal(count_nodes(text, "//*[@id = following::*/@id]"), 0);
     assert_int_equal(count_nodes(text, "//s:script|//@href|//@style|//s:image"), 0);
