@@ -29,9 +29,23 @@ static const char *const cautions[] = {
     "person reads it and signs.",
 };
 
+/* What the material says of itself goes first: its basis, its window, its long end. */
+static void material_cautions(page *p)
+{
+    char text[AN_CAUTION_SIZE];
+    if (!p->report->has_material)
+        return;
+    for (int i = 0; an_material_caution(&p->report->material, i, text); i++) {
+        fputs("<li>", p->out);
+        markup_plain(p->out, text);
+        fputs(".</li>\n", p->out);
+    }
+}
+
 void section_cautions(page *p)
 {
     fputs("<section>\n<h2>Cautions</h2>\n<ul>\n", p->out);
+    material_cautions(p);
     for (size_t i = 0; i < sizeof cautions / sizeof cautions[0]; i++)
         fprintf(p->out, "<li>%s</li>\n", cautions[i]);
     fputs("</ul>\n</section>\n", p->out);
