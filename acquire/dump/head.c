@@ -193,24 +193,34 @@ an_status an_head_add(an_head *head, an_cell key, an_cell value, an_cell unit, l
     return AN_OK;
 }
 
+/* Key, value and unit where another mark than the separator stands behind the key: "Free length: 15.02; mm". */
+static int split_at_mark(const an_text_form *form, char mark, const char *text, size_t n, an_cell *cells)
+{
+    const char *at = memchr(text, mark, n);
+    cells[0] = an_cell_trim(text, at ? (size_t)(at - text) : n);
+    if (!at)
+        return 1;
+    an_cell rest = an_cell_trim(at + 1, n - (size_t)(at + 1 - text));
+    if (form->separator == ' ') {
+        cells[1] = rest;
+        return 2;
+    }
+    int n_cells = an_cells_split(rest.text, rest.n, form->separator, form->quote, cells + 1);
+    return n_cells > AN_CELLS_MOST ? n_cells : n_cells + 1;
+}
+
 an_status an_head_add_line(an_head *head, const char *text, size_t n, long line, bool comment, an_error *err)
 {
+    const an_text_form *form = &head->layout->text;
     const char *mark = head->layout->key_separator;
-    char between = head->layout->text.separator;
-    an_cell key, value = {"", 0}, unit = {"", 0};
-    const char *at = memchr(text, mark ? mark[0] : between, n);
-    key = an_cell_trim(text, at ? (size_t)(at - text) : n);
-    if (at) {
-        an_cell rest = an_cell_trim(at + 1, n - (size_t)(at + 1 - text));
-        const char *next = between == ' ' ? NULL : memchr(rest.text, between, rest.n);
-        value = an_cell_trim(rest.text, next ? (size_t)(next - rest.text) : rest.n);
-        if (next) {
-            rest = an_cell_trim(next + 1, rest.n - (size_t)(next + 1 - rest.text));
-            next = memchr(rest.text, between, rest.n);
-            unit = an_cell_trim(rest.text, next ? (size_t)(next - rest.text) : rest.n);
-        }
-    }
-    return key.n ? an_head_add(head, key, value, unit, line, comment, err) : AN_OK;
+    an_cell cells[AN_CELLS_MOST + 2], none = {"", 0};
+    int n_cells = mark ? split_at_mark(form, mark[0], text, n, cells)
+                       : an_cells_split(text, n, form->separator, form->quote, cells);
+    if (n_cells > AN_CELLS_MOST)
+        return an_fail(err, AN_E_LIMIT, NULL, "more than %d fields", AN_CELLS_MOST);
+    if (n_cells < 1 || cells[0].n == 0)
+        return AN_OK;
+    return an_head_add(head, cells[0], n_cells > 1 ? cells[1] : none, n_cells > 2 ? cells[2] : none, line, comment, err);
 }
 
 an_status an_head_finish(const an_head *head, const char *path, an_error *err)

@@ -140,6 +140,23 @@ for mark in NaN --- ""; do
     accept mark.csv 'code="missing-values" severity="skip" burst="2"'
 done
 
+# channels that are swapped or inverted are found by the phase, never folded
+pipe() {
+    "$ANELAST_BIN/anelast-intake" "$1" -l "$2" -s "$pads/specimen.xml" -a "$pads/apparatus.xml" -o run.xml 2>err.txt ||
+        fail "$1 with $2: $(cat err.txt)"
+    "$ANELAST_BIN/anelast-phase" run.xml -o out.xml 2>err.txt
+    [ $? = 1 ] || fail "$1 with $2: the phase was accepted"
+    grep -qF -- "$3" err.txt || fail "$1 with $2: '$3' is not said: $(cat err.txt)"
+    [ -z "$(find . -name '*out.xml*')" ] || fail "$1: left behind: $(find . -name '*out.xml*')"
+    rm -f run.xml
+}
+sed 's/role="force" unit="N"/role="force" unit="N" inverted="yes"/' "$pads/layout.xml" >inverted.xml
+pipe good.csv inverted.xml "one channel is inverted"
+sed '13d; 12s/Position,Load/Load,Position/' good.csv >swapped.csv
+sed 's/role="displacement" unit="um"/role="displacement" unit="m" gain="0.01"/; s/role="force" unit="N"/& gain="0.01"/' \
+    "$pads/layout.xml" >bare.xml
+pipe swapped.csv bare.xml "force and displacement are swapped"
+
 # binary dumps
 cp "$laminates/HL-0140.txt" .
 layout=$laminates/layout.xml

@@ -1,0 +1,111 @@
+#!/bin/bash
+# One dump in many dialects: encodings and marks, separators, decimal marks, line ends, comments, quotes, repeated headers,
+# footers, units in the layout or in the dump, no header at all. Each must give the same bursts, bit for bit, as the plain one.
+set -u
+failed=0
+pads=$ANELAST_SOURCE/fixtures/lower_quay/rail_pad
+rm -rf work && mkdir work && cd work || exit 1
+
+fail() {
+    echo "FAIL: $*" >&2
+    failed=1
+}
+
+# Six bursts; the operator's name is beyond ASCII, so that a wrong decoding shows.
+head -n 781 "$pads/RP-0522-1.csv" | sed '5s/late shift/Jörg Müller/' >plain.csv
+
+take() {
+    "$ANELAST_BIN/anelast-intake" "$1" -l "$2" -s "$pads/specimen.xml" -a "$pads/apparatus.xml" -o out.xml 2>err.txt
+}
+
+# What has to be the same: specimen and bursts.
+content() {
+    sed -n '/<specimen/,/<\/specimen>/p; /<burst/,/<\/burst>/p' "$1"
+}
+
+take plain.csv "$pads/layout.xml" || fail "plain.csv: $(cat err.txt)"
+content out.xml >plain.txt
+[ "$(grep -c '<burst' plain.txt)" = 6 ] || fail "plain.csv: not six bursts"
+grep -q 'operator="Jörg Müller"' plain.txt || fail "plain.csv: the operator's name is lost"
+
+# same NAME SED: the dump NAME, with the layout changed by SED, gives the same.
+same() {
+    sed "$2" "$pads/layout.xml" >layout.xml
+    rm -f out.xml
+    take "$1" layout.xml || fail "$1: $(cat err.txt)"
+    content out.xml | cmp -s - plain.txt || fail "$1: other content: $(content out.xml | diff - plain.txt | cut -c1-200 | head -4)"
+}
+
+# encodings
+printf '\357\273\277' | cat - plain.csv >mark.csv
+same mark.csv ''
+grep -q 'decoded as UTF-8' out.xml || fail "mark.csv: the mark is not remarked upon"
+iconv -f UTF-8 -t ISO-8859-1 plain.csv >latin.csv
+same latin.csv 's/encoding="UTF-8" sep/encoding="ISO-8859-1" sep/'
+iconv -f UTF-8 -t WINDOWS-1252 plain.csv >windows.csv
+same windows.csv 's/encoding="UTF-8" sep/encoding="Windows-1252" sep/'
+for order in LE BE; do
+    iconv -f UTF-8 -t UTF-16$order plain.csv >wide-$order.csv
+    same wide-$order.csv "s/encoding=\"UTF-8\" sep/encoding=\"UTF-16$order\" sep/"
+    { [ $order = LE ] && printf '\377\376' || printf '\376\377'; } | cat - wide-$order.csv >marked-$order.csv
+    same marked-$order.csv 's/encoding="UTF-8" sep/encoding="UTF-16" sep/'
+    grep -q "decoded as UTF-16$order" out.xml || fail "marked-$order.csv: the mark is not remarked upon"
+done
+
+# line ends, comments, blank lines, quotes, repeated headers, footers
+sed 's/$/\r/' plain.csv >crlf.csv
+same crlf.csv ''
+sed '1i # by the export\n' plain.csv | sed '100i # a comment\n' >comments.csv
+same comments.csv 's/decimal_mark="."/decimal_mark="." comment="#"/'
+sed '2s/RP-0522-1/"RP-0522-1"/; 12s/Load/"Load"/; 13,400s/^\([^,]*\),/"\1",/' plain.csv >quotes.csv
+same quotes.csv "s/decimal_mark=\".\"/decimal_mark=\".\" quote='\"'/"
+awk 'NR == 12 { head = $0 } NR == 13 { units = $0 } NR > 13 && (NR - 14) % 128 == 0 && NR > 14 { print head; print units } 1' plain.csv >repeated.csv
+same repeated.csv ''
+printf 'End of test,6 steps\nreviewed,yes\n' | cat plain.csv - >footer.csv
+same footer.csv 's/decimal_mark="."/decimal_mark="." footer="End of test"/'
+sed '14,$s/$/,/' plain.csv >trailing.csv
+same trailing.csv ''
+
+# separators and decimal marks
+tr ',' '\t' <plain.csv >tab.csv
+same tab.csv 's/separator="comma"/separator="tab"/'
+sed '1,13s/,/;/g; 14,$s/,/;/g; 14,$s/\./,/g; 8,10s/\./,/' plain.csv >comma.csv
+same comma.csv 's/separator="comma" decimal_mark="."/separator="semicolon" decimal_mark=","/'
+sed '1,11s/,/: /; 12,$s/,/|/g' plain.csv >bar.csv
+same bar.csv 's/separator="comma"/separator="bar"/; s/<head>/<head key_separator=":">/'
+sed '1,11s/,/: /; 13s/^,/- /; 12,$s/,/   /g' plain.csv >blanks.csv
+same blanks.csv 's/separator="comma"/separator="blanks"/; s/<head>/<head key_separator=":">/'
+
+# units: only in the layout, only in the dump; other columns and another order
+sed '13d' plain.csv >unitless.csv
+same unitless.csv ''
+same plain.csv 's/\(<channel role="[a-z_]*"\) unit="[^"]*"/\1/'
+awk -F, -v OFS=, 'NR < 12 { print; next } { print $5, "x" NR, $4, $3, $6, $2, $1 }' plain.csv | sed '12s/x12/Mark/; 13s/x13//' >order.csv
+same order.csv 's/<\/channels>/<ignored><column>Mark<\/column><\/ignored><\/channels>/'
+
+# columns by position, without a header row
+sed '12,13d' plain.csv >headless.csv
+position() {
+    sed -e 's/decimal_mark="."/decimal_mark="." header="no"/' -e 's/role="step"/& position="1"/; s/role="time"/& position="2"/' \
+        -e 's/role="displacement"/& position="3"/; s/role="force"/& position="4"/; s/role="temperature"/& position="5"/' \
+        -e 's/role="set_frequency"/& position="6"/' -e 's/<column>[^<]*<\/column>//' "$pads/layout.xml" >layout.xml
+}
+position
+take headless.csv layout.xml || fail "headless.csv: $(cat err.txt)"
+content out.xml | cmp -s - plain.txt || fail "headless.csv: other content"
+
+# bursts from the signals alone find what the step column says
+awk -F, -v OFS=, 'NR < 12 { print; next } { print $2, $3, $4, $5 }' plain.csv >continuous.csv
+sed -e 's/<bursts from="step"/<bursts from="signals"/' -e '/role="step"/d; /role="set_frequency"/d' "$pads/layout.xml" >layout.xml
+take continuous.csv layout.xml || fail "continuous.csv: $(cat err.txt)"
+content out.xml >found.txt
+content out.xml | sed '/<set_frequency/d' | cmp -s - <(sed '/<set_frequency/d; s/ step="[0-9]*"//' plain.txt) ||
+    fail "continuous.csv: other bursts: $(diff <(sed '/<set_frequency/d; s/ step="[0-9]*"//' plain.txt) found.txt | cut -c1-200 | head -4)"
+
+# what the instrument has corrected is not corrected again
+sed 's/corrections compliance="no"/corrections compliance="yes"/' "$pads/layout.xml" >layout.xml
+take plain.csv layout.xml || fail "corrected: $(cat err.txt)"
+grep -q '<compliance' out.xml && fail "corrected: the compliance is still there"
+grep -q 'code="corrected-before" severity="note"' out.xml || fail "corrected: no remark"
+
+exit $failed
