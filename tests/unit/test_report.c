@@ -142,7 +142,7 @@ static void test_untrusted_modes_differ_by_shape(void **state)
                      3);
     assert_int_equal(
         count_nodes(
-            text,
+            &page,
             "//s:svg[s:title[starts-with(., 'Handed-over')]]//s:rect[contains(@fill, 'hatch')]/s:title"),
         2);
     parsed_clear(&page);
