@@ -152,7 +152,7 @@ static an_status run_stages(job *one, int *i_stage, an_stage_end *end, an_error 
         path_in(one, stages[*i_stage].writes, output, sizeof output);
         add(arguments, "--procedure", one->options->procedure);
         if (*i_stage == PRONY)
-            add(arguments, "--override-complex", one->options->override_reason);
+            add(arguments, "--override", one->options->override_reason);
         add(arguments, "--output", output);
         AN_TRY(run_stage(one, arguments, end, err));
         if (end->exit_code != 0)

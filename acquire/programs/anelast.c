@@ -27,8 +27,8 @@ static const an_option rows[] = {
     {"apparatus", 'a', "FILE", NULL, NULL, "the one beside the dump, if any",
      "The bench and its calibration"},
     {"into", 'd', "DIR", NULL, NULL, ".", "Folder of the run folders; made where it does not exist"},
-    {"override-complex", 0, "TEXT", NULL, "who and why", NULL,
-     "Hand over a material that does not superpose all the same; the text stands in it"},
+    {"override", 0, "REASON", NULL, "who and why", NULL,
+     "Hand over a material that does not superpose all the same; the reason stands in it"},
 };
 static const an_program program = {
     .name = "anelast",
@@ -82,7 +82,7 @@ int main(int argc, char **argv)
     an_after_options options = {
         an_argument(&arguments, "layout"),           an_argument(&arguments, "specimen"),
         an_argument(&arguments, "apparatus"),        an_argument(&arguments, "procedure"),
-        an_argument(&arguments, "override-complex"), into ? into : "."};
+        an_argument(&arguments, "override"), into ? into : "."};
     int worst = 0;
     for (int i = 0; i < arguments.n_files; i++) {
         int exit_code = reduce_one(programs, arguments.files[i], &options, arguments.quiet);
