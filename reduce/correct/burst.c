@@ -7,6 +7,9 @@
 #include <stdlib.h>
 #include <string.h>
 
+/* The greatest of some hundred bins of white noise is about 3 times their median (Rayleigh distribution). */
+static const double LEAST_PROMINENCE = 5;
+
 an_reducer *an_reducer_new(const an_procedure *procedure)
 {
     an_reducer *reducer = calloc(1, sizeof *reducer);
@@ -64,6 +67,9 @@ static an_status fit_burst(an_reducer *reducer, an_reduction *r, an_error *err)
     an_samples *s = &r->samples;
     an_sinefit_choice choice = r->limits->fit;
     AN_TRY(an_search_peak(reducer->search, s->n, s->time, s->y[AN_DISPLACEMENT], &r->searched_Hz, &r->prominence, err));
+    if (r->prominence < LEAST_PROMINENCE)
+        return an_fail(err, AN_E_SCIENCE, NULL, "no sine stands above the noise in displacement (%.1f times the median of its "
+                       "spectrum)", r->prominence);
     an_clip_find(&r->waveform, r->searched_Hz, (const double(*)[2])s->range, s->use, &r->clipping);
     choice.frequency_Hz = r->searched_Hz;
     return an_startup_fit(&r->waveform, &choice, &r->limits->startup, &r->startup, &r->fit, s->residual, err);
@@ -78,10 +84,11 @@ static void take_temperature(an_reduction *r)
     double middle = 0, mean = 0, product = 0, norm = 0, square = 0;
     if (!s->temperature)
         return;
-    for (int i = first; i < s->n; i++) {
+    for (int i = first; i < s->n; i++) { /* from the first reading on, so that a frozen channel has exactly no slope */
         middle += s->time[i] / n;
-        mean += s->temperature[i] / n;
+        mean += (s->temperature[i] - s->temperature[first]) / n;
     }
+    mean += s->temperature[first];
     for (int i = first; i < s->n; i++) {
         product += (s->time[i] - middle) * (s->temperature[i] - mean);
         norm += (s->time[i] - middle) * (s->time[i] - middle);

@@ -154,12 +154,15 @@ static an_status judge_modulus(an_reduction *r, an_error *err)
 {
     const an_limits *l = r->limits;
     const an_point *p = r->point;
-    if (p->stiffness_compliance > l->compliance_refuse)
+    double frame = p->stiffness_compliance * cabs(r->result.rungs.parallel / r->result.rungs.series); /* |K2| |C| */
+    if (frame >= 1)
+        REMARK(r, "lower-bound", "the stiffness measured is %.2f times what the frame alone allows: no modulus", frame);
+    else if (p->stiffness_compliance > l->compliance_refuse)
         REMARK(r, "lower-bound", "K_s C is %.2f, above %.2f: the frame moves more than the specimen",
                p->stiffness_compliance, l->compliance_refuse);
     else if (p->stiffness_compliance > l->compliance_flag)
         REMARK(r, "stiffness-compliance-large", "K_s C is %.2f, above %.2f", p->stiffness_compliance, l->compliance_flag);
-    if (!(p->storage_Pa > 0))
+    if (!(p->storage_Pa > 0) && frame < 1)
         REMARK_AS(r, "channel-inverted", AN_SKIP, "E' is %.3g Pa: an inverted channel, or a moving mass that is not the bench's",
                p->storage_Pa);
     else if (p->loss_Pa < -3 * u_loss(p))

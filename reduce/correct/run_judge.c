@@ -54,11 +54,31 @@ an_status an_reducer_begin(an_reducer *reducer, const an_run *run, an_points *po
     return note_shear(points, err);
 }
 
-/* Votes of the bursts on the sign of the phase: K'' after the channel rung below 0 beyond 3 uncertainties, K' after the parallel
- * elements below 0. */
+/* Votes of the bursts: on the sign of the phase (K'' after the channel rung below 0 beyond 3 uncertainties, K' after the parallel
+ * elements below 0), and on the size of the modulus that the measured stiffness alone would mean. */
 typedef struct votes {
     int n, inverted, swapped, implausible;
+    double example_Pa; /* of the first implausible one */
+    int example;       /* its burst */
 } votes;
+
+/* Size of the modulus without the apparatus: |K measured| over the form factor, which is |K_s| / |E|. */
+static double bare_modulus(const an_point *p)
+{
+    double form = hypot(p->specimen_stiffness[0], p->specimen_stiffness[1]) / hypot(p->storage_Pa, p->loss_Pa);
+    return hypot(p->measured_stiffness[0], p->measured_stiffness[1]) / form;
+}
+
+static void vote_size(const an_point *p, const an_limits *l, votes *v)
+{
+    double size = p->state == AN_POINT_SKIPPED ? bare_modulus(p) : p->storage_Pa;
+    if (size >= l->modulus_least && size <= l->modulus_most)
+        return;
+    if (!v->implausible++) {
+        v->example_Pa = size;
+        v->example = p->burst;
+    }
+}
 
 static void vote(const an_point *p, const an_limits *l, votes *v)
 {
@@ -76,18 +96,7 @@ static void vote(const an_point *p, const an_limits *l, votes *v)
         v->inverted++;
     else if (lag < -3 * u)
         v->swapped++;
-    if (p->state != AN_POINT_SKIPPED && !(p->storage_Pa >= l->modulus_least && p->storage_Pa <= l->modulus_most))
-        v->implausible++;
-}
-
-static const an_point *first_implausible(const an_points *points, const an_limits *l)
-{
-    for (int i = 0; i < points->n_point; i++) {
-        const an_point *p = &points->point[i];
-        if (p->state != AN_POINT_SKIPPED && !(p->storage_Pa >= l->modulus_least && p->storage_Pa <= l->modulus_most))
-            return p;
-    }
-    return NULL;
+    vote_size(p, l, v);
 }
 
 /* Skip the points of a stretch in which the temperature did not change by a bit. */
@@ -134,12 +143,10 @@ an_status an_points_judge(an_points *points, const an_procedure *procedure, an_e
     if (v.n && 2 * v.swapped > v.n)
         return an_fail(err, AN_E_SCIENCE, NULL, "the phase is negative in %d of %d bursts: force and displacement are swapped, "
                        "or the channel delay has the wrong sign", v.swapped, v.n);
-    if (2 * v.implausible > v.n) {
-        const an_point *p = first_implausible(points, &limits);
-        return an_fail(err, AN_E_SCIENCE, NULL, "burst %d: storage modulus %.3g Pa is outside %.0e to %.0e Pa, as in %d of %d "
-                       "bursts; check the units of force, displacement and dimensions", p->burst, p->storage_Pa,
+    if (2 * v.implausible > v.n)
+        return an_fail(err, AN_E_SCIENCE, NULL, "burst %d: a modulus of %.3g Pa is outside %.0e to %.0e Pa, and so in %d of %d "
+                       "bursts; check the units of force, displacement and dimensions", v.example, v.example_Pa,
                        limits.modulus_least, limits.modulus_most, v.implausible, v.n);
-    }
     AN_TRY(judge_temperature(points, limits.frozen_s, &n_skipped, err));
     for (int i = 0; i < points->n_point; i++)
         n_left += points->point[i].state != AN_POINT_SKIPPED;
