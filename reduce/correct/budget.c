@@ -1,6 +1,7 @@
-/* The uncertainty budget. Stage: correct. Method: [JCGM102] propagation of a 2-vector, linear for noise (the way from K to E is
- * an analytic function, so one complex derivative says all), central differences over one standard uncertainty for the shared
- * sources; [JCGM101] Monte Carlo for the noise where the frame's compliance makes the way far from linear.
+/* The uncertainty budget. Stage: correct. Method: [JCGM102] propagation of a 2-vector, linear for noise (the
+ * way from K to E is an analytic function, so one complex derivative says all), central differences over one
+ * standard uncertainty for the shared sources; [JCGM101] Monte Carlo for the noise where the frame's
+ * compliance makes the way far from linear.
  */
 #include "anelast/budget.h"
 
@@ -25,7 +26,8 @@ an_status an_chain_run(const an_chain *chain, double complex measured, an_chain_
     return AN_OK;
 }
 
-static an_status modulus_of(const an_chain *chain, double complex measured, double complex *modulus, an_error *err)
+static an_status modulus_of(const an_chain *chain, double complex measured, double complex *modulus,
+                            an_error *err)
 {
     an_chain_result r;
     AN_TRY(an_chain_run(chain, measured, &r, err));
@@ -42,7 +44,8 @@ static void stretch(double complex d, const double in[3], double out[3])
     out[2] = b * b * in[0] + 2 * a * b * in[1] + a * a * in[2];
 }
 
-static an_status noise_linear(const an_chain *chain, double complex measured, const double in[3], double out[3], an_error *err)
+static an_status noise_linear(const an_chain *chain, double complex measured, const double in[3],
+                              double out[3], an_error *err)
 {
     const double part = 1e-6; /* of |K|: error 1e-12 from curvature, 1e-10 from rounding */
     double complex low, high;
@@ -60,7 +63,8 @@ static void factor(const double c[3], double l[3])
     l[2] = sqrt(fmax(c[2] - l[1] * l[1], 0));
 }
 
-static an_status noise_drawn(const an_chain *chain, double complex measured, const double in[3], double out[3], an_error *err)
+static an_status noise_drawn(const an_chain *chain, double complex measured, const double in[3],
+                             double out[3], an_error *err)
 {
     double l[3], sum[2] = {0}, square[3] = {0};
     double complex centre, e = 0;
@@ -86,10 +90,11 @@ static an_status noise_drawn(const an_chain *chain, double complex measured, con
     return status;
 }
 
-an_status an_budget_noise(const an_chain *chain, double complex measured, const double in[3], int monte_carlo, double out[3],
-                          an_error *err)
+an_status an_budget_noise(const an_chain *chain, double complex measured, const double in[3], int monte_carlo,
+                          double out[3], an_error *err)
 {
-    return monte_carlo ? noise_drawn(chain, measured, in, out, err) : noise_linear(chain, measured, in, out, err);
+    return monte_carlo ? noise_drawn(chain, measured, in, out, err)
+                       : noise_linear(chain, measured, in, out, err);
 }
 
 /* The constants behind a source; NULL where there is none. */
@@ -159,7 +164,8 @@ static double together(double a, double b)
     return copysign(hypot(a, b), fabs(a) >= fabs(b) ? a : b);
 }
 
-an_status an_budget_common(const an_chain *chain, double complex measured, double common[AN_SOURCE_COUNT][2], an_error *err)
+an_status an_budget_common(const an_chain *chain, double complex measured, double common[AN_SOURCE_COUNT][2],
+                           an_error *err)
 {
     double complex part[PARTS];
     for (int source = 0; source < AN_SOURCE_COUNT; source++) {
@@ -176,8 +182,8 @@ int an_budget_assume(an_geometry *g, double relative, char *names, size_t n_name
     struct {
         const char *name;
         an_measure *measure;
-    } rows[] = {{"length", &g->length}, {"width", &g->width}, {"thickness", &g->thickness}, {"diameter", &g->diameter},
-                {"height", &g->height}, {"area", &g->area}};
+    } rows[] = {{"length", &g->length},     {"width", &g->width},   {"thickness", &g->thickness},
+                {"diameter", &g->diameter}, {"height", &g->height}, {"area", &g->area}};
     int n = 0;
     size_t used = 0;
     if (names && n_names)

@@ -1,5 +1,6 @@
-/* One burst to one point: the order of the steps. Stage: phase and correct. Samples, search, clipping, fit, ladder, geometry,
- * budget, quality; a step that the data do not allow ends in a skipped point with its reason.
+/* One burst to one point: the order of the steps. Stage: phase and correct. Samples, search, clipping, fit,
+ * ladder, geometry, budget, quality; a step that the data do not allow ends in a skipped point with its
+ * reason.
  */
 #include "reducer.h"
 
@@ -51,8 +52,9 @@ static void take_time(an_reduction *r)
 {
     an_samples *s = &r->samples;
     if (r->burst->has_time && !s->n_missing)
-        an_time_straighten(s->n, s->time, 0.51 * fabs(r->burst->time.scale) /
-                                              (r->burst->time.divisor > 0 ? r->burst->time.divisor : 1));
+        an_time_straighten(s->n, s->time,
+                           0.51 * fabs(r->burst->time.scale) /
+                               (r->burst->time.divisor > 0 ? r->burst->time.divisor : 1));
     an_timing_assess(s->n, s->time, &r->timing);
     r->waveform = (an_waveform){.n = s->n,
                                 .time_s = s->time,
@@ -66,10 +68,13 @@ static an_status fit_burst(an_reducer *reducer, an_reduction *r, an_error *err)
 {
     an_samples *s = &r->samples;
     an_sinefit_choice choice = r->limits->fit;
-    AN_TRY(an_search_peak(reducer->search, s->n, s->time, s->y[AN_DISPLACEMENT], &r->searched_Hz, &r->prominence, err));
+    AN_TRY(an_search_peak(reducer->search, s->n, s->time, s->y[AN_DISPLACEMENT], &r->searched_Hz,
+                          &r->prominence, err));
     if (r->prominence < LEAST_PROMINENCE)
-        return an_fail(err, AN_E_SCIENCE, NULL, "no sine stands above the noise in displacement (%.1f times the median of its "
-                       "spectrum)", r->prominence);
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "no sine stands above the noise in displacement (%.1f times the median of its "
+                       "spectrum)",
+                       r->prominence);
     an_clip_find(&r->waveform, r->searched_Hz, (const double(*)[2])s->range, s->use, &r->clipping);
     choice.frequency_Hz = r->searched_Hz;
     return an_startup_fit(&r->waveform, &choice, &r->limits->startup, &r->startup, &r->fit, s->residual, err);
@@ -84,7 +89,8 @@ static void take_temperature(an_reduction *r)
     double middle = 0, mean = 0, product = 0, norm = 0, square = 0;
     if (!s->temperature)
         return;
-    for (int i = first; i < s->n; i++) { /* from the first reading on, so that a frozen channel has exactly no slope */
+    for (int i = first; i < s->n;
+         i++) { /* from the first reading on, so that a frozen channel has exactly no slope */
         middle += s->time[i] / n;
         mean += (s->temperature[i] - s->temperature[first]) / n;
     }
@@ -153,8 +159,9 @@ static an_status fill_modulus(an_reduction *r, an_error *err)
     return an_budget_common(&r->chain, r->fit.stiffness, p->common, err);
 }
 
-/* What the apparatus and specimen would make of a higher harmonic of the drive: the specimen stiffens along the power law that
- * its loss angle tells (local Kramers-Kronig, [BT82]), the ladder is put on again at that frequency. */
+/* What the apparatus and specimen would make of a higher harmonic of the drive: the specimen stiffens along
+ * the power law that its loss angle tells (local Kramers-Kronig, [BT82]), the ladder is put on again at that
+ * frequency. */
 static double complex drive_stiffness(const an_reduction *r, int harmonic)
 {
     an_ladder ladder;
@@ -167,7 +174,8 @@ static double complex drive_stiffness(const an_reduction *r, int harmonic)
 static an_status fill_quality(an_reduction *r, an_error *err)
 {
     double complex drive[2] = {drive_stiffness(r, 2), drive_stiffness(r, 3)};
-    AN_TRY(an_quality_assess(&r->waveform, r->startup.first_sample, &r->fit, r->samples.residual, drive, &r->quality, err));
+    AN_TRY(an_quality_assess(&r->waveform, r->startup.first_sample, &r->fit, r->samples.residual, drive,
+                             &r->quality, err));
     r->point->snr_dB = fmin(r->quality.snr_dB[AN_DISPLACEMENT], r->quality.snr_dB[AN_FORCE]);
     r->point->harmonic[0] = r->quality.harmonic[0];
     r->point->harmonic[1] = r->quality.harmonic[1];
@@ -206,10 +214,12 @@ an_status an_burst_reduce(an_reducer *reducer, const an_specimen *specimen, cons
     point->set_frequency_Hz = burst->set_frequency_Hz;
     for (size_t i = 0; i < burst->remarks.n; i++) {
         const an_remark *row = &burst->remarks.rows[i];
-        AN_TRY(an_remark_list_add_as(&point->remarks, row->kind->code, row->severity, burst->n, err, "%s", row->text));
+        AN_TRY(an_remark_list_add_as(&point->remarks, row->kind->code, row->severity, burst->n, err, "%s",
+                                     row->text));
     }
     if (burst->kind != AN_BURST_OSCILLATION)
-        AN_TRY(an_remark_list_add(&point->remarks, "not-oscillation", burst->n, err, "a %s, not an oscillation",
+        AN_TRY(an_remark_list_add(&point->remarks, "not-oscillation", burst->n, err,
+                                  "a %s, not an oscillation",
                                   burst->kind == AN_BURST_HOLD ? "hold" : "pull"));
     else
         AN_TRY(reduce(reducer, &r, err));

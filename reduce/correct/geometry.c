@@ -1,6 +1,7 @@
-/* Form factors: stiffness over modulus. Stage: correct. Method: closed forms of beam, block and plate theory, one small function
- * a kind, written in complex numbers so that the derivative with respect to any dimension is a complex step away. Range: small
- * strain, linear, isotropic or with a given E/G; see each row's source in the header.
+/* Form factors: stiffness over modulus. Stage: correct. Method: closed forms of beam, block and plate theory,
+ * one small function a kind, written in complex numbers so that the derivative with respect to any dimension
+ * is a complex step away. Range: small strain, linear, isotropic or with a given E/G; see each row's source
+ * in the header.
  */
 #include "anelast/geometry.h"
 
@@ -80,7 +81,8 @@ static double complex compression_bonded(const an_geometry *g, const sizes *s, i
     return block_face(g, s) / height(g, s) * (full ? 1 + 2 * S * S : 1);
 }
 
-/* 2 (G A / h) / (1 + h^2 / (3 l^2)): two pieces, each bending as a short beam between parallel plates with E = 3 G. */
+/* 2 (G A / h) / (1 + h^2 / (3 l^2)): two pieces, each bending as a short beam between parallel plates with E
+ * = 3 G. */
 static double complex shear_double_lap(const an_geometry *g, const sizes *s, int full)
 {
     double complex h = height(g, s), l = s->v[AN_DIMENSION_LENGTH];
@@ -157,8 +159,9 @@ static double shear_ratio(const an_geometry *g)
 static sizes sizes_of(const an_geometry *g)
 {
     double ratio = shear_ratio(g);
-    return (sizes){.v = {g->length.value, g->width.value, g->thickness.value, g->diameter.value, g->height.value,
-                         g->area.value, or_zero(g->added_length.value), or_zero(ratio), g->shape_factor.value},
+    return (sizes){.v = {g->length.value, g->width.value, g->thickness.value, g->diameter.value,
+                         g->height.value, g->area.value, or_zero(g->added_length.value), or_zero(ratio),
+                         g->shape_factor.value},
                    .shear_term = !isnan(ratio),
                    .shape_given = !isnan(g->shape_factor.value)};
 }
@@ -170,7 +173,8 @@ an_status an_geometry_form(const an_geometry *g, an_form *form, an_error *err)
     form->factor_m = creal(form_of(g, &s, 1));
     form->bulk_m = g->kind == AN_COMPRESSION_BONDED ? form->plain_m : 0;
     if (!(form->factor_m > 0) || !(form->plain_m > 0) || !isfinite(form->factor_m))
-        return an_fail(err, AN_E_VALUE, NULL, "geometry %s: the dimensions give no form factor", an_geometry_word(g->kind));
+        return an_fail(err, AN_E_VALUE, NULL, "geometry %s: the dimensions give no form factor",
+                       an_geometry_word(g->kind));
     return AN_OK;
 }
 

@@ -1,13 +1,15 @@
-/* What a burst's numbers mean: thresholds of the procedure turned into remarks. Stage: phase and correct. Every row of the
- * thresholds stands with its source in the table of choices; every code with its action in the table of remarks.
+/* What a burst's numbers mean: thresholds of the procedure turned into remarks. Stage: phase and correct.
+ * Every row of the thresholds stands with its source in the table of choices; every code with its action in
+ * the table of remarks.
  */
 #include "reducer.h"
 
 #include <math.h>
 
 /* Add a remark to the reduction's point, with the table's severity; hands back a refusal of memory. */
-#define REMARK(r, code, ...) AN_TRY(an_remark_list_add(&(r)->point->remarks, code, (r)->burst->n, err, __VA_ARGS__))
-#define REMARK_AS(r, code, severity, ...) \
+#define REMARK(r, code, ...)                                                                                 \
+    AN_TRY(an_remark_list_add(&(r)->point->remarks, code, (r)->burst->n, err, __VA_ARGS__))
+#define REMARK_AS(r, code, severity, ...)                                                                    \
     AN_TRY(an_remark_list_add_as(&(r)->point->remarks, code, severity, (r)->burst->n, err, __VA_ARGS__))
 
 static const char *const CHANNEL[AN_CHANNELS] = {"displacement", "force"};
@@ -51,7 +53,8 @@ an_status an_judge_record(an_reduction *r, an_error *err)
     int total = s->n + s->n_missing;
     if (s->n_missing > 0) {
         an_severity weight = s->n_missing > r->limits->missing_most * total ? AN_SKIP : AN_NOTE;
-        REMARK_AS(r, "missing-values", weight, "%d of %d samples are marked or not finite", s->n_missing, total);
+        REMARK_AS(r, "missing-values", weight, "%d of %d samples are marked or not finite", s->n_missing,
+                  total);
     }
     if (s->n < 2)
         REMARK(r, "empty-burst", "%d samples", s->n);
@@ -70,11 +73,13 @@ static an_status judge_samples(an_reduction *r, an_error *err)
 {
     for (int c = 0; c < AN_CHANNELS; c++) {
         if (r->clipping.n_run[c] >= r->limits->clipped_least)
-            REMARK(r, "clipping", "%s stands at its end for %d samples, up to %d in a row; they were left out of the fit",
+            REMARK(r, "clipping",
+                   "%s stands at its end for %d samples, up to %d in a row; they were left out of the fit",
                    CHANNEL[c], r->clipping.n_end[c], r->clipping.n_run[c]);
         else if (r->clipping.n_end[c])
-            REMARK_AS(r, "clipping", AN_NOTE, "%s: %d single samples at the converter's end were left out of the fit",
-                      CHANNEL[c], r->clipping.n_end[c]);
+            REMARK_AS(r, "clipping", AN_NOTE,
+                      "%s: %d single samples at the converter's end were left out of the fit", CHANNEL[c],
+                      r->clipping.n_end[c]);
         if (r->quality.n_frozen[c])
             REMARK(r, "frozen-samples", "%s stands still for %d samples", CHANNEL[c], r->quality.n_frozen[c]);
     }
@@ -90,10 +95,12 @@ static an_status judge_signal(an_reduction *r, an_error *err)
         double snr = r->quality.snr_dB[c];
         if (snr < l->snr_flag)
             REMARK_AS(r, "low-snr", snr < l->snr_skip ? AN_SKIP : AN_FLAG,
-                      "%s stands %.1f dB above its noise, at least %.0f dB wanted", CHANNEL[c], snr, l->snr_flag);
+                      "%s stands %.1f dB above its noise, at least %.0f dB wanted", CHANNEL[c], snr,
+                      l->snr_flag);
         if (r->quality.steps[c] < l->steps_flag)
-            REMARK(r, "coarse-counts", "the amplitude of %s is %.1f steps of its converter, at least %.0f wanted",
-                   CHANNEL[c], r->quality.steps[c], l->steps_flag);
+            REMARK(r, "coarse-counts",
+                   "the amplitude of %s is %.1f steps of its converter, at least %.0f wanted", CHANNEL[c],
+                   r->quality.steps[c], l->steps_flag);
     }
     if (r->quality.mains_ratio > l->mains_flag)
         REMARK(r, "mains", "%.0f Hz stands in the force at %.0f dB of its amplitude", r->quality.mains_Hz,
@@ -118,8 +125,8 @@ static an_status judge_linearity(an_reduction *r, an_error *err)
         r->chain.geometry.kind == AN_COMPRESSION_BONDED)
         return AN_OK;
     if (slack)
-        REMARK(r, "slack", "force changes sign in %d of %d cycles, and I2/I1 is %.2f %%", q->n_cycle_reversed, q->n_cycle,
-               100 * second);
+        REMARK(r, "slack", "force changes sign in %d of %d cycles, and I2/I1 is %.2f %%", q->n_cycle_reversed,
+               q->n_cycle, 100 * second);
     else
         REMARK(r, "preload-sign", "force changes sign in %d of %d cycles (mean %.3g N, amplitude %.3g N)",
                q->n_cycle_reversed, q->n_cycle, r->fit.mean[AN_FORCE], r->point->force_N);
@@ -132,10 +139,11 @@ static an_status judge_frequency(an_reduction *r, an_error *err)
     if (!r->startup.settled)
         REMARK(r, "not-settled", "no two successive cycles agree, or more than noise is left near the line");
     if (r->startup.n_kept < r->limits->startup.least_cycles - 0.02)
-        REMARK(r, "few-cycles", "%.1f cycles, at least %d wanted", r->startup.n_kept, r->limits->startup.least_cycles);
+        REMARK(r, "few-cycles", "%.1f cycles, at least %d wanted", r->startup.n_kept,
+               r->limits->startup.least_cycles);
     if (r->fit.n_used < r->limits->samples_flag * r->fit.n_cycle)
-        REMARK(r, "few-samples", "%.1f samples in a cycle, at least %.0f wanted", r->fit.n_used / r->fit.n_cycle,
-               r->limits->samples_flag);
+        REMARK(r, "few-samples", "%.1f samples in a cycle, at least %.0f wanted",
+               r->fit.n_used / r->fit.n_cycle, r->limits->samples_flag);
     if (!isnan(set) && off > r->limits->frequency_flag)
         REMARK(r, off > r->limits->frequency_skip ? "frequency-wrong" : "frequency-off",
                "found %.6g Hz, set %.6g Hz; the found one was used", r->fit.frequency_Hz, set);
@@ -154,26 +162,30 @@ static an_status judge_modulus(an_reduction *r, an_error *err)
 {
     const an_limits *l = r->limits;
     const an_point *p = r->point;
-    double frame = p->stiffness_compliance * cabs(r->result.rungs.parallel / r->result.rungs.series); /* |K2| |C| */
+    double frame =
+        p->stiffness_compliance * cabs(r->result.rungs.parallel / r->result.rungs.series); /* |K2| |C| */
     if (frame >= 1)
-        REMARK(r, "lower-bound", "the stiffness measured is %.2f times what the frame alone allows: no modulus", frame);
+        REMARK(r, "lower-bound",
+               "the stiffness measured is %.2f times what the frame alone allows: no modulus", frame);
     else if (p->stiffness_compliance > l->compliance_refuse)
         REMARK(r, "lower-bound", "K_s C is %.2f, above %.2f: the frame moves more than the specimen",
                p->stiffness_compliance, l->compliance_refuse);
     else if (p->stiffness_compliance > l->compliance_flag)
-        REMARK(r, "stiffness-compliance-large", "K_s C is %.2f, above %.2f", p->stiffness_compliance, l->compliance_flag);
+        REMARK(r, "stiffness-compliance-large", "K_s C is %.2f, above %.2f", p->stiffness_compliance,
+               l->compliance_flag);
     if (!(p->storage_Pa > 0) && frame < 1)
-        REMARK_AS(r, "channel-inverted", AN_SKIP, "E' is %.3g Pa: an inverted channel, or a moving mass that is not the bench's",
-               p->storage_Pa);
+        REMARK_AS(r, "channel-inverted", AN_SKIP,
+                  "E' is %.3g Pa: an inverted channel, or a moving mass that is not the bench's",
+                  p->storage_Pa);
     else if (p->loss_Pa < -3 * u_loss(p))
         REMARK(r, "negative-loss", "E'' is %.3g Pa, %.1f standard uncertainties below zero", p->loss_Pa,
-                  -p->loss_Pa / u_loss(p));
+               -p->loss_Pa / u_loss(p));
     else if (p->loss_Pa < 0)
         REMARK_AS(r, "negative-loss", AN_FLAG, "E'' is %.3g Pa, zero within its uncertainty", p->loss_Pa);
     for (int i = 0; i < AN_RUNG_COUNT; i++)
         if (hypot(p->rung[i][0], p->rung[i][1]) > l->correction_flag)
-            REMARK(r, "correction-large", "the %s rung changes the stiffness by %.0f %%", an_rung_word((an_rung)i),
-                   100 * hypot(p->rung[i][0], p->rung[i][1]));
+            REMARK(r, "correction-large", "the %s rung changes the stiffness by %.0f %%",
+                   an_rung_word((an_rung)i), 100 * hypot(p->rung[i][0], p->rung[i][1]));
     if (isnan(p->temperature_K))
         REMARK(r, "temperature-missing", "no temperature channel; the set temperature is no substitute");
     return AN_OK;

@@ -1,6 +1,7 @@
-/* The apparatus ladder: channel response, parallel elements, series elements, in the order from the sensor to the specimen.
- * Stage: correct. Method: complex stiffnesses in parallel add, compliances in series add. Range: below the first resonance of
- * the specimen itself; a clamp mass between compliance and specimen would ask for another order.
+/* The apparatus ladder: channel response, parallel elements, series elements, in the order from the sensor to
+ * the specimen. Stage: correct. Method: complex stiffnesses in parallel add, compliances in series add.
+ * Range: below the first resonance of the specimen itself; a clamp mass between compliance and specimen would
+ * ask for another order.
  */
 #include "anelast/ladder.h"
 
@@ -52,7 +53,8 @@ double complex an_ladder_peel(const an_ladder *l, double complex measured, an_ru
 
 double complex an_ladder_build(const an_ladder *l, double complex specimen)
 {
-    double complex behind = 1 / specimen + l->compliance, channel; /* displacement per force through the specimen */
+    double complex behind = 1 / specimen + l->compliance,
+                   channel; /* displacement per force through the specimen */
     if (l->fixed_end)
         channel = 1 / (behind * fixture_factor(l) + 1 / l->transducer_stiffness);
     else

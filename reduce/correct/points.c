@@ -1,4 +1,5 @@
-/* Points in memory: words of sources and rungs, a growing list, and what follows from a point's covariances. Stage: correct. */
+/* Points in memory: words of sources and rungs, a growing list, and what follows from a point's covariances.
+ * Stage: correct. */
 #include "anelast/points.h"
 
 #include <math.h>
@@ -70,12 +71,29 @@ void an_points_clear(an_points *points)
 static an_point unknown_point(void)
 {
     an_point p = {
-        .start_s = NAN, .temperature_K = NAN, .u_temperature_K = NAN, .temperature_rate_K_s = NAN,
-        .set_temperature_K = NAN, .frequency_Hz = NAN, .u_frequency_Hz = NAN, .set_frequency_Hz = NAN,
-        .n_cycle = NAN, .n_cycle_dropped = NAN, .displacement_m = NAN, .force_N = NAN,
-        .static_force_N = NAN, .strain = NAN, .static_strain = NAN, .measured_stiffness = {NAN, NAN},
-        .specimen_stiffness = {NAN, NAN}, .stiffness_compliance = NAN, .storage_Pa = NAN, .loss_Pa = NAN,
-        .noise = {NAN, NAN, NAN}, .snr_dB = NAN, .harmonic = {NAN, NAN},
+        .start_s = NAN,
+        .temperature_K = NAN,
+        .u_temperature_K = NAN,
+        .temperature_rate_K_s = NAN,
+        .set_temperature_K = NAN,
+        .frequency_Hz = NAN,
+        .u_frequency_Hz = NAN,
+        .set_frequency_Hz = NAN,
+        .n_cycle = NAN,
+        .n_cycle_dropped = NAN,
+        .displacement_m = NAN,
+        .force_N = NAN,
+        .static_force_N = NAN,
+        .strain = NAN,
+        .static_strain = NAN,
+        .measured_stiffness = {NAN, NAN},
+        .specimen_stiffness = {NAN, NAN},
+        .stiffness_compliance = NAN,
+        .storage_Pa = NAN,
+        .loss_Pa = NAN,
+        .noise = {NAN, NAN, NAN},
+        .snr_dB = NAN,
+        .harmonic = {NAN, NAN},
     };
     for (int i = 0; i < AN_RUNG_COUNT; i++)
         p.rung[i][0] = p.rung[i][1] = NAN;

@@ -1,4 +1,5 @@
-/* The points document: written point by point, read while streaming, in the form of schema/points.xsd. Stage: correct. */
+/* The points document: written point by point, read while streaming, in the form of schema/points.xsd. Stage:
+ * correct. */
 #include "anelast/points.h"
 
 #include <math.h>
@@ -26,7 +27,8 @@ static void put_pair(an_xml_writer *w, const char *name, const double pair[2], c
     an_xml_end(w);
 }
 
-static void put_parts(an_xml_writer *w, const char *name, const char *unit, double value, double u_noise, double u_common)
+static void put_parts(an_xml_writer *w, const char *name, const char *unit, double value, double u_noise,
+                      double u_common)
 {
     an_xml_start(w, name);
     an_xml_put_double(w, "value", value);
@@ -138,7 +140,8 @@ void an_points_write(an_xml_writer *w, const an_points *points)
 
 /* ---- reading ---- */
 
-static an_status get(const an_xml_node *node, const char *name, const char *unit, double *value, double *u, an_error *err)
+static an_status get(const an_xml_node *node, const char *name, const char *unit, double *value, double *u,
+                     an_error *err)
 {
     an_measure m;
     AN_TRY(an_xml_measure_optional(node, name, unit, &m, err));
@@ -278,8 +281,8 @@ static an_status get_root(const an_xml_node *root, an_points *points, an_error *
         return an_xml_fail(root, err, AN_E_DOCUMENT, "no <end>: the document is truncated");
     AN_TRY(an_xml_integer(an_xml_child(root, "end"), "points", 0, INT32_MAX, &counted, err));
     if (counted != points->n_point)
-        return an_xml_fail(an_xml_child(root, "end"), err, AN_E_DOCUMENT, "counts %lld points, %d came before it",
-                           (long long)counted, points->n_point);
+        return an_xml_fail(an_xml_child(root, "end"), err, AN_E_DOCUMENT,
+                           "counts %lld points, %d came before it", (long long)counted, points->n_point);
     return AN_OK;
 }
 

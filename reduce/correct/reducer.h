@@ -37,11 +37,11 @@ typedef struct an_limits {
 
 /* A burst's samples in SI; arrays of the reducer. */
 typedef struct an_samples {
-    int n;               /* finite samples */
-    int n_missing;       /* left out: not finite */
+    int n;                                       /* finite samples */
+    int n_missing;                               /* left out: not finite */
     double *time, *y[AN_CHANNELS], *temperature; /* [n] [s], [m] [N], [K]; temperature NULL: no channel */
-    unsigned char *use;  /* [n] */
-    double *residual;    /* [AN_CHANNELS][n] */
+    unsigned char *use;                          /* [n] */
+    double *residual;                            /* [AN_CHANNELS][n] */
     double resolution[AN_CHANNELS], range[AN_CHANNELS][2];
     double temperature_resolution; /* [K] */
 } an_samples;
@@ -66,20 +66,20 @@ typedef struct an_reduction {
 struct an_reducer {
     an_limits limits;
     an_search *search;
-    size_t room;   /* samples that the arrays hold */
-    double *array; /* [6 room] */
+    size_t room;        /* samples that the arrays hold */
+    double *array;      /* [6 room] */
     unsigned char *use; /* [room] */
 };
 
 /* an_limits_read: thresholds from a procedure. */
 void an_limits_read(an_limits *limits, const an_procedure *procedure);
 
-/* an_samples_take: decode a burst into the reducer's arrays; samples that are not finite are left out. Returns AN_OK or
- * AN_E_MEMORY. */
+/* an_samples_take: decode a burst into the reducer's arrays; samples that are not finite are left out.
+ * Returns AN_OK or AN_E_MEMORY. */
 an_status an_samples_take(an_reducer *reducer, const an_burst *burst, an_samples *samples, an_error *err);
 
-/* an_judge_record: remarks before the fit: missing samples, times; may skip the burst. an_judge_burst: all others, after it.
- * Both return AN_OK or AN_E_MEMORY. */
+/* an_judge_record: remarks before the fit: missing samples, times; may skip the burst. an_judge_burst: all
+ * others, after it. Both return AN_OK or AN_E_MEMORY. */
 an_status an_judge_record(an_reduction *r, an_error *err);
 an_status an_judge_burst(an_reduction *r, an_error *err);
 

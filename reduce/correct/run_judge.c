@@ -1,5 +1,6 @@
-/* The head of a run on its way into points, and what only all points together can tell: swapped or inverted channels, a wrong
- * unit, a temperature channel that stands still. Stage: correct. Limits: common practice of the trade.
+/* The head of a run on its way into points, and what only all points together can tell: swapped or inverted
+ * channels, a wrong unit, a temperature channel that stands still. Stage: correct. Limits: common practice of
+ * the trade.
  */
 #include "reducer.h"
 
@@ -11,15 +12,16 @@
 static an_status note_shear(an_points *points, an_error *err)
 {
     const an_geometry *g = &points->specimen.geometry;
-    int beam = g->kind == AN_CANTILEVER_GUIDED || g->kind == AN_CANTILEVER_FREE || g->kind == AN_CANTILEVER_DUAL ||
-               g->kind == AN_BENDING_THREE_POINT;
+    int beam = g->kind == AN_CANTILEVER_GUIDED || g->kind == AN_CANTILEVER_FREE ||
+               g->kind == AN_CANTILEVER_DUAL || g->kind == AN_BENDING_THREE_POINT;
     double slender = g->length.value / g->thickness.value, term = 2.4 * 1.35 / (slender * slender);
     if (!beam || !isnan(g->poisson.value) || !isnan(g->modulus_ratio.value) || term < 0.01)
         return AN_OK;
-    return an_remark_list_add(&points->remarks, "geometry-slender", 0, err,
-                              "length over thickness is %.1f and no E/G or Poisson ratio is given: the result is an apparent "
-                              "flexural modulus, low by %.1f %% where nu is 0.35",
-                              slender, 100 * term);
+    return an_remark_list_add(
+        &points->remarks, "geometry-slender", 0, err,
+        "length over thickness is %.1f and no E/G or Poisson ratio is given: the result is an apparent "
+        "flexural modulus, low by %.1f %% where nu is 0.35",
+        slender, 100 * term);
 }
 
 /* Dates compare as texts of their first ten characters, YYYY-MM-DD. */
@@ -28,8 +30,10 @@ static an_status note_calibration(an_points *points, an_error *err)
     const char *until = points->apparatus.valid_until, *at = points->specimen.started;
     if (strlen(until) < 10 || strlen(at) < 10 || strncmp(at, until, 10) <= 0)
         return AN_OK;
-    return an_remark_list_add(&points->remarks, "calibration-expired", 0, err, "the apparatus' calibration ended on %.10s, the "
-                              "run is of %.10s", until, at);
+    return an_remark_list_add(&points->remarks, "calibration-expired", 0, err,
+                              "the apparatus' calibration ended on %.10s, the "
+                              "run is of %.10s",
+                              until, at);
 }
 
 an_status an_reducer_begin(an_reducer *reducer, const an_run *run, an_points *points, an_error *err)
@@ -40,7 +44,8 @@ an_status an_reducer_begin(an_reducer *reducer, const an_run *run, an_points *po
     points->apparatus = run->apparatus;
     for (size_t i = 0; i < run->remarks.n; i++) {
         const an_remark *row = &run->remarks.rows[i];
-        AN_TRY(an_remark_list_add_as(&points->remarks, row->kind->code, row->severity, row->burst, err, "%s", row->text));
+        AN_TRY(an_remark_list_add_as(&points->remarks, row->kind->code, row->severity, row->burst, err, "%s",
+                                     row->text));
     }
     AN_TRY(an_specimen_check(&points->specimen, err));
     if (an_budget_assume(&points->specimen.geometry, reducer->limits.dimension_u, names, sizeof names))
@@ -54,8 +59,9 @@ an_status an_reducer_begin(an_reducer *reducer, const an_run *run, an_points *po
     return note_shear(points, err);
 }
 
-/* Votes of the bursts: on the sign of the phase (K'' after the channel rung below 0 beyond 3 uncertainties, K' after the parallel
- * elements below 0), and on the size of the modulus that the measured stiffness alone would mean. */
+/* Votes of the bursts: on the sign of the phase (K'' after the channel rung below 0 beyond 3 uncertainties,
+ * K' after the parallel elements below 0), and on the size of the modulus that the measured stiffness alone
+ * would mean. */
 typedef struct votes {
     int n, inverted, swapped, implausible;
     double example_Pa; /* of the first implausible one */
@@ -65,7 +71,8 @@ typedef struct votes {
 /* Size of the modulus without the apparatus: |K measured| over the form factor, which is |K_s| / |E|. */
 static double bare_modulus(const an_point *p)
 {
-    double form = hypot(p->specimen_stiffness[0], p->specimen_stiffness[1]) / hypot(p->storage_Pa, p->loss_Pa);
+    double form =
+        hypot(p->specimen_stiffness[0], p->specimen_stiffness[1]) / hypot(p->storage_Pa, p->loss_Pa);
     return hypot(p->measured_stiffness[0], p->measured_stiffness[1]) / form;
 }
 
@@ -86,8 +93,10 @@ static void vote(const an_point *p, const an_limits *l, votes *v)
     if (isnan(p->storage_Pa) || isnan(p->measured_stiffness[0]))
         return;
     double complex measured = p->measured_stiffness[0] + I * p->measured_stiffness[1];
-    double complex channel = measured + cabs(measured) * (p->rung[AN_RUNG_CHANNEL][0] + I * p->rung[AN_RUNG_CHANNEL][1]);
-    double inner = creal(channel) + cabs(channel) * p->rung[AN_RUNG_PARALLEL][0]; /* a moving mass may turn K' legally */
+    double complex channel =
+        measured + cabs(measured) * (p->rung[AN_RUNG_CHANNEL][0] + I * p->rung[AN_RUNG_CHANNEL][1]);
+    double inner =
+        creal(channel) + cabs(channel) * p->rung[AN_RUNG_PARALLEL][0]; /* a moving mass may turn K' legally */
     an_point_common(p, common);
     double u = sqrt(p->noise[2] + common[2]) / hypot(p->storage_Pa, p->loss_Pa); /* [rad] of the phase */
     double lag = cimag(channel) / cabs(channel);
@@ -100,7 +109,8 @@ static void vote(const an_point *p, const an_limits *l, votes *v)
 }
 
 /* Skip the points of a stretch in which the temperature did not change by a bit. */
-static an_status skip_frozen(an_points *points, int first, int last, double longest_s, int *n_skipped, an_error *err)
+static an_status skip_frozen(an_points *points, int first, int last, double longest_s, int *n_skipped,
+                             an_error *err)
 {
     double length = points->point[last].start_s - points->point[first].start_s;
     if (last == first || !(length > longest_s))
@@ -138,20 +148,27 @@ an_status an_points_judge(an_points *points, const an_procedure *procedure, an_e
     for (int i = 0; i < points->n_point; i++)
         vote(&points->point[i], &limits, &v);
     if (v.n && 2 * v.inverted > v.n)
-        return an_fail(err, AN_E_SCIENCE, NULL, "the phase is near 180 degrees in %d of %d bursts: one channel is inverted; "
-                       "correct its sign in the layout", v.inverted, v.n);
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "the phase is near 180 degrees in %d of %d bursts: one channel is inverted; "
+                       "correct its sign in the layout",
+                       v.inverted, v.n);
     if (v.n && 2 * v.swapped > v.n)
-        return an_fail(err, AN_E_SCIENCE, NULL, "the phase is negative in %d of %d bursts: force and displacement are swapped, "
-                       "or the channel delay has the wrong sign", v.swapped, v.n);
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "the phase is negative in %d of %d bursts: force and displacement are swapped, "
+                       "or the channel delay has the wrong sign",
+                       v.swapped, v.n);
     if (2 * v.implausible > v.n)
-        return an_fail(err, AN_E_SCIENCE, NULL, "burst %d: a modulus of %.3g Pa is outside %.0e to %.0e Pa, and so in %d of %d "
-                       "bursts; check the units of force, displacement and dimensions", v.example, v.example_Pa,
-                       limits.modulus_least, limits.modulus_most, v.implausible, v.n);
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "burst %d: a modulus of %.3g Pa is outside %.0e to %.0e Pa, and so in %d of %d "
+                       "bursts; check the units of force, displacement and dimensions",
+                       v.example, v.example_Pa, limits.modulus_least, limits.modulus_most, v.implausible,
+                       v.n);
     AN_TRY(judge_temperature(points, limits.frozen_s, &n_skipped, err));
     for (int i = 0; i < points->n_point; i++)
         n_left += points->point[i].state != AN_POINT_SKIPPED;
     if (!n_left && points->n_point)
-        return an_fail(err, AN_E_SCIENCE, NULL, "none of %d bursts could be used; the first: %s", points->n_point,
+        return an_fail(err, AN_E_SCIENCE, NULL, "none of %d bursts could be used; the first: %s",
+                       points->n_point,
                        points->point[0].remarks.n ? points->point[0].remarks.rows[0].text : "no reason");
     return n_skipped ? AN_DUBIOUS : AN_OK;
 }

@@ -30,8 +30,8 @@ static an_status on_burst(const an_run *run, const an_burst *burst, void *user, 
     return an_burst_reduce(p->reducer, &p->points->specimen, &p->points->apparatus, burst, point, err);
 }
 
-static an_status record(const char *path, const char *sha256, const an_run *run, const an_procedure *procedure,
-                        const char *by, an_points *points, an_error *err)
+static an_status record(const char *path, const char *sha256, const an_run *run,
+                        const an_procedure *procedure, const char *by, an_points *points, an_error *err)
 {
     AN_TRY(an_made_init(&points->made, by, err));
     AN_TRY(an_made_add_input(&points->made, "run", path, sha256, err));
@@ -40,22 +40,23 @@ static an_status record(const char *path, const char *sha256, const an_run *run,
     return an_made_extend(&points->made, &run->made, sha256, err);
 }
 
-static an_status pass(const char *path, const an_procedure *procedure, const char *by, passage *p, an_run *run,
-                      an_error *err)
+static an_status pass(const char *path, const an_procedure *procedure, const char *by, passage *p,
+                      an_run *run, an_error *err)
 {
     char sha256[AN_SHA256_SIZE] = "";
     an_run_visitor visitor = {.head = on_head, .burst = on_burst, .user = p};
     AN_TRY(an_run_read(path, run, &visitor, sha256, err));
     if (p->n_other)
-        AN_TRY(an_remark_list_add(&p->points->remarks, "not-oscillation", 0, err, "%d holds or pulls give no point",
-                                  p->n_other));
+        AN_TRY(an_remark_list_add(&p->points->remarks, "not-oscillation", 0, err,
+                                  "%d holds or pulls give no point", p->n_other));
     AN_TRY(record(path, sha256, run, procedure, by, p->points, err));
     if (!p->points->n_point)
         return an_fail(err, AN_E_SCIENCE, path, "no oscillation in this run: nothing to reduce");
     return an_points_judge(p->points, procedure, err);
 }
 
-an_status an_points_make(const char *path, const an_procedure *procedure, const char *by, an_points *points, an_error *err)
+an_status an_points_make(const char *path, const an_procedure *procedure, const char *by, an_points *points,
+                         an_error *err)
 {
     an_run run;
     passage p = {.points = points, .reducer = an_reducer_new(procedure)};

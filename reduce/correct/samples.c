@@ -1,5 +1,5 @@
-/* A burst's samples on their way into the fit: decoded to SI, without those that are not finite, with the converter's step
- * and range where the coding tells them. Stage: correct (it serves phase with plain arrays).
+/* A burst's samples on their way into the fit: decoded to SI, without those that are not finite, with the
+ * converter's step and range where the coding tells them. Stage: correct (it serves phase with plain arrays).
  */
 #include "reducer.h"
 
@@ -35,7 +35,8 @@ static double step_of(const an_signal *s)
     return fabs(s->scale) / (s->divisor > 0 ? s->divisor : 1);
 }
 
-/* What a 16-bit converter gives at its ends, decoded as the samples are; wider counts are mostly printed decimals. */
+/* What a 16-bit converter gives at its ends, decoded as the samples are; wider counts are mostly printed
+ * decimals. */
 static void range_of(const an_signal *s, double range[2])
 {
     int16_t ends[2] = {INT16_MIN, INT16_MAX};
@@ -75,8 +76,8 @@ an_status an_samples_take(an_reducer *reducer, const an_burst *burst, an_samples
     size_t n = burst->displacement.count;
     *s = (an_samples){0};
     if (n != burst->force.count || n != (size_t)burst->clock.count || n > INT32_MAX / 2)
-        return an_fail(err, AN_E_VALUE, NULL, "%zu displacements, %zu forces and %ld times", n, burst->force.count,
-                       burst->clock.count);
+        return an_fail(err, AN_E_VALUE, NULL, "%zu displacements, %zu forces and %ld times", n,
+                       burst->force.count, burst->clock.count);
     AN_TRY(make_room(reducer, n, err));
     s->time = reducer->array;
     s->y[AN_DISPLACEMENT] = s->time + n;

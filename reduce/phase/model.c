@@ -1,6 +1,7 @@
-/* The linear model of the sine fit: rows of the design matrix, normal equations, residuals. Stage: phase. Method: linear
- * least squares by Cholesky factorisation of the Gram matrix; its columns are of order one and nearly orthogonal over whole
- * cycles, so that squaring the condition number does no harm (two decays beside a quadratic: below 1e5).
+/* The linear model of the sine fit: rows of the design matrix, normal equations, residuals. Stage: phase.
+ * Method: linear least squares by Cholesky factorisation of the Gram matrix; its columns are of order one and
+ * nearly orthogonal over whole cycles, so that squaring the condition number does no harm (two decays beside
+ * a quadratic: below 1e5).
  */
 #include "model.h"
 
@@ -47,7 +48,8 @@ static int choice_good(const an_sinefit_choice *c)
 an_status an_model_set(an_model *m, const an_waveform *w, const an_sinefit_choice *c, an_error *err)
 {
     if (!choice_good(c))
-        return an_fail(err, AN_E_VALUE, NULL, "sine fit: a choice is out of range (frequency %g Hz)", c->frequency_Hz);
+        return an_fail(err, AN_E_VALUE, NULL, "sine fit: a choice is out of range (frequency %g Hz)",
+                       c->frequency_Hz);
     double first = 0, last = 0;
     memset(m, 0, sizeof *m);
     m->n_used = span(w, &first, &last);
@@ -67,7 +69,8 @@ an_status an_model_set(an_model *m, const an_waveform *w, const an_sinefit_choic
     m->rate[1] = 2.5 / length;
     m->n_column = 2 * m->n_harmonic + m->n_poly + m->n_decay;
     if (m->n_used < m->n_column + 2)
-        return an_fail(err, AN_E_VALUE, NULL, "sine fit: %d samples for %d unknowns", m->n_used, m->n_column + 1);
+        return an_fail(err, AN_E_VALUE, NULL, "sine fit: %d samples for %d unknowns", m->n_used,
+                       m->n_column + 1);
     return AN_OK;
 }
 
@@ -175,8 +178,8 @@ static void project_slope(const an_model *m, an_solution *s)
     }
 }
 
-/* One step of iterative refinement: what the columns still find in the residual. Squared conditions cost digits; this
- * brings them back. */
+/* One step of iterative refinement: what the columns still find in the residual. Squared conditions cost
+ * digits; this brings them back. */
 static void refine(const an_model *m, const an_waveform *w, an_solution *s)
 {
     double row[AN_COLUMNS], rhs[AN_CHANNELS][AN_COLUMNS] = {{0}}, step[AN_COLUMNS];
@@ -199,13 +202,15 @@ static void refine(const an_model *m, const an_waveform *w, an_solution *s)
     }
 }
 
-an_status an_model_solve(const an_model *m, const an_waveform *w, an_solution *s, double *residual, an_error *err)
+an_status an_model_solve(const an_model *m, const an_waveform *w, an_solution *s, double *residual,
+                         an_error *err)
 {
     double gram[AN_COLUMNS][AN_COLUMNS] = {{0}}, rhs[AN_CHANNELS][AN_COLUMNS] = {{0}};
     memset(s, 0, sizeof *s);
     accumulate(m, w, gram, rhs);
     if (invert(m->n_column, gram, s->inverse))
-        return an_fail(err, AN_E_NUMERIC, NULL, "sine fit: the samples can't tell the model's %d terms apart", m->n_column);
+        return an_fail(err, AN_E_NUMERIC, NULL, "sine fit: the samples can't tell the model's %d terms apart",
+                       m->n_column);
     for (int c = 0; c < AN_CHANNELS; c++)
         multiply(m->n_column, s->inverse, rhs[c], s->coefficient[c]);
     refine(m, w, s);

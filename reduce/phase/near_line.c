@@ -1,15 +1,15 @@
-/* Noise near the line: the level that a coloured noise has where it matters, as the white noise of the same density. Stage:
- * phase. Method: the residual is projected on sines a whole number of bins (1 / window) away from the line, harmonics left
- * out; each projection's expectation under white noise is computed with what the fit has already taken out of the residual,
- * so that the level is unbiased for white noise.
+/* Noise near the line: the level that a coloured noise has where it matters, as the white noise of the same
+ * density. Stage: phase. Method: the residual is projected on sines a whole number of bins (1 / window) away
+ * from the line, harmonics left out; each projection's expectation under white noise is computed with what
+ * the fit has already taken out of the residual, so that the level is unbiased for white noise.
  */
 #include "model.h"
 
 #include <math.h>
 #include <stddef.h>
 
-/* Bins each side, and the band that counts as near, in times the frequency. Common practice: half an octave below to more
- * than an octave above, wide enough for some 20 degrees of freedom in seven cycles. */
+/* Bins each side, and the band that counts as near, in times the frequency. Common practice: half an octave
+ * below to more than an octave above, wide enough for some 20 degrees of freedom in seven cycles. */
 enum { BINS_EACH_SIDE = 16 };
 static const double BAND_LOW = 0.45, BAND_HIGH = 2.5;
 
@@ -35,8 +35,8 @@ static void probe_add(probe *p, const an_model *m, const an_solution *s, double 
     }
 }
 
-static void probe_run(probe *p, const an_model *m, const an_waveform *w, const an_solution *s, const double *residual,
-                      double omega)
+static void probe_run(probe *p, const an_model *m, const an_waveform *w, const an_solution *s,
+                      const double *residual, double omega)
 {
     double row[AN_COLUMNS];
     *p = (probe){0};
@@ -51,7 +51,8 @@ static void probe_run(probe *p, const an_model *m, const an_waveform *w, const a
 }
 
 /* Expectation of the squared projection per unit of white variance. */
-static double expectation(const probe *p, int k, int c, const an_model *m, const an_solution *s, double weight)
+static double expectation(const probe *p, int k, int c, const an_model *m, const an_solution *s,
+                          double weight)
 {
     double left = p->self[k], slope = p->slope[k][c];
     for (int i = 0; i < m->n_column; i++) {

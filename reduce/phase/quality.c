@@ -1,5 +1,6 @@
-/* The quality of a burst's record, in numbers: signal against noise, converter steps, frozen and repeated samples, mains,
- * harmonics, reversal of the force. Stage: phase. Sources of what is looked for: common practice of dynamic testing.
+/* The quality of a burst's record, in numbers: signal against noise, converter steps, frozen and repeated
+ * samples, mains, harmonics, reversal of the force. Stage: phase. Sources of what is looked for: common
+ * practice of dynamic testing.
  */
 #include "anelast/quality.h"
 
@@ -11,8 +12,8 @@
 /* Samples in a block whose repetition is no chance. */
 enum { BLOCK = 8 };
 
-/* Longest run of one value while the fit, y less residual, moves by more than 6 noise levels and 6 steps. The fault itself
- * raises the level, so a tenth of the amplitude is enough. */
+/* Longest run of one value while the fit, y less residual, moves by more than 6 noise levels and 6 steps. The
+ * fault itself raises the level, so a tenth of the amplitude is enough. */
 static int frozen(const an_waveform *w, int c, int first, const an_sinefit *fit, const double *residual)
 {
     const double *y = w->y[c], *r = residual + (size_t)c * (size_t)w->n;
@@ -82,13 +83,16 @@ static an_status repeated(const an_waveform *w, const an_sinefit *fit, int *n_re
     return status;
 }
 
-/* Mains and its second harmonic in both frequencies of the world, where the window can tell them from the line's. */
-static void mains(const an_waveform *w, int first, const an_sinefit *fit, const double *residual, an_quality *q)
+/* Mains and its second harmonic in both frequencies of the world, where the window can tell them from the
+ * line's. */
+static void mains(const an_waveform *w, int first, const an_sinefit *fit, const double *residual,
+                  an_quality *q)
 {
     static const double LINES_HZ[] = {50, 60, 100, 120};
     int n = w->n - first;
     double span = w->time_s[w->n - 1] - w->time_s[first], nyquist = 0.5 * (n - 1) / span;
-    double amplitude = cabs(fit->amplitude[AN_FORCE][0]), least = 5 * fit->deviation[AN_FORCE] * sqrt(2.0 / n);
+    double amplitude = cabs(fit->amplitude[AN_FORCE][0]),
+           least = 5 * fit->deviation[AN_FORCE] * sqrt(2.0 / n);
     for (size_t k = 0; k < sizeof LINES_HZ / sizeof *LINES_HZ; k++) {
         double f = LINES_HZ[k], order = f / fit->frequency_Hz;
         double off = fabs(order - fmax(1, round(order))) * fit->frequency_Hz;
@@ -108,7 +112,8 @@ static void harmonics(const an_sinefit *fit, const double complex drive_stiffnes
 {
     double first = cabs(fit->amplitude[AN_FORCE][0]);
     for (int h = 2; h <= 3 && h <= fit->n_harmonic; h++) {
-        double complex own = fit->amplitude[AN_FORCE][h - 1] - drive_stiffness[h - 2] * fit->amplitude[AN_DISPLACEMENT][h - 1];
+        double complex own =
+            fit->amplitude[AN_FORCE][h - 1] - drive_stiffness[h - 2] * fit->amplitude[AN_DISPLACEMENT][h - 1];
         q->harmonic[h - 2] = cabs(own) / first;
     }
     double moved = cabs(drive_stiffness[1]) * fit->u_amplitude[AN_DISPLACEMENT];
@@ -116,7 +121,8 @@ static void harmonics(const an_sinefit *fit, const double complex drive_stiffnes
 }
 
 /* Cycles in which the force less its noise passes zero against the sign of its mean. */
-static void reversals(const an_waveform *w, int first, const an_sinefit *fit, const double *residual, an_quality *q)
+static void reversals(const an_waveform *w, int first, const an_sinefit *fit, const double *residual,
+                      an_quality *q)
 {
     double sign = fit->mean[AN_FORCE] < 0 ? -1 : 1, from = w->time_s[first];
     q->n_cycle = (int)floor(fit->n_cycle + 0.01);

@@ -1,6 +1,7 @@
-/* Excitation search: where the sine fit starts. Stage: phase. Method: Hann-windowed real transform of the waveform cut to a
- * length without awkward factors; the line's place between bins from the ratio of its greatest neighbours, exact for a pure
- * sine under a Hann window: offset = (2 r - 1) / (1 + r), r = neighbour / peak. Range: two cycles to half the sampling rate.
+/* Excitation search: where the sine fit starts. Stage: phase. Method: Hann-windowed real transform of the
+ * waveform cut to a length without awkward factors; the line's place between bins from the ratio of its
+ * greatest neighbours, exact for a pure sine under a Hann window: offset = (2 r - 1) / (1 + r), r = neighbour
+ * / peak. Range: two cycles to half the sampling rate.
  */
 #include "anelast/search.h"
 
@@ -135,12 +136,13 @@ static double between_bins(const double *mag, int n_bin, int peak)
     return right >= left ? peak + offset : peak - offset;
 }
 
-an_status an_search_peak(an_search *search, int n, const double *time_s, const double *y, double *frequency_Hz,
-                         double *prominence, an_error *err)
+an_status an_search_peak(an_search *search, int n, const double *time_s, const double *y,
+                         double *frequency_Hz, double *prominence, an_error *err)
 {
     int m = an_search_length(n), n_bin = m / 2 + 1;
     if (n < LEAST || !(time_s[n - 1] > time_s[0]))
-        return an_fail(err, AN_E_SCIENCE, NULL, "%d samples are too few to find an excitation, at least %d", n, LEAST);
+        return an_fail(err, AN_E_SCIENCE, NULL, "%d samples are too few to find an excitation, at least %d",
+                       n, LEAST);
     plan_row *p = plan_for(search, m);
     double *mag = p ? malloc((size_t)n_bin * sizeof *mag) : NULL;
     if (!mag)

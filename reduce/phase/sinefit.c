@@ -1,7 +1,7 @@
-/* The sine fit of a burst: Gauss-Newton on the common frequency around the linear model (variable projection), and the
- * covariance of the two complex amplitudes from an honest noise level. Stage: phase. Method: [IEEE1057] four-parameter fit,
- * extended to two channels, drift, harmonics and start-up; bound [RB74]. Range: three or more samples a cycle, one or more
- * cycles; times need not be uniform.
+/* The sine fit of a burst: Gauss-Newton on the common frequency around the linear model (variable
+ * projection), and the covariance of the two complex amplitudes from an honest noise level. Stage: phase.
+ * Method: [IEEE1057] four-parameter fit, extended to two channels, drift, harmonics and start-up; bound
+ * [RB74]. Range: three or more samples a cycle, one or more cycles; times need not be uniform.
  */
 #include "anelast/sinefit.h"
 #include "model.h"
@@ -11,7 +11,8 @@
 #include <stdlib.h>
 #include <string.h>
 
-/* Chance, each side, of replacing the residual's deviation by the level near the line although the noise is white. */
+/* Chance, each side, of replacing the residual's deviation by the level near the line although the noise is
+ * white. */
 static const double COLOUR_RISK = 0.005;
 
 void an_sinefit_choice_init(an_sinefit_choice *choice)
@@ -19,7 +20,8 @@ void an_sinefit_choice_init(an_sinefit_choice *choice)
     *choice = (an_sinefit_choice){.drift_degree = 2, .n_harmonic = 5, .n_decay = 2};
 }
 
-double complex an_sinefit_line(int n, const double *time_s, const double *y, const unsigned char *use, double frequency_Hz)
+double complex an_sinefit_line(int n, const double *time_s, const double *y, const unsigned char *use,
+                               double frequency_Hz)
 {
     double complex sum = 0;
     int n_used = 0;
@@ -35,7 +37,8 @@ double complex an_sinefit_line(int n, const double *time_s, const double *y, con
 
 static double variance(const an_model *m, const an_solution *s, int c, int fitted)
 {
-    double freedom = m->n_used - m->n_column - (fitted ? 0.5 : 0); /* the frequency is shared by two channels */
+    double freedom =
+        m->n_used - m->n_column - (fitted ? 0.5 : 0); /* the frequency is shared by two channels */
     double amplitude = hypot(s->coefficient[c][0], s->coefficient[c][1]);
     return fmax(s->sum_square[c] / freedom, 1e-30 * amplitude * amplitude + 1e-300);
 }
@@ -57,8 +60,8 @@ static double step(const an_solution *s, const double v[AN_CHANNELS], double sha
 }
 
 /* Solve at the known frequency, or iterate to the best one. */
-static an_status converge(an_model *m, const an_waveform *w, const an_sinefit_choice *c, an_solution *s, double *residual,
-                          an_error *err)
+static an_status converge(an_model *m, const an_waveform *w, const an_sinefit_choice *c, an_solution *s,
+                          double *residual, an_error *err)
 {
     enum { STEPS = 40 };
     double start = m->omega, bin = M_PI / m->half, share[AN_CHANNELS], unused;
@@ -70,16 +73,19 @@ static an_status converge(an_model *m, const an_waveform *w, const an_sinefit_ch
         double change = step(s, v, share, &unused);
         m->omega += change;
         if (!(fabs(m->omega - start) <= bin))
-            return an_fail(err, AN_E_NUMERIC, NULL, "sine fit: no frequency within one bin of %g Hz", start / (2 * M_PI));
+            return an_fail(err, AN_E_NUMERIC, NULL, "sine fit: no frequency within one bin of %g Hz",
+                           start / (2 * M_PI));
         AN_TRY(an_model_solve(m, w, s, residual, err));
         if (fabs(change) * m->half < 1e-9)
             return AN_OK;
     }
-    return an_fail(err, AN_E_NUMERIC, NULL, "sine fit: the frequency near %g Hz does not settle", start / (2 * M_PI));
+    return an_fail(err, AN_E_NUMERIC, NULL, "sine fit: the frequency near %g Hz does not settle",
+                   start / (2 * M_PI));
 }
 
 /* The level to use: deviation of all the residual, unless the noise near the line tells otherwise. */
-static void choose_level(const an_sinefit_choice *choice, const double near[AN_CHANNELS], double freedom, an_sinefit *fit)
+static void choose_level(const an_sinefit_choice *choice, const double near[AN_CHANNELS], double freedom,
+                         an_sinefit *fit)
 {
     for (int c = 0; c < AN_CHANNELS; c++) {
         fit->near_line[c] = near[c];
@@ -96,8 +102,9 @@ static void choose_level(const an_sinefit_choice *choice, const double near[AN_C
     }
 }
 
-/* Rounding whose pattern recurs in every cycle adds up instead of averaging out: with m samples a cycle, m whole, only m of
- * the errors are independent. Noise of deviation s before a step q dithers it away by exp(-4 pi^2 s^2 / q^2) [WID61]. */
+/* Rounding whose pattern recurs in every cycle adds up instead of averaging out: with m samples a cycle, m
+ * whole, only m of the errors are independent. Noise of deviation s before a step q dithers it away by exp(-4
+ * pi^2 s^2 / q^2) [WID61]. */
 static double recurring_rounding(const an_waveform *w, const an_model *m, int c, double level)
 {
     double q = w->resolution[c], per_cycle = m->n_used / m->n_cycle, cycles = m->n_cycle;
@@ -115,7 +122,8 @@ static double correlation(const an_model *m, const an_solution *s)
 }
 
 /* Covariance of Re and Im of both amplitudes: linear part, correlation, and the frequency's. */
-static void fill_covariance(const an_waveform *w, const an_model *m, const an_solution *s, double var_omega, an_sinefit *fit)
+static void fill_covariance(const an_waveform *w, const an_model *m, const an_solution *s, double var_omega,
+                            an_sinefit *fit)
 {
     double rho = correlation(m, s), *tie = fit->tie;
     for (int a = 0; a < 4 && var_omega > 0; a++)
@@ -129,7 +137,8 @@ static void fill_covariance(const an_waveform *w, const an_model *m, const an_so
     for (int a = 0; a < 4; a++)
         fit->covariance[a][a] += recurring_rounding(w, m, a / 2, fit->level[a / 2]);
     for (int c = 0; c < AN_CHANNELS; c++)
-        fit->u_amplitude[c] = sqrt(0.5 * (fit->covariance[2 * c][2 * c] + fit->covariance[2 * c + 1][2 * c + 1]));
+        fit->u_amplitude[c] =
+            sqrt(0.5 * (fit->covariance[2 * c][2 * c] + fit->covariance[2 * c + 1][2 * c + 1]));
 }
 
 /* K = F / X and its covariance: dK = (dF - K dX) / X. */
@@ -170,8 +179,8 @@ static void fill_values(const an_model *m, const an_solution *s, int fitted, an_
     }
 }
 
-an_status an_sinefit_run(const an_waveform *w, const an_sinefit_choice *choice, an_sinefit *fit, double *residual,
-                         an_error *err)
+an_status an_sinefit_run(const an_waveform *w, const an_sinefit_choice *choice, an_sinefit *fit,
+                         double *residual, an_error *err)
 {
     an_model model;
     an_solution solution;

@@ -1,6 +1,7 @@
-/* Start-up: cycles in which a viscoelastic specimen, started from rest, is not yet steady. Stage: phase. Method: cycle by
- * cycle fits at a fixed frequency, compared with their own uncertainty; then the residual near the line of the whole fit,
- * which a transient raises above white noise, and whose level enters the stated noise in any case.
+/* Start-up: cycles in which a viscoelastic specimen, started from rest, is not yet steady. Stage: phase.
+ * Method: cycle by cycle fits at a fixed frequency, compared with their own uncertainty; then the residual
+ * near the line of the whole fit, which a transient raises above white noise, and whose level enters the
+ * stated noise in any case.
  */
 #include "anelast/startup.h"
 
@@ -10,8 +11,10 @@
 
 void an_startup_choice_init(an_startup_choice *choice)
 {
-    *choice = (an_startup_choice){
-        .agree_stiffness = 0.005, .agree_phase = 0.1 * M_PI / 180, .least_cycles = 3, .transient_risk = 0.001};
+    *choice = (an_startup_choice){.agree_stiffness = 0.005,
+                                  .agree_phase = 0.1 * M_PI / 180,
+                                  .least_cycles = 3,
+                                  .transient_risk = 0.001};
 }
 
 /* A burst cut into whole cycles, counted from its end so that what is left over falls to the start-up. */
@@ -57,8 +60,8 @@ static an_waveform part(const an_waveform *w, int from, int to)
 }
 
 /* Fit what stands from a sample on. */
-static an_status fit_from(const an_waveform *w, int from, const an_sinefit_choice *choice, an_sinefit *fit, double *residual,
-                          an_error *err)
+static an_status fit_from(const an_waveform *w, int from, const an_sinefit_choice *choice, an_sinefit *fit,
+                          double *residual, an_error *err)
 {
     an_waveform kept = part(w, from, w->n);
     double *own = malloc(AN_CHANNELS * sizeof *own * (size_t)kept.n);
@@ -77,9 +80,10 @@ static an_status fit_from(const an_waveform *w, int from, const an_sinefit_choic
 /* Stiffness of one cycle with the uncertainty of the settled noise. */
 static an_status cycle_fit(const cycles *c, int i_cycle, const an_sinefit *settled, an_sinefit *fit)
 {
-    an_waveform one = part(c->w, cycle_start(c, i_cycle), i_cycle + 1 < c->n ? cycle_start(c, i_cycle + 1) : c->w->n);
-    an_sinefit_choice choice = {.frequency_Hz = settled->frequency_Hz, .frequency_known = 1, .drift_degree = 1,
-                                .n_harmonic = 1};
+    an_waveform one =
+        part(c->w, cycle_start(c, i_cycle), i_cycle + 1 < c->n ? cycle_start(c, i_cycle + 1) : c->w->n);
+    an_sinefit_choice choice = {
+        .frequency_Hz = settled->frequency_Hz, .frequency_known = 1, .drift_degree = 1, .n_harmonic = 1};
     for (int k = 0; k < AN_CHANNELS; k++)
         choice.level[k] = fmax(settled->level[k], 1e-12 * cabs(settled->amplitude[k][0]));
     return an_sinefit_run(&one, &choice, fit, NULL, NULL);
@@ -88,13 +92,15 @@ static an_status cycle_fit(const cycles *c, int i_cycle, const an_sinefit *settl
 static int agree(const an_sinefit *a, const an_sinefit *b, const an_startup_choice *choice)
 {
     double complex ratio = b->stiffness / a->stiffness;
-    double u = sqrt(0.5 * (a->stiffness_noise[0] + a->stiffness_noise[2] + b->stiffness_noise[0] + b->stiffness_noise[2])) /
+    double u = sqrt(0.5 * (a->stiffness_noise[0] + a->stiffness_noise[2] + b->stiffness_noise[0] +
+                           b->stiffness_noise[2])) /
                cabs(a->stiffness);
     return fabs(cabs(ratio) - 1) < fmax(choice->agree_stiffness, 2.5 * u) &&
            fabs(carg(ratio)) < fmax(choice->agree_phase, 2.5 * u);
 }
 
-/* Cycle (0-based) to keep from: the first that the one after it agrees with, but never the very first; -1: none agree. */
+/* Cycle (0-based) to keep from: the first that the one after it agrees with, but never the very first; -1:
+ * none agree. */
 static int first_steady(const cycles *c, const an_sinefit *settled, const an_startup_choice *choice)
 {
     an_sinefit before, now;
@@ -109,10 +115,11 @@ static int first_steady(const cycles *c, const an_sinefit *settled, const an_sta
     return -1;
 }
 
-/* Drop further cycles while the residual near the line says that more than noise is left; else the least uncertain try. */
+/* Drop further cycles while the residual near the line says that more than noise is left; else the least
+ * uncertain try. */
 static an_status drop_transient(const cycles *c, int first, const an_sinefit_choice *choice,
-                                const an_startup_choice *start_choice, an_startup *s, an_sinefit *fit, double *residual,
-                                an_error *err)
+                                const an_startup_choice *start_choice, an_startup *s, an_sinefit *fit,
+                                double *residual, an_error *err)
 {
     int last = c->n - start_choice->least_cycles, best = -1;
     double least = INFINITY;
@@ -149,8 +156,9 @@ static an_status rough(const an_waveform *w, const an_sinefit_choice *choice, cy
     return AN_OK;
 }
 
-an_status an_startup_fit(const an_waveform *w, const an_sinefit_choice *choice, const an_startup_choice *start_choice,
-                         an_startup *s, an_sinefit *fit, double *residual, an_error *err)
+an_status an_startup_fit(const an_waveform *w, const an_sinefit_choice *choice,
+                         const an_startup_choice *start_choice, an_startup *s, an_sinefit *fit,
+                         double *residual, an_error *err)
 {
     cycles c;
     *s = (an_startup){.settled = 1};

@@ -1,4 +1,5 @@
-/* Form factors against Saint-Venant's torsion, Gent and Lindley's blocks and Timoshenko's beams: geometry.txt. */
+/* Form factors against Saint-Venant's torsion, Gent and Lindley's blocks and Timoshenko's beams:
+ * geometry.txt. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>

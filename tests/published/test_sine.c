@@ -10,8 +10,8 @@
 
 enum { MOST = 1000 };
 
-/* Fit a cosine of amplitude 1, its phase given at the first sample; the displacement is told to be so noisy that it says
- * nothing of the frequency. */
+/* Fit a cosine of amplitude 1, its phase given at the first sample; the displacement is told to be so noisy
+ * that it says nothing of the frequency. */
 static an_status fit_row(const check_row *row, int known, an_sinefit *fit, an_error *err)
 {
     static double t[MOST], x[MOST], f[MOST];
@@ -22,7 +22,9 @@ static an_status fit_row(const check_row *row, int known, an_sinefit *fit, an_er
         x[i] = f[i] = cos(2 * M_PI * frequency * i + check_given(row, "phase"));
     }
     an_waveform waveform = {.n = n, .time_s = t, .y = {x, f}};
-    an_sinefit_choice choice = {.frequency_Hz = frequency, .frequency_known = known, .n_harmonic = 1,
+    an_sinefit_choice choice = {.frequency_Hz = frequency,
+                                .frequency_known = known,
+                                .n_harmonic = 1,
                                 .level = {1e6, check_given(row, "s")}};
     return an_sinefit_run(&waveform, &choice, fit, NULL, err);
 }
@@ -35,7 +37,8 @@ static an_status known_frequency(const check_row *row, double *actual, an_error 
     return AN_OK;
 }
 
-/* Phase at the first sample: the phase in the middle less omega times the way there. d A = the linear part + tie d omega. */
+/* Phase at the first sample: the phase in the middle less omega times the way there. d A = the linear part +
+ * tie d omega. */
 static an_status fitted_frequency(const check_row *row, double *actual, an_error *err)
 {
     an_sinefit fit;
@@ -46,7 +49,8 @@ static an_status fitted_frequency(const check_row *row, double *actual, an_error
     for (int i = 0; i < 2; i++) {
         tied += d[i] * fit.tie[2 + i];
         for (int j = 0; j < 2; j++)
-            variance += d[i] * d[j] * (fit.covariance[2 + i][2 + j] - u_omega * u_omega * fit.tie[2 + i] * fit.tie[2 + j]);
+            variance += d[i] * d[j] *
+                        (fit.covariance[2 + i][2 + j] - u_omega * u_omega * fit.tie[2 + i] * fit.tie[2 + j]);
     }
     actual[0] = u_omega;
     actual[1] = sqrt(variance + tied * tied * u_omega * u_omega);
@@ -56,7 +60,8 @@ static an_status fitted_frequency(const check_row *row, double *actual, an_error
 static void table(void **state)
 {
     (void)state;
-    static const check_quantity quantities[] = {{"known frequency", known_frequency}, {"fitted frequency", fitted_frequency}};
+    static const check_quantity quantities[] = {{"known frequency", known_frequency},
+                                                {"fitted frequency", fitted_frequency}};
     check_table_run("sine.txt", quantities, sizeof quantities / sizeof *quantities);
 }
 

@@ -1,4 +1,5 @@
-/* Geometry: stiffness and back for every kind, derivatives against differences, expansion, strain, and the handbook forms. */
+/* Geometry: stiffness and back for every kind, derivatives against differences, expansion, strain, and the
+ * handbook forms. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -20,7 +21,8 @@ static an_geometry full(an_geometry_kind kind)
     g->thickness.value = 0.0021;
     g->poisson.value = 0.4;
     g->added_length.value = 0.0007;
-    if (kind == AN_COMPRESSION_FREE || kind == AN_COMPRESSION_BONDED || kind == AN_SHEAR_DOUBLE_LAP || kind == AN_PARALLEL_PLATES)
+    if (kind == AN_COMPRESSION_FREE || kind == AN_COMPRESSION_BONDED || kind == AN_SHEAR_DOUBLE_LAP ||
+        kind == AN_PARALLEL_PLATES)
         g->height.value = 0.0043;
     if (kind == AN_TORSION_CYLINDER || kind == AN_PARALLEL_PLATES)
         g->diameter.value = 0.012;
@@ -87,7 +89,8 @@ static void forms_by_hand(void **state)
 
 static double moved(an_geometry g, an_dimension dimension, double by)
 {
-    an_measure *const m[] = {&g.length, &g.width, &g.thickness, &g.diameter, &g.height, &g.area, &g.added_length};
+    an_measure *const m[] = {&g.length, &g.width, &g.thickness,   &g.diameter,
+                             &g.height, &g.area,  &g.added_length};
     an_form form;
     m[dimension]->value += by;
     assert_int_equal(an_geometry_form(&g, &form, NULL), AN_OK);
@@ -104,7 +107,8 @@ static void derivatives(void **state)
             if (exact == 0)
                 continue;
             double step = 1e-7; /* m; curvature leaves 1e-8, rounding 1e-9 */
-            double difference = (moved(g, (an_dimension)d, step) - moved(g, (an_dimension)d, -step)) / (2 * step);
+            double difference =
+                (moved(g, (an_dimension)d, step) - moved(g, (an_dimension)d, -step)) / (2 * step);
             assert_relative(exact, difference, 1e-5);
         }
     an_geometry g = full(AN_BENDING_THREE_POINT); /* bending: 1 % in t is 3 % in E (common practice) */
@@ -116,7 +120,8 @@ static void derivatives(void **state)
     assert_close(an_geometry_derivative(&g, AN_DIMENSION_RATIO), 0, 0);
 }
 
-/* Expansion of 7e-5 /K over 100 K raises b t^3 by 2.8 %, and A/L in tension by 0.7 % (arithmetic; the span stays the fixture's). */
+/* Expansion of 7e-5 /K over 100 K raises b t^3 by 2.8 %, and A/L in tension by 0.7 % (arithmetic; the span
+ * stays the fixture's). */
 static void expansion(void **state)
 {
     (void)state;

@@ -45,7 +45,8 @@ static void on_and_off(void **state)
     }
 }
 
-/* 10 us of skew at 100 Hz are 0.36 degrees; a force sampled late shows a phase too great (common practice, arithmetic). */
+/* 10 us of skew at 100 Hz are 0.36 degrees; a force sampled late shows a phase too great (common practice,
+ * arithmetic). */
 static void late_force_adds_phase(void **state)
 {
     (void)state;
@@ -100,7 +101,8 @@ static an_chain chain_of(an_geometry_kind kind)
     return c;
 }
 
-/* Examples of the trade: 1 % of thickness is 3 % of E in bending; 10 % of C where K_s C is 0.1 is 1 %; 0.1 % of gain is 0.1 %. */
+/* Examples of the trade: 1 % of thickness is 3 % of E in bending; 10 % of C where K_s C is 0.1 is 1 %; 0.1 %
+ * of gain is 0.1 %. */
 static void shares_of_the_budget(void **state)
 {
     (void)state;
@@ -110,7 +112,8 @@ static void shares_of_the_budget(void **state)
     c.geometry.thickness.u = 2e-5;
     assert_int_equal(an_chain_run(&c, 1e4 + 1e3 * I, &r, NULL), AN_OK);
     assert_int_equal(an_budget_common(&c, 1e4 + 1e3 * I, common, NULL), AN_OK);
-    assert_close(common[AN_SOURCE_THICKNESS][0] / creal(r.modulus), -0.03, 2e-5); /* thicker: less E; cubic part 1e-5 */
+    assert_close(common[AN_SOURCE_THICKNESS][0] / creal(r.modulus), -0.03,
+                 2e-5); /* thicker: less E; cubic part 1e-5 */
     assert_close(common[AN_SOURCE_THICKNESS][1] / cimag(r.modulus), -0.03, 2e-5);
     assert_close(common[AN_SOURCE_WIDTH][0], 0, 0);
     c.geometry.thickness.u = 0;
@@ -122,7 +125,8 @@ static void shares_of_the_budget(void **state)
     assert_relative(creal(r.rungs.series), 1e4, 1e-12);
     assert_int_equal(an_budget_common(&c, measured, common, NULL), AN_OK);
     assert_close(common[AN_SOURCE_COMPLIANCE][0] / creal(r.modulus), 0.01, 1e-5);
-    assert_close(common[AN_SOURCE_FORCE_GAIN][0] / creal(r.modulus), -0.0011, 1e-6); /* amplified by 1 + K_s C */
+    assert_close(common[AN_SOURCE_FORCE_GAIN][0] / creal(r.modulus), -0.0011,
+                 1e-6); /* amplified by 1 + K_s C */
 }
 
 /* A delay turns E': its vector lies along i E*. */
@@ -141,7 +145,8 @@ static void delay_is_a_turn(void **state)
     assert_relative(common[AN_SOURCE_DELAY][1], turn * creal(r.modulus), 1e-6);
 }
 
-/* Linear noise and Monte Carlo agree where the way is nearly straight; 4000 draws know a variance to 2.2 %. */
+/* Linear noise and Monte Carlo agree where the way is nearly straight; 4000 draws know a variance to 2.2 %.
+ * */
 static void noise_two_ways(void **state)
 {
     (void)state;
@@ -175,9 +180,10 @@ static void assumed_uncertainty(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(on_and_off),      cmocka_unit_test(late_force_adds_phase), cmocka_unit_test(moving_mass),
-        cmocka_unit_test(compliance),      cmocka_unit_test(shares_of_the_budget),  cmocka_unit_test(delay_is_a_turn),
-        cmocka_unit_test(noise_two_ways),  cmocka_unit_test(assumed_uncertainty),
+        cmocka_unit_test(on_and_off),           cmocka_unit_test(late_force_adds_phase),
+        cmocka_unit_test(moving_mass),          cmocka_unit_test(compliance),
+        cmocka_unit_test(shares_of_the_budget), cmocka_unit_test(delay_is_a_turn),
+        cmocka_unit_test(noise_two_ways),       cmocka_unit_test(assumed_uncertainty),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -1,4 +1,5 @@
-/* What a record tells of its worth: each fault is made on purpose and must be found, and a sound record must be left alone. */
+/* What a record tells of its worth: each fault is made on purpose and must be found, and a sound record must
+ * be left alone. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -87,7 +88,8 @@ static void clipping(void **state)
     assert_true(clip.n_run[AN_FORCE] >= 10);
     an_sinefit fit;
     assess(&view, RIGHT_DRIVE, &fit); /* what was held stays out: no bias, 5 standard uncertainties */
-    assert_true(cabs(fit.stiffness - w.stiffness) < 5 * sqrt(fit.stiffness_noise[0] + fit.stiffness_noise[2]));
+    assert_true(cabs(fit.stiffness - w.stiffness) <
+                5 * sqrt(fit.stiffness_noise[0] + fit.stiffness_noise[2]));
 }
 
 static void range_ends(void **state)

@@ -1,5 +1,5 @@
-/* From a burst of a run to a point, and from points to their document and back: made bursts whose modulus is known, sound ones
- * and ones with a fault each. */
+/* From a burst of a run to a point, and from points to their document and back: made bursts whose modulus is
+ * known, sound ones and ones with a fault each. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -109,7 +109,8 @@ static an_point *reduce(bench *b, an_burst *burst)
 {
     an_point *point = an_points_add(&b->points);
     assert_non_null(point);
-    assert_int_equal(an_burst_reduce(b->reducer, &b->points.specimen, &b->points.apparatus, burst, point, NULL), AN_OK);
+    assert_int_equal(
+        an_burst_reduce(b->reducer, &b->points.specimen, &b->points.apparatus, burst, point, NULL), AN_OK);
     an_burst_clear(burst);
     return point;
 }
@@ -123,7 +124,8 @@ static void modulus_with_its_uncertainty(void **state)
         an_burst burst = make_burst(&b->run, k, 0.3 * pow(1.1, k), &b->w, (unsigned long)k);
         an_point *p = reduce(b, &burst);
         assert_int_equal(p->state, AN_POINT_USED);
-        square += pow(p->storage_Pa - creal(MODULUS), 2) / p->noise[0] + pow(p->loss_Pa - cimag(MODULUS), 2) / p->noise[2];
+        square += pow(p->storage_Pa - creal(MODULUS), 2) / p->noise[0] +
+                  pow(p->loss_Pa - cimag(MODULUS), 2) / p->noise[2];
     }
     double spread = sqrt(square / (2 * BURSTS));
     assert_true(spread > 0.75 && spread < 1.25); /* 120 errors: 4 deviations are 0.26 */
@@ -135,7 +137,9 @@ static void modulus_with_its_uncertainty(void **state)
     an_point_loss_factor(p, &ratio, &u_noise, &u_common);
     assert_close(ratio, 3.0 / 21, 5 * u_noise);
     assert_true(u_common < 0.2 * sqrt(common[0]) / p->storage_Pa); /* thickness cancels in the loss factor */
-    assert_relative(p->strain, p->displacement_m * (1 - p->stiffness_compliance / (1 + p->stiffness_compliance)) / 0.0124, 0.01);
+    assert_relative(
+        p->strain, p->displacement_m * (1 - p->stiffness_compliance / (1 + p->stiffness_compliance)) / 0.0124,
+        0.01);
 }
 
 static void expect(const an_point *p, const char *code, an_point_state state)
@@ -269,7 +273,8 @@ static void same(const an_points *a, const an_points *b)
         assert_int_equal(p->remarks.n, q->remarks.n);
         assert_true(isnan(p->storage_Pa) ? isnan(q->storage_Pa) : p->storage_Pa == q->storage_Pa);
         assert_true(isnan(p->noise[1]) ? isnan(q->noise[1]) : p->noise[1] == q->noise[1]);
-        assert_true(isnan(p->u_frequency_Hz) ? isnan(q->u_frequency_Hz) : p->u_frequency_Hz == q->u_frequency_Hz);
+        assert_true(isnan(p->u_frequency_Hz) ? isnan(q->u_frequency_Hz)
+                                             : p->u_frequency_Hz == q->u_frequency_Hz);
         assert_memory_equal(p->common, q->common, sizeof p->common);
     }
 }
@@ -318,8 +323,14 @@ int main(void)
 {
 #define TEST(name) cmocka_unit_test_setup_teardown(name, bench_up, bench_down)
     const struct CMUnitTest tests[] = {
-        TEST(modulus_with_its_uncertainty), TEST(faults),     TEST(sound_run),          TEST(inverted_channel),
-        TEST(swapped_columns),              TEST(wrong_unit), TEST(frozen_thermometer), TEST(document),
+        TEST(modulus_with_its_uncertainty),
+        TEST(faults),
+        TEST(sound_run),
+        TEST(inverted_channel),
+        TEST(swapped_columns),
+        TEST(wrong_unit),
+        TEST(frozen_thermometer),
+        TEST(document),
     };
     return cmocka_run_group_tests(tests, scratch_enter, scratch_leave);
 }

@@ -1,5 +1,6 @@
-/* The sine fit on made waveforms: exact without noise, at the bound with white noise, honest with coloured noise and rounding.
- * Random numbers are GSL's with a fixed seed, so the campaigns are the same every time. */
+/* The sine fit on made waveforms: exact without noise, at the bound with white noise, honest with coloured
+ * noise and rounding. Random numbers are GSL's with a fixed seed, so the campaigns are the same every time.
+ * */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -41,7 +42,8 @@ static void exact_without_noise(void **state)
 }
 
 /* White noise: unbiased, the spread is the one stated, and the one stated is the bound
- * u^2(delta) = (2/N) (sF^2/AF^2 + sx^2/Ax^2) [RB74] to the few per cent that drift and decays cost over whole cycles. */
+ * u^2(delta) = (2/N) (sF^2/AF^2 + sx^2/Ax^2) [RB74] to the few per cent that drift and decays cost over whole
+ * cycles. */
 static void white_noise_at_the_bound(void **state)
 {
     (void)state;
@@ -74,7 +76,8 @@ static void white_noise_at_the_bound(void **state)
     assert_true(stated > 0.97 * bound && stated < 1.10 * bound);
 }
 
-/* A fit of one coloured channel: first-order noise, ten times stronger near the line than at the end of the band. */
+/* A fit of one coloured channel: first-order noise, ten times stronger near the line than at the end of the
+ * band. */
 static void coloured_noise_is_stated(void **state)
 {
     (void)state;
@@ -100,9 +103,11 @@ static void coloured_noise_is_stated(void **state)
         naive += (z[0] * z[0] + z[1] * z[1]) * short_of * short_of;
     }
     gsl_rng_free(rng);
-    /* The level is known from some 30 degrees of freedom, and the spectrum slopes over the band: 0.8 .. 1.25. */
+    /* The level is known from some 30 degrees of freedom, and the spectrum slopes over the band: 0.8 .. 1.25.
+     */
     assert_spread(square, 2 * DRAWS, 0.8, 1.25);
-    assert_true(sqrt(naive / (2 * DRAWS)) > 1.5); /* the overall deviation alone would have stated too little */
+    assert_true(sqrt(naive / (2 * DRAWS)) >
+                1.5); /* the overall deviation alone would have stated too little */
 }
 
 /* A strong line far from ours belongs to the residual's deviation, not to the noise near the line. */
@@ -124,11 +129,12 @@ static void far_line_does_not_count(void **state)
     assert_int_equal(an_sinefit_run(&view, &choice, &fit, NULL, NULL), AN_OK);
     assert_true(fit.deviation[AN_FORCE] > 0.05);
     assert_true(fit.level[AN_FORCE] < 5e-3);
-    assert_true(cabs(fit.stiffness - w.stiffness) < 5 * sqrt(fit.stiffness_noise[0] + fit.stiffness_noise[2]));
+    assert_true(cabs(fit.stiffness - w.stiffness) <
+                5 * sqrt(fit.stiffness_noise[0] + fit.stiffness_noise[2]));
 }
 
-/* Rounding of a noise-free force whose samples fall on the same phases in every cycle: errors repeat, so N samples are worth
- * only those of one cycle. Amplitudes from 3 to 40 steps. */
+/* Rounding of a noise-free force whose samples fall on the same phases in every cycle: errors repeat, so N
+ * samples are worth only those of one cycle. Amplitudes from 3 to 40 steps. */
 static void recurring_rounding_is_stated(void **state)
 {
     (void)state;
@@ -152,7 +158,7 @@ static void recurring_rounding_is_stated(void **state)
         square += z[0] * z[0] + z[1] * z[1];
         beyond += fabs(z[0]) > 4 || fabs(z[1]) > 4;
     }
-    assert_true(beyond <= 2);                             /* 99 % within 4 */
+    assert_true(beyond <= 2); /* 99 % within 4 */
     assert_spread(square, 2 * DRAWS, 0.5, 1.4);
 }
 
@@ -179,20 +185,25 @@ static void refusals(void **state)
     assert_int_equal(an_sinefit_run(&view, &choice, &fit, NULL, &err), AN_E_VALUE); /* no frequency */
     choice.frequency_Hz = 1;
     view.n = 8;
-    assert_int_equal(an_sinefit_run(&view, &choice, &fit, NULL, &err), AN_E_VALUE); /* fewer samples than unknowns */
+    assert_int_equal(an_sinefit_run(&view, &choice, &fit, NULL, &err),
+                     AN_E_VALUE); /* fewer samples than unknowns */
     view.n = 200;
     for (int i = 0; i < w.n; i++)
         w.x[i] = 0;
     choice.frequency_known = 1;
-    assert_int_equal(an_sinefit_run(&view, &choice, &fit, NULL, &err), AN_E_SCIENCE); /* the displacement stands still */
+    assert_int_equal(an_sinefit_run(&view, &choice, &fit, NULL, &err),
+                     AN_E_SCIENCE); /* the displacement stands still */
 }
 
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(exact_without_noise),      cmocka_unit_test(white_noise_at_the_bound),
-        cmocka_unit_test(coloured_noise_is_stated), cmocka_unit_test(far_line_does_not_count),
-        cmocka_unit_test(recurring_rounding_is_stated), cmocka_unit_test(residual_line),
+        cmocka_unit_test(exact_without_noise),
+        cmocka_unit_test(white_noise_at_the_bound),
+        cmocka_unit_test(coloured_noise_is_stated),
+        cmocka_unit_test(far_line_does_not_count),
+        cmocka_unit_test(recurring_rounding_is_stated),
+        cmocka_unit_test(residual_line),
         cmocka_unit_test(refusals),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);

@@ -1,4 +1,5 @@
-/* Start-up: a solid started from rest, whose transient is known in closed form; the excitation search that comes before. */
+/* Start-up: a solid started from rest, whose transient is known in closed form; the excitation search that
+ * comes before. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -23,7 +24,8 @@ static an_status run(const wave *w, double frequency, int n_decay, an_startup *s
     return an_startup_fit(&view, &choice, &start, startup, fit, residual, NULL);
 }
 
-/* Relaxation times from a third of a cycle to three bursts, noise of 60 and 80 dB: whatever is kept, the errors are as stated. */
+/* Relaxation times from a third of a cycle to three bursts, noise of 60 and 80 dB: whatever is kept, the
+ * errors are as stated. */
 static void transient_stays_below_noise(void **state)
 {
     (void)state;
@@ -50,10 +52,12 @@ static void transient_stays_below_noise(void **state)
             }
     gsl_rng_free(rng);
     double spread = sqrt(square / n);
-    assert_true(spread > 0.85 && spread < 1.25); /* 480 errors: 1 +- 0.03, and a quarter for what is left of transients */
+    assert_true(spread > 0.85 &&
+                spread < 1.25); /* 480 errors: 1 +- 0.03, and a quarter for what is left of transients */
 }
 
-/* Without decay terms and without noise the cycles themselves must tell: dropped until two agree in 0.5 % and 0.1 degree. */
+/* Without decay terms and without noise the cycles themselves must tell: dropped until two agree in 0.5 % and
+ * 0.1 degree. */
 static void cycles_are_dropped(void **state)
 {
     (void)state;
@@ -146,9 +150,9 @@ static void search_finds_the_line(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(transient_stays_below_noise),      cmocka_unit_test(cycles_are_dropped),
-        cmocka_unit_test(steady_burst_loses_one_cycle),     cmocka_unit_test(drifting_stiffness_is_not_settled),
-        cmocka_unit_test(short_burst_is_kept_whole),        cmocka_unit_test(search_finds_the_line),
+        cmocka_unit_test(transient_stays_below_noise),  cmocka_unit_test(cycles_are_dropped),
+        cmocka_unit_test(steady_burst_loses_one_cycle), cmocka_unit_test(drifting_stiffness_is_not_settled),
+        cmocka_unit_test(short_burst_is_kept_whole),    cmocka_unit_test(search_finds_the_line),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -1,4 +1,5 @@
-/* tests/unit/waves.h: made waveforms whose truth is known in closed form, for the tests of the fit. Include after cmocka.h. */
+/* tests/unit/waves.h: made waveforms whose truth is known in closed form, for the tests of the fit. Include
+ * after cmocka.h. */
 #ifndef ANELAST_TESTS_WAVES_H
 #define ANELAST_TESTS_WAVES_H
 
@@ -17,8 +18,10 @@ typedef struct wave {
     double complex stiffness; /* [N/m] true, steady */
 } wave;
 
-/* wave_steady: x = X cos(w t + 0.4) + offset, f = |K| X cos(w t + 0.4 + arg K) + offset, n samples over so many cycles. */
-static inline void wave_steady(wave *w, int n, double frequency, double cycles, double amplitude, double complex stiffness)
+/* wave_steady: x = X cos(w t + 0.4) + offset, f = |K| X cos(w t + 0.4 + arg K) + offset, n samples over so
+ * many cycles. */
+static inline void wave_steady(wave *w, int n, double frequency, double cycles, double amplitude,
+                               double complex stiffness)
 {
     w->n = n;
     w->stiffness = stiffness;
@@ -30,10 +33,10 @@ static inline void wave_steady(wave *w, int n, double frequency, double cycles, 
     }
 }
 
-/* wave_from_rest: a standard linear solid, k + k1 in a Maxwell arm of time tau, whose displacement starts as a sine at t = 0.
- * Force in closed form: the steady part and -k1 X w tau / (1 + w^2 tau^2) exp(-t / tau). */
-static inline void wave_from_rest(wave *w, int n, double frequency, double cycles, double amplitude, double k, double k1,
-                                  double tau)
+/* wave_from_rest: a standard linear solid, k + k1 in a Maxwell arm of time tau, whose displacement starts as
+ * a sine at t = 0. Force in closed form: the steady part and -k1 X w tau / (1 + w^2 tau^2) exp(-t / tau). */
+static inline void wave_from_rest(wave *w, int n, double frequency, double cycles, double amplitude, double k,
+                                  double k1, double tau)
 {
     double omega = 2 * M_PI * frequency, a = omega * tau;
     w->n = n;
@@ -59,7 +62,8 @@ static inline an_waveform wave_view(const wave *w)
     return (an_waveform){.n = w->n, .time_s = w->t, .y = {w->x, w->f}};
 }
 
-/* wave_errors: the two errors of a stiffness over their stated standard uncertainties, along and across the true one. */
+/* wave_errors: the two errors of a stiffness over their stated standard uncertainties, along and across the
+ * true one. */
 static inline void wave_errors(const an_sinefit *fit, double complex truth, double z[2])
 {
     double complex e = (fit->stiffness - truth) / truth * cabs(truth);
