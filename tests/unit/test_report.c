@@ -111,7 +111,10 @@ static void test_whole_page(void **state)
     assert_int_equal(count_nodes(&page, "//h:figure/s:svg[s:title]"), 11);
     assert_int_equal(count_nodes(&page, "//h:figure[not(h:figcaption)]"), 0);
     assert_int_equal(count_nodes(&page, "//h:section[h:h2='Waveform']//h:figure"), 2);
-    assert_int_equal(count_nodes(&page, "//h:section[h:h2='Cautions']//h:li"), 8);
+    /* eight that hold for any material, and what this material says of itself */
+    assert_int_equal(
+        count_nodes(&page, "//h:section[h:h2='Cautions']//h:li[contains(., 'tension moduli E')]"), 1);
+    assert_true(count_nodes(&page, "//h:section[h:h2='Cautions']//h:li") > 8);
     assert_int_equal(count_nodes(&page, "//h:table[h:caption='Points']/h:tbody/h:tr"),
                      TEMPERATURES * FREQUENCIES);
     assert_int_equal(count_nodes(&page, "//h:table[h:caption='Shift factors']/h:tbody/h:tr"), TEMPERATURES);
