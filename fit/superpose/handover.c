@@ -292,6 +292,7 @@ an_status an_handover_make(const an_master *master, const an_procedure *procedur
     material->specimen = master->specimen;
     material->is_shear = an_geometry_is_shear(master->specimen.geometry.kind);
     material->reference_temperature_K = master->reference_temperature_K;
+    material->strain_limit = master->strain_most;
     AN_CLEAN(copy_remarks(master, material, err));
     AN_CLEAN(judge(master, procedure, override_reason, material, err));
     AN_CLEAN(gather(master, &all, err));

@@ -16,6 +16,7 @@ void an_master_init(an_master *master)
     memset(master, 0, sizeof *master);
     an_specimen_init(&master->specimen);
     an_maxwell_init(&master->spectrum);
+    master->strain_most = NAN;
 }
 
 void an_master_clear(an_master *master)
@@ -233,12 +234,15 @@ static an_status read_spectrum(const an_xml_node *node, an_master *master, an_er
 static an_status read_root(const an_xml_node *root, an_master *master, an_error *err)
 {
     const an_xml_node *child;
+    an_measure strain;
     AN_TRY(copy_text(root, "id", master->id, sizeof master->id, err));
     AN_TRY(an_made_read(root, &master->made, err));
     AN_TRY(an_xml_need(root, "specimen", &child, err));
     AN_TRY(an_specimen_from_node(child, &master->specimen, err));
     AN_TRY(an_remark_list_read(root, &master->remarks, err));
     AN_TRY(an_assessment_read(root, &master->assessment, err));
+    AN_TRY(an_xml_measure_optional(root, "strain_most", "1", &strain, err));
+    master->strain_most = strain.value;
     AN_TRY(an_xml_need(root, "superposition", &child, err));
     AN_TRY(read_verdict(child, master, err));
     AN_TRY(an_xml_need(root, "shifts", &child, err));

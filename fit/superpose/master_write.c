@@ -145,6 +145,7 @@ void an_master_write(an_xml_writer *writer, const an_master *master)
     an_specimen_write(writer, &master->specimen);
     an_remark_list_write(writer, &master->remarks, -1);
     an_assessment_write(writer, &master->assessment);
+    put_number(writer, "strain_most", master->strain_most, "1");
     put_verdict(writer, master);
     put_shifts(writer, master);
     put_trials(writer, master);

@@ -74,6 +74,7 @@ typedef struct an_grid {
     an_specimen specimen;
     an_apparatus apparatus;       /* for the temperature's common uncertainty */
     an_remark_list remarks;
+    double strain_most;           /* [1] greatest strain amplitude of the bursts that have a modulus; NAN: not known */
     int n_isotherm;
     an_isotherm *isotherm;        /* [n_isotherm] heating, then cooling, each by rising temperature; owned */
     int n_cell;

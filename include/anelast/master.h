@@ -42,6 +42,7 @@ typedef struct an_master {
     an_specimen specimen;
     an_remark_list remarks;
     an_assessment assessment;        /* as the grid had it */
+    double strain_most;              /* [1] as the grid had it; NAN: not known */
     double reference_temperature_K;  /* [K] T0, one of the isotherms' or the user's */
     an_vertical vertical;
     int n_shift;

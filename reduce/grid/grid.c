@@ -21,7 +21,7 @@ const char *an_verdict_word(an_verdict verdict)
 
 void an_grid_init(an_grid *grid)
 {
-    *grid = (an_grid){.scatter = {0, NAN, NAN, NAN, NAN}};
+    *grid = (an_grid){.strain_most = NAN, .scatter = {0, NAN, NAN, NAN, NAN}};
     an_specimen_init(&grid->specimen);
     an_apparatus_init(&grid->apparatus);
 }
@@ -74,6 +74,17 @@ static an_status carry_head(const an_points *points, int n_points, an_grid *grid
     return AN_OK;
 }
 
+/* Linearity is shown up to the greatest amplitude measured, no further. fmax passes over NAN. */
+static double find_strain(const an_points *points, int n_points)
+{
+    double most = NAN;
+    for (int i = 0; i < n_points; i++)
+        for (int k = 0; k < points[i].n_point; k++)
+            if (points[i].point[k].state != AN_POINT_SKIPPED)
+                most = fmax(most, points[i].point[k].strain);
+    return most;
+}
+
 /* Isotherms that are not steady, and bursts on a ramp, stand as remarks of the grid. */
 static an_status remark_motion(double rate_limit_K_s, an_grid *grid, an_error *err)
 {
@@ -118,6 +129,7 @@ an_status an_grid_make(const an_points *points, int n_points, const an_procedure
     AN_TRY(carry_head(points, n_points, grid, err));
     AN_TRY(sort_in(points, n_points, procedure, grid, err));
     AN_TRY(an_readings_make(fmax(grid->apparatus.temperature_bias.u, 0), grid, err));
+    grid->strain_most = find_strain(points, n_points);
     an_assess(points, n_points, grid);
     if (grid->n_isotherm == 0 && grid->n_ramp == 0)
         return an_fail(err, AN_E_SCIENCE, points->id, "%s: no burst with a modulus is left to grid",

@@ -211,6 +211,7 @@ static an_status read_head(const an_xml_node *root, an_grid *grid, an_error *err
 {
     const char *id;
     const an_xml_node *node;
+    an_measure strain;
     AN_TRY(an_xml_text(root, "id", &id, err));
     snprintf(grid->id, sizeof grid->id, "%s", id);
     AN_TRY(an_made_read(root, &grid->made, err));
@@ -219,6 +220,8 @@ static an_status read_head(const an_xml_node *root, an_grid *grid, an_error *err
     AN_TRY(an_xml_need(root, "apparatus", &node, err));
     AN_TRY(an_apparatus_from_node(node, &grid->apparatus, err));
     AN_TRY(an_remark_list_read(root, &grid->remarks, err));
+    AN_TRY(an_xml_measure_optional(root, "strain_most", "1", &strain, err));
+    grid->strain_most = strain.value;
     return an_assessment_read(root, &grid->assessment, err);
 }
 

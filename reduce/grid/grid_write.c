@@ -155,6 +155,7 @@ void an_grid_write(an_xml_writer *writer, const an_grid *grid)
     an_apparatus_write(writer, &grid->apparatus);
     an_remark_list_write(writer, &grid->remarks, -1);
     an_assessment_write(writer, &grid->assessment);
+    an_xml_put_measure(writer, "strain_most", (an_measure){grid->strain_most, NAN}, "1");
     for (int i = 0; i < grid->n_isotherm; i++)
         put_isotherm(writer, grid, i);
     put_ramp(writer, grid);
