@@ -178,8 +178,21 @@ static an_status judge(job *one, int i_stage, const an_stage_end *end, an_error 
     return i_stage == GRID ? AN_DUBIOUS : AN_OK;
 }
 
+/* Which document the line did not come to, and why, for the page: "master=...". */
+static void say_missing(const an_after_run *run, char *text, size_t size)
+{
+    text[0] = '\0';
+    if (run->no_material[0])
+        snprintf(text, size, "material=%s", run->no_material);
+    for (int i = 0; i < STAGES; i++)
+        if (strcmp(run->stopped_at, stages[i].program) == 0)
+            snprintf(text, size, "%.*s=%s", (int)strcspn(stages[i].writes, "."), stages[i].writes,
+                     run->reason);
+}
+
 static an_status make_page(const job *one, an_error *err)
 {
+    char missing[1100];
     char path[STAGES + 1][PATH_MAX + 64], output[PATH_MAX + 64];
     const char *arguments[ARGUMENTS + 1] = {"anelast-report"};
     an_stage_end end;
@@ -191,6 +204,8 @@ static an_status make_page(const job *one, an_error *err)
         }
     path_in(one, "report.html", output, sizeof output);
     add(arguments, "--output", output);
+    say_missing(one->run, missing, sizeof missing);
+    add(arguments, "--missing", missing);
     AN_TRY(run_stage(one, arguments, &end, err));
     return end.exit_code == 0 ? AN_OK : refuse(&end, err);
 }

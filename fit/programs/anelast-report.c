@@ -21,12 +21,15 @@ static const char *const about[] = {
 static const char *const examples[] = {
     "anelast-report run.xml points.xml grid.xml master.xml material.xml --output report.html",
     "anelast-report run.xml points.xml --burst 17 --output burst-17.html",
+    "anelast-report points.xml grid.xml --missing 'master=the isotherms do not overlap' --output report.html",
     NULL,
 };
 
 static const an_option options[] = {
     {"burst", 'b', "N", NULL, "1 to the number of bursts", "the one with the weightiest remarks",
      "Burst whose waveform and loop are shown; needs the run document"},
+    {"missing", 'm', "DOCUMENT=REASON", NULL, NULL, NULL,
+     "Why a document was not made, shown where it would stand; may be given for each"},
 };
 
 static const an_program program = {
@@ -55,6 +58,14 @@ static an_status read_burst(const an_arguments *arguments, int *burst, an_error 
     return AN_OK;
 }
 
+static an_status say_missing(const an_arguments *arguments, an_report *report, an_error *err)
+{
+    for (size_t i = 0; i < arguments->n_given; i++)
+        if (strcmp(arguments->given[i].name, "missing") == 0)
+            AN_TRY(an_report_say_missing(report, arguments->given[i].value, err));
+    return AN_OK;
+}
+
 static an_status write_page(const an_report *report, const char *path, an_error *err)
 {
     an_made made = {0};
@@ -78,8 +89,10 @@ static an_status work(const an_arguments *arguments, an_error *err)
     AN_TRY(read_burst(arguments, &burst, err));
     an_report_init(&report);
     bool is_named = arguments->n_files > 0;
-    an_status status = an_report_read(&report, is_named ? arguments->files : standard_input,
-                                      is_named ? arguments->n_files : 1, burst, err);
+    an_status status = say_missing(arguments, &report, err);
+    if (status >= 0)
+        status = an_report_read(&report, is_named ? arguments->files : standard_input,
+                                is_named ? arguments->n_files : 1, burst, err);
     if (status >= 0)
         status = write_page(&report, arguments->output, err);
     an_report_clear(&report);

@@ -166,14 +166,19 @@ void section_verdict(page *p)
     fprintf(p->out, "<section class=\"verdict %s\" aria-label=\"Verdict\">\n<p class=\"word\">",
             assessment ? an_verdict_word(assessment->verdict) : "none");
     if (!assessment) {
-        fputs("No verdict</p>\n<p>Only the grid and master documents carry one, and neither was given.</p>\n",
-              p->out);
+        fputs("No verdict</p>\n<p>", p->out);
+        page_sentence(p->out,
+                      page_why(p->report, AN_REPORT_GRID,
+                               "Only the grid and master documents carry one, and neither was given"));
+        fputs("</p>\n", p->out);
     } else {
         fprintf(p->out, "%s</p>\n", verdict_title(assessment->verdict));
         write_reasons(p->out, assessment);
     }
     write_superposition(p->out, p->report);
     const char *no_material = page_no_material(p->report);
+    if (!p->report->has_master && p->report->missing[AN_REPORT_MASTER][0])
+        page_absent(p, "No master curve.", p->report->missing[AN_REPORT_MASTER]);
     if (no_material && p->report->has_master)
         page_absent(p, "No material.", no_material);
     if (assessment) {

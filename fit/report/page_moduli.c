@@ -312,10 +312,10 @@ void section_moduli(page *p)
 {
     fputs("<section>\n<h2>Moduli</h2>\n", p->out);
     if (p->cells.n == 0) {
-        page_absent(p, "No moduli.",
-                    p->report->has_points || p->report->has_grid
-                        ? "Every burst was skipped; the remarks say why."
-                        : "Neither a points nor a grid document was given to this page.");
+        const char *none = p->report->has_points || p->report->has_grid
+                               ? "Every burst was skipped; the remarks say why"
+                               : "Neither a points nor a grid document was given to this page";
+        page_absent(p, "No moduli.", page_why(p->report, AN_REPORT_POINTS, none));
         fputs("</section>\n", p->out);
         return;
     }

@@ -43,15 +43,6 @@ void page_ramp_temperature(const page *p, an_figure *figure)
                                                  .to = p->cells.temperature_C[1]});
 }
 
-void page_absent(page *p, const char *what, const char *why)
-{
-    fputs("<p class=\"absent\"><b>", p->out);
-    markup_plain(p->out, what);
-    fputs("</b> ", p->out);
-    markup_plain(p->out, why);
-    fputs("</p>\n", p->out);
-}
-
 void page_sentence(FILE *out, const char *text)
 {
     size_t n = strlen(text);
@@ -63,6 +54,15 @@ void page_sentence(FILE *out, const char *text)
     markup_plain(out, lower ? text + 1 : text);
     if (!strchr(".!?", text[n - 1]))
         fputc('.', out);
+}
+
+void page_absent(page *p, const char *what, const char *why)
+{
+    fputs("<p class=\"absent\"><b>", p->out);
+    markup_plain(p->out, what);
+    fputs("</b> ", p->out);
+    page_sentence(p->out, why);
+    fputs("</p>\n", p->out);
 }
 
 const char *page_law_name(an_law_kind kind)
@@ -103,10 +103,17 @@ const an_assessment *page_assessment(const an_report *report)
     return report->has_master ? &report->master.assessment : NULL;
 }
 
+const char *page_why(const an_report *report, an_report_role role, const char *otherwise)
+{
+    return report->missing[role][0] ? report->missing[role] : otherwise;
+}
+
 const char *page_no_material(const an_report *report)
 {
     if (report->has_material)
         return NULL;
+    if (report->missing[AN_REPORT_MATERIAL][0])
+        return report->missing[AN_REPORT_MATERIAL];
     if (!report->has_master)
         return "No spectrum was made: the isotherms were not joined to a master curve.";
     if (report->master.simplicity == AN_COMPLEX)

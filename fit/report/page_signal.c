@@ -275,14 +275,16 @@ void section_signal(page *p)
     fputs("<section>\n<h2>Waveform</h2>\n", p->out);
     drawn d;
     if (!p->report->has_run) {
-        page_absent(p, "No waveform.", "No run document was given to this page.");
+        page_absent(p, "No waveform.",
+                    page_why(p->report, AN_REPORT_RUN, "No run document was given to this page"));
     } else if (p->report->wave.burst == 0 || p->report->wave.n == 0) {
         page_absent(p, "No waveform.", "The run document holds no burst with samples.");
     } else if (drawn_make(p, &d)) {
         write_which(p);
         fputs("<div class=\"figures\">\n", p->out);
         figure_waveform(p, &d);
-        figure_loop(p, &d);
+        if (d.wave->kind == AN_BURST_OSCILLATION)
+            figure_loop(p, &d);
         fputs("</div>\n", p->out);
         free(d.scratch);
     }

@@ -312,9 +312,10 @@ void section_superposition(page *p)
     fputs("<section>\n<h2>Superposition</h2>\n", p->out);
     if (!p->report->has_master) {
         page_absent(p, "No master curve.",
-                    p->report->has_grid
-                        ? "The isotherms were not joined: no master document was given to this page."
-                        : "Neither a grid nor a master document was given to this page.");
+                    page_why(p->report, AN_REPORT_MASTER,
+                             p->report->has_grid
+                                 ? "The isotherms were not joined: no master document was given to this page"
+                                 : "Neither a grid nor a master document was given to this page"));
     } else {
         const an_master *master = &p->report->master;
         fprintf(p->out, "<p><b>Verdict: %s.</b> ", an_simplicity_word(master->simplicity));

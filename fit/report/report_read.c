@@ -38,6 +38,19 @@ void an_report_clear(an_report *report)
     an_report_init(report);
 }
 
+an_status an_report_say_missing(an_report *report, const char *text, an_error *err)
+{
+    for (int role = 0; role < AN_REPORT_SOURCES; role++) {
+        size_t n = strlen(roles[role]);
+        if (strncmp(text, roles[role], n) == 0 && text[n] == '=' && text[n + 1]) {
+            snprintf(report->missing[role], sizeof report->missing[role], "%s", text + n + 1);
+            return AN_OK;
+        }
+    }
+    return an_fail(err, AN_E_USAGE, NULL,
+                   "'%s' is not one of run, points, grid, master, material with = and a reason", text);
+}
+
 /* Where the root element's name starts behind declaration and comments; NULL where none is found. */
 static const char *root_name(const char *text)
 {
@@ -194,15 +207,15 @@ static an_status read_document(an_report *report, const document *d, int burst, 
                                an_error *err)
 {
     switch (d->role) {
-    case 0:
+    case AN_REPORT_RUN:
         return read_run(report, d->path, burst, sha256, err);
-    case 1:
+    case AN_REPORT_POINTS:
         report->has_points = true;
         return an_points_read(d->path, &report->points, sha256, err);
-    case 2:
+    case AN_REPORT_GRID:
         report->has_grid = true;
         return an_grid_read(d->path, &report->grid, sha256, err);
-    case 3:
+    case AN_REPORT_MASTER:
         report->has_master = true;
         return an_master_read(d->path, &report->master, sha256, err);
     default:
@@ -226,7 +239,8 @@ static void name_source(an_report_source *source, const char *role, const char *
 static an_status read_in_order(an_report *report, const document *documents, char *const *paths, int n_path,
                                int burst, an_error *err)
 {
-    static const int order[AN_REPORT_SOURCES] = {1, 0, 2, 3, 4};
+    static const int order[AN_REPORT_SOURCES] = {AN_REPORT_POINTS, AN_REPORT_RUN, AN_REPORT_GRID,
+                                                 AN_REPORT_MASTER, AN_REPORT_MATERIAL};
     char sha256[AN_REPORT_SOURCES][AN_SHA256_SIZE];
     int from[AN_REPORT_SOURCES] = {-1, -1, -1, -1, -1};
     for (int i = 0; i < n_path; i++) {
@@ -262,7 +276,7 @@ an_status an_report_read(an_report *report, char *const *paths, int n_path, int 
     if (burst != 0) {
         bool has_run = false;
         for (int i = 0; i < n_path; i++)
-            has_run = has_run || documents[i].role == 0;
+            has_run = has_run || documents[i].role == AN_REPORT_RUN;
         if (!has_run)
             AN_CLEAN(
                 an_fail(err, AN_E_USAGE, NULL, "a burst can only be shown where a run document is given"));

@@ -247,6 +247,7 @@ typedef struct scene {
     bool run, grid, master, material;
     an_simplicity simplicity;
     const char *name;
+    const char *missing; /* as an_report_say_missing takes it; NULL: nothing is said */
 } scene;
 
 static void build(an_report *report, const scene *s)
@@ -258,6 +259,8 @@ static void build(an_report *report, const scene *s)
     if (s->run)
         add_run(report, s->name);
     add_points(report, &model);
+    if (s->missing)
+        assert_int_equal(an_report_say_missing(report, s->missing, NULL), AN_OK);
     if (s->grid)
         add_grid(report);
     if (s->master)

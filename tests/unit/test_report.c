@@ -39,7 +39,7 @@ static char *page_of(const scene *s)
     return text;
 }
 
-static const scene whole = {true, true, true, true, AN_SIMPLE, "Rail pad rubber & <cord>"};
+static const scene whole = {true, true, true, true, AN_SIMPLE, "Rail pad rubber & <cord>", NULL};
 
 /* The page taken apart by a general XML parser. */
 typedef struct parsed {
@@ -184,7 +184,7 @@ static void test_everything_is_escaped(void **state)
 static void test_a_complex_material_has_no_spectrum_and_says_why(void **state)
 {
     (void)state;
-    const scene s = {true, true, true, false, AN_COMPLEX, "Hull core"};
+    const scene s = {true, true, true, false, AN_COMPLEX, "Hull core", NULL};
     parsed page = parse_scene(&s);
     assert_int_equal(
         count_nodes(&page, "//h:header//h:p[@class='absent' and contains(., 'do not superpose')]"), 1);
@@ -197,7 +197,7 @@ static void test_a_complex_material_has_no_spectrum_and_says_why(void **state)
 static void test_points_alone(void **state)
 {
     (void)state;
-    const scene s = {false, false, false, false, AN_SIMPLE, ""};
+    const scene s = {false, false, false, false, AN_SIMPLE, "", NULL};
     parsed page = parse_scene(&s);
     assert_int_equal(count_nodes(&page, "//h:header//h:p[@class='word' and .='No verdict']"), 1);
     assert_int_equal(count_nodes(&page, "//h:section[h:h2='Waveform']/h:p[@class='absent']"), 1);
@@ -207,6 +207,26 @@ static void test_points_alone(void **state)
     assert_int_equal(
         count_nodes(&page, "//s:svg[contains(s:title, 'over the magnitude')]//s:circle[s:title]"), 40);
     parsed_clear(&page);
+}
+
+static void test_what_is_missing_is_said_with_its_reason(void **state)
+{
+    (void)state;
+    const scene s = {
+        .run = true, .grid = true, .name = "Pad", .missing = "master=isotherms 3 and 4 <do not overlap>"};
+    parsed page = parse_scene(&s);
+    assert_int_equal(
+        count_nodes(&page, "//h:p[@class='absent' and contains(., 'Isotherms 3 and 4 <do not overlap>.')]"),
+        2);
+    parsed_clear(&page);
+
+    an_report report;
+    an_error err = {0};
+    an_report_init(&report);
+    static const char *const wrong[] = {"", "master", "master=", "masters=x", "specimen=x"};
+    for (size_t i = 0; i < sizeof wrong / sizeof wrong[0]; i++)
+        assert_int_equal(an_report_say_missing(&report, wrong[i], &err), AN_E_USAGE);
+    an_report_clear(&report);
 }
 
 static void test_no_document_is_refused(void **state)
@@ -230,6 +250,7 @@ int main(void)
         cmocka_unit_test(test_everything_is_escaped),
         cmocka_unit_test(test_a_complex_material_has_no_spectrum_and_says_why),
         cmocka_unit_test(test_points_alone),
+        cmocka_unit_test(test_what_is_missing_is_said_with_its_reason),
         cmocka_unit_test(test_no_document_is_refused),
     };
     int failed = cmocka_run_group_tests(tests, NULL, NULL);
