@@ -1,6 +1,6 @@
-/* Finding bursts in a continuous record. Benches pause between bursts, or sample each frequency at its own rate: gaps and changes
- * of the interval tell most of them. Where a bench samples on at one rate, the swings of the displacement tell: two swings in
- * a row that last, or reach, otherwise than those before. Range: at least 8 samples a cycle and two cycles a burst for the
+/* Finding bursts in a continuous record. Benches pause between bursts, or sample each frequency at its own rate: gaps and
+ * changes of the interval tell most of them. Where a bench samples on at one rate, the swings of the displacement tell: two in
+ * a row that last, or reach, otherwise than two before. Range: at least 8 samples a cycle and three cycles a burst for the
  * latter; drifts and start-up transients of an ordinary test stay within the limits below (common practice).
  */
 #include "anelast/burst_find.h"
@@ -14,6 +14,10 @@ static const double duration_change = 1.25;  /* [1] frequencies of a sweep lie f
 static const double height_change = 4;       /* [1] more than a start-up transient or a creeping specimen does */
 static const double turn_least = 0.3;        /* [1] part of a swing that must be taken back to make a turn */
 static const double samples_a_swing = 4;     /* shorter ones are noise */
+/* A turn must also exceed 8 standard deviations of the noise. White noise of deviation s has second differences of mean
+ * magnitude sqrt(6) sqrt(2 / pi) s = 1.954 s; a sine of 8 samples a cycle raises that estimate, and still passes. */
+static const double turn_in_roughness = 8 / 1.954;
+static const size_t roughness_least = 8;     /* [samples] before the estimate is of use */
 
 void an_burst_finder_reset(an_burst_finder *finder)
 {
@@ -55,33 +59,41 @@ static bool changed(double value, double usual, double ratio)
     return value > ratio * usual || value * ratio < usual;
 }
 
-/* A swing has ended: is it, with the one before, the beginning of another burst? Returns where that began, or 0. */
-static size_t judge_swings(an_burst_finder *finder)
+static bool same_duration(const an_swing *one, const an_swing *other)
 {
-    const an_swing *old = &finder->swings[0], *new = &finder->swings[1];
-    if (finder->n_swings < 5)
-        return 0;
-    double least = samples_a_swing * finder->interval;
-    bool regular = finder->usual_duration >= least && fmin(old->duration, new->duration) >= least;
-    bool longer = regular && changed(old->duration, finder->usual_duration, duration_change) &&
-                  changed(new->duration, finder->usual_duration, duration_change) &&
-                  !changed(old->duration, new->duration, duration_change);
-    bool higher = changed(old->height, finder->usual_height, height_change) &&
-                  changed(new->height, finder->usual_height, height_change);
-    return longer || higher ? old->begin : 0;
+    return !changed(one->duration, other->duration, duration_change);
 }
 
-/* The swing that goes on ends at its extreme; those before the newest two join the usual ones. */
+static bool same_height(const an_swing *one, const an_swing *other, double ratio)
+{
+    return !changed(one->height, other->height, ratio);
+}
+
+/* A swing has ended: are the newest two alike, and other than an earlier two that are alike? The swing between may have been cut
+ * by the change. Returns the sample where the new burst began, or 0. */
+static size_t judge_swings(const an_burst_finder *finder)
+{
+    const an_swing *swing = finder->swings;
+    double least = samples_a_swing * finder->interval, twice = 0.5 * height_change;
+    if (finder->n_swings < AN_SWINGS_KEPT)
+        return 0;
+    bool regular = fmin(swing[1].duration, swing[4].duration) >= least;
+    bool longer = regular && same_duration(&swing[0], &swing[1]) && same_duration(&swing[3], &swing[4]) &&
+                  !same_duration(&swing[1], &swing[3]) && !same_duration(&swing[1], &swing[4]);
+    bool higher = same_height(&swing[0], &swing[1], twice) && same_height(&swing[3], &swing[4], twice) &&
+                  !same_height(&swing[1], &swing[3], height_change);
+    if (!longer && !higher)
+        return 0;
+    bool third_is_old = longer ? same_duration(&swing[1], &swing[2]) : same_height(&swing[1], &swing[2], twice);
+    return swing[third_is_old ? 3 : 2].begin;
+}
+
+/* The swing that goes on ends at its extreme. */
 static size_t end_swing(an_burst_finder *finder)
 {
-    if (finder->n_swings >= 3) {
-        double n = finder->n_swings - 2;
-        finder->usual_duration += (finder->swings[0].duration - finder->usual_duration) / n;
-        finder->usual_height += (finder->swings[0].height - finder->usual_height) / n;
-    }
-    finder->swings[0] = finder->swings[1];
-    finder->swings[1] = (an_swing){finder->to_time - finder->from_time, fabs(finder->to - finder->from),
-                                   finder->from_i};
+    memmove(finder->swings, finder->swings + 1, (AN_SWINGS_KEPT - 1) * sizeof *finder->swings);
+    finder->swings[AN_SWINGS_KEPT - 1] =
+        (an_swing){finder->to_time - finder->from_time, fabs(finder->to - finder->from), finder->from_i};
     finder->n_swings++;
     return judge_swings(finder);
 }
@@ -91,6 +103,16 @@ static void extend(an_burst_finder *finder, double time, double value)
     finder->to = value;
     finder->to_time = time;
     finder->to_i = finder->n;
+}
+
+static void look_at_noise(an_burst_finder *finder, double value)
+{
+    if (finder->n >= 2) {
+        double second = fabs(value - 2 * finder->before[1] + finder->before[0]);
+        finder->roughness += (second - finder->roughness) / (double)(finder->n - 1);
+    }
+    finder->before[0] = finder->before[1];
+    finder->before[1] = value;
 }
 
 /* Turns of the displacement. Returns the sample where a new burst began, or 0. */
@@ -108,8 +130,7 @@ static size_t look_at_swings(an_burst_finder *finder, double time, double value)
         extend(finder, time, value);
         return 0;
     }
-    double usual = finder->n_swings > 2 ? finder->usual_height : 0;
-    if (back < turn_least * fmax(gone, 0.25 * usual))
+    if (finder->n < roughness_least || back < fmax(turn_least * gone, turn_in_roughness * finder->roughness))
         return 0;
     size_t begin = end_swing(finder);
     finder->direction = -finder->direction;
@@ -125,7 +146,7 @@ static void begin_burst(an_burst_finder *finder, double time, double value)
     an_burst_finder_reset(finder);
     finder->n = 1;
     finder->time = finder->from_time = finder->to_time = time;
-    finder->from = finder->to = value;
+    finder->from = finder->to = finder->before[1] = value;
 }
 
 size_t an_burst_finder_add(an_burst_finder *finder, double time, double resolution, double displacement)
@@ -135,6 +156,7 @@ size_t an_burst_finder_add(an_burst_finder *finder, double time, double resoluti
         return 0;
     }
     size_t n_new = look_at_time(finder, time, resolution);
+    look_at_noise(finder, displacement);
     size_t begin = n_new ? 0 : look_at_swings(finder, time, displacement);
     finder->n++;
     finder->time = time;

@@ -8,6 +8,9 @@
 #include <stdbool.h>
 #include <stddef.h>
 
+/* Swings that are remembered: two before, two behind, and one that a change of burst may have cut. */
+enum { AN_SWINGS_KEPT = 5 };
+
 /* One swing of the displacement, from an extreme to the next. */
 typedef struct an_swing {
     double duration; /* [s] */
@@ -22,14 +25,14 @@ typedef struct an_burst_finder {
     double interval;   /* [s] usual interval of the burst; 0: not known yet */
     int n_odd;         /* newest intervals in a row that are not the usual one */
     double odd[3];     /* [s] the newest of them, the latest last */
+    double before[2];  /* [as the displacement] the newest two values, the latest last */
+    double roughness;  /* [the same] mean magnitude of the second differences */
     int direction;     /* of the swing that goes on: 1 up, -1 down, 0 not known */
     double from, to;   /* [as the displacement] its beginning, and how far it came */
     double from_time, to_time; /* [s] when */
     size_t from_i, to_i;       /* samples of the burst */
-    an_swing swings[2];        /* the newest two, the latest last */
+    an_swing swings[AN_SWINGS_KEPT]; /* the newest, the latest last */
     int n_swings;              /* of the burst */
-    double usual_duration;     /* [s] mean of the burst's swings, but the first and the newest two */
-    double usual_height;       /* [as the displacement] of the same */
 } an_burst_finder;
 
 /* an_burst_finder_reset: the next sample is the first of a burst. */
