@@ -1,4 +1,7 @@
-/* Files that appear whole or not at all: written beside their place, synced, renamed. */
+/* Files that appear whole or not at all. A file is written without a name in the folder of its place, synced,
+ * given a name beside the place and renamed: who is killed before leaves nothing behind. Where the file
+ * system has no nameless files it is written under the name beside the place.
+ */
 #include "anelast/output.h"
 
 #include <errno.h>
@@ -13,8 +16,8 @@
 struct an_output {
     FILE *stream;    /* NULL once closed */
     char *path;      /* NULL: standard output */
-    char *temporary; /* beside path */
-    bool in_place;   /* the place is no regular file (/dev/full, a pipe): written directly */
+    char *temporary; /* name beside path; NULL: the place is written directly (a device, a pipe) */
+    bool nameless;   /* the temporary has no name yet */
 };
 
 static void release(an_output **output)
@@ -25,40 +28,67 @@ static void release(an_output **output)
     *output = NULL;
 }
 
-/* The mode that a new file gets: what the umask leaves, or that of the file it replaces. */
-static mode_t mode_for(const char *path)
+/* The folder of a path, to be freed; NULL without memory. */
+static char *folder_of(const char *path)
 {
-    struct stat before;
-    if (stat(path, &before) == 0)
-        return before.st_mode & 0777;
-    mode_t mask = umask(0);
-    umask(mask);
-    return 0666 & ~mask;
+    char *copy = strdup(path);
+    char *folder = copy ? strdup(dirname(copy)) : NULL;
+    free(copy);
+    return folder;
 }
 
-/* Open the temporary beside the place. */
+/* Open the temporary, without a name where that is possible. Returns a descriptor, or -1 with errno. */
+static int open_temporary(an_output *output)
+{
+    char *folder = folder_of(output->path);
+    if (!folder)
+        return -1;
+    int fd = access("/proc/self/fd", X_OK) == 0 ? open(folder, O_TMPFILE | O_WRONLY | O_CLOEXEC, 0666) : -1;
+    free(folder);
+    output->nameless = fd >= 0;
+    return fd >= 0 ? fd : open(output->temporary, O_CREAT | O_EXCL | O_WRONLY | O_CLOEXEC, 0666);
+}
+
+/* Open the temporary of a place, with the mode of the file that it will replace. */
 static an_status open_beside(an_output *output, an_error *err)
 {
-    if (asprintf(&output->temporary, "%s.part-XXXXXX", output->path) < 0) {
+    struct stat before;
+    if (asprintf(&output->temporary, "%s.part-%ld", output->path, (long)getpid()) < 0) {
         output->temporary = NULL;
         return an_fail_memory(err, "an output");
     }
-    int fd = mkostemp(output->temporary, O_CLOEXEC);
+    int fd = open_temporary(output);
     if (fd < 0)
         return an_fail(err, AN_E_IO, output->path, "cannot be written: %s", strerror(errno));
-    fchmod(fd, mode_for(output->path));
+    if (stat(output->path, &before) == 0)
+        fchmod(fd, before.st_mode & 0777);
     output->stream = fdopen(fd, "wb");
     if (output->stream)
         return AN_OK;
     close(fd);
-    unlink(output->temporary);
+    if (!output->nameless)
+        unlink(output->temporary);
     return an_fail_memory(err, "an output");
+}
+
+/* Give the temporary its name, while its stream is open. Returns 0 or errno. */
+static int name_temporary(an_output *output)
+{
+    char descriptor[40];
+    if (!output->nameless)
+        return 0;
+    snprintf(descriptor, sizeof descriptor, "/proc/self/fd/%d", fileno(output->stream));
+    /* A process of this number that died between naming and renaming may have left one. */
+    unlink(output->temporary);
+    if (linkat(AT_FDCWD, descriptor, AT_FDCWD, output->temporary, AT_SYMLINK_FOLLOW) != 0)
+        return errno;
+    output->nameless = false;
+    return 0;
 }
 
 /* Open a place that can be no target of a rename: a device, a pipe. */
 static an_status open_in_place(an_output *output, an_error *err)
 {
-    output->in_place = true;
     output->stream = fopen(output->path, "wbe");
     if (!output->stream)
         return an_fail(err, AN_E_IO, output->path, "cannot be written: %s", strerror(errno));
@@ -106,6 +136,8 @@ static int finish_stream(an_output *output)
     int error = fflush(stream) != 0 ? errno : failed ? EIO : 0;
     if (!error && output->temporary && fsync(fileno(stream)) != 0)
         error = errno;
+    if (!error && output->temporary)
+        error = name_temporary(output);
     int duplicate = output->path ? -1 : dup(fileno(stream));
     if (duplicate >= 0 && close(duplicate) != 0 && !error)
         error = errno;
@@ -119,15 +151,13 @@ static int finish_stream(an_output *output)
  * refuse. */
 static void sync_folder(const char *path)
 {
-    char *copy = strdup(path);
-    if (!copy)
-        return;
-    int fd = open(dirname(copy), O_RDONLY | O_DIRECTORY | O_CLOEXEC);
+    char *folder = folder_of(path);
+    int fd = folder ? open(folder, O_RDONLY | O_DIRECTORY | O_CLOEXEC) : -1;
     if (fd >= 0) {
         fsync(fd);
         close(fd);
     }
-    free(copy);
+    free(folder);
 }
 
 an_status an_output_commit(an_output **output, an_error *err)
@@ -140,7 +170,7 @@ an_status an_output_commit(an_output **output, an_error *err)
     an_status status = AN_OK;
     if (error) {
         status = an_fail(err, AN_E_IO, place, "cannot be written: %s", strerror(error));
-        if (o->temporary)
+        if (o->temporary && !o->nameless)
             unlink(o->temporary);
     } else if (o->temporary) {
         sync_folder(o->path);
@@ -156,7 +186,7 @@ void an_output_discard(an_output **output)
         return;
     if (o->path && o->stream)
         fclose(o->stream);
-    if (o->temporary)
+    if (o->temporary && !o->nameless)
         unlink(o->temporary);
     release(output);
 }

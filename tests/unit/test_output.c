@@ -10,7 +10,9 @@
 #include "scratch.h"
 
 #include <errno.h>
+#include <signal.h>
 #include <sys/stat.h>
+#include <sys/wait.h>
 
 static void a_file_appears_only_when_it_is_whole(void **state)
 {
@@ -39,6 +41,31 @@ static void what_is_discarded_leaves_the_old_file(void **state)
     an_output_discard(&output);
     assert_null(output);
     an_output_discard(&output);
+    char *text = scratch_read("old.xml");
+    assert_string_equal(text, "old");
+    free(text);
+    assert_int_equal(scratch_count(), 1);
+    unlink("old.xml");
+}
+
+/* Killed in the middle of writing: what stood there stands there, and nothing beside it. */
+static void who_is_killed_leaves_the_old_file_alone(void **state)
+{
+    (void)state;
+    scratch_write("old.xml", "old");
+    pid_t child = fork();
+    if (child == 0) {
+        an_output *output = NULL;
+        if (an_output_open("old.xml", &output, NULL) == AN_OK) {
+            fputs("half of the new", an_output_stream(output));
+            fflush(an_output_stream(output));
+            raise(SIGKILL);
+        }
+        _exit(1);
+    }
+    int wait_status = 0;
+    assert_int_equal(waitpid(child, &wait_status, 0), child);
+    assert_true(WIFSIGNALED(wait_status));
     char *text = scratch_read("old.xml");
     assert_string_equal(text, "old");
     free(text);
@@ -104,6 +131,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(a_file_appears_only_when_it_is_whole),
         cmocka_unit_test(what_is_discarded_leaves_the_old_file),
+        cmocka_unit_test(who_is_killed_leaves_the_old_file_alone),
         cmocka_unit_test(a_replaced_file_keeps_its_mode),
         cmocka_unit_test(a_full_disk_is_found_at_the_end),
         cmocka_unit_test(an_early_error_is_not_forgotten),
