@@ -9,7 +9,7 @@
 /* clang-format off */
 #define PI 3.14159265358979323846
 
-/*                         m kg  s  K rad A dB */
+/*                         m kg  s  K rad A dB mol; a last 0 may be left out */
 #define NUMBER       {0, 0, 0, 0, 0, 0, 0}
 #define LENGTH       {1, 0, 0, 0, 0, 0, 0}
 #define MASS         {0, 1, 0, 0, 0, 0, 0}
@@ -18,6 +18,7 @@
 #define ANGLE        {0, 0, 0, 0, 1, 0, 0}
 #define CURRENT      {0, 0, 0, 0, 0, 1, 0}
 #define LEVEL        {0, 0, 0, 0, 0, 0, 1}
+#define AMOUNT       {0, 0, 0, 0, 0, 0, 0, 1}
 #define FREQUENCY    {0, 0, -1, 0, 0, 0, 0}
 #define FORCE        {1, 1, -2, 0, 0, 0, 0}
 #define PRESSURE     {-1, 1, -2, 0, 0, 0, 0}
@@ -61,6 +62,7 @@ static const an_unit table[] = {
     {"urad", "µrad μrad", ANGLE, 1, 1e6, 0, "microradian"},
     {"deg", "° degree degrees", ANGLE, PI, 180, 0, "degree of arc"},
     {"circ", "rev turn", ANGLE, 2 * PI, 1, 0, "turn"},
+    {"mol", "mole", AMOUNT, 1, 1, 0, "mole"},
     {"Hz", "", FREQUENCY, 1, 1, 0, "hertz"},
     {"mHz", "", FREQUENCY, 1, 1e3, 0, "millihertz"},
     {"kHz", "KHz", FREQUENCY, 1e3, 1, 0, "kilohertz"},

@@ -21,8 +21,8 @@ typedef struct an_measure {
 #define AN_MEASURE_NONE ((an_measure){.value = (double)__builtin_nan(""), .u = (double)__builtin_nan("")})
 
 /* Exponents of the base dimensions, in this order: length, mass, time, temperature, plane angle, current,
- * level (dB). */
-enum { AN_N_DIMENSIONS = 7 };
+ * level (dB), amount of substance. */
+enum { AN_N_DIMENSIONS = 8 };
 
 /* One row of the unit table. value_SI = value * factor / divisor + offset. Factor and divisor stand apart so
  * that 12.4 mm is 12.4 / 1000 m, rounded once. */

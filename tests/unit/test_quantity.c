@@ -58,6 +58,7 @@ static void what_people_type_is_known(void **state)
     in_si(7, "g/cm3", "kg/m3", 7e3, 1e-15);
     in_si(7, "N*s/m", "N.s/m", 7, 0);
     in_si(7, "N·s/m", "N.s/m", 7, 0);
+    in_si(214, "kJ/mol", "J/mol", 214e3, 0);
     in_si(7, "mm/N", "m/N", 7e-3, 1e-15);
     in_si(7, "mm.N⁻¹", "m/N", 7e-3, 1e-15);
 }
