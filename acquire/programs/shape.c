@@ -9,6 +9,7 @@
 #include <getopt.h>
 #include <stdarg.h>
 #include <stdio.h>
+#include <stdio_ext.h>
 #include <string.h>
 
 /* Options that several programs take; a program says which by its AN_TAKES_ bits. */
@@ -58,6 +59,7 @@ void an_program_say(const an_program *program, const char *place, const char *fo
 
 int an_program_refuse(const an_program *program, const an_error *err)
 {
+    __fpurge(stdout);
     an_program_say(program, err->place, "%s", err->text);
     return an_exit_code(err->status);
 }

@@ -101,7 +101,8 @@ const char *an_argument_file(const an_arguments *arguments, int i_file);
 void an_program_say(const an_program *program, const char *place, const char *format, ...)
     __attribute__((format(printf, 3, 4)));
 
-/* an_program_refuse: print an error as "program: place: text", drop standard output. Returns the exit code of
+/* an_program_refuse: print an error as "program: place: text", drop what waits to go to standard
+ * output. Returns the exit code of
  * its status. */
 int an_program_refuse(const an_program *program, const an_error *err);
 

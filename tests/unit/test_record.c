@@ -127,6 +127,39 @@ static void the_chain_grows_by_one_maker_a_stage(void **state)
     an_xml_document_clear(&document);
 }
 
+/* A text as a document must be refused by its schema, and the message must name something. */
+static void not_valid(const char *root, const char *text, const char *named)
+{
+    an_xml_document document;
+    an_error err = {0};
+    scratch_write("bad.xml", text);
+    an_status status = an_xml_read("bad.xml", &(an_xml_reading){.root = root}, &document, &err);
+    if (status != AN_E_DOCUMENT || !strstr(err.text, named))
+        fail_msg("status %d, '%s'; '%s' should be named", status, err.text, named);
+    an_xml_document_clear(&document);
+}
+
+static void the_schema_refuses_what_is_ambiguous(void **state)
+{
+#define TRIAL(content) "<trial xmlns=\"urn:x-anelast:documents:1\" version=\"1.0\">" content "</trial>"
+#define PROCEDURE(content)                                                                                   \
+    "<procedure xmlns=\"urn:x-anelast:documents:1\" version=\"1.0\">" content "</procedure>"
+    (void)state;
+    not_valid("trial", TRIAL("<made by=\"a\" version=\"1\" at=\"2026-03-02T21:40:00\"/>"),
+              "2026-03-02T21:40:00");
+    not_valid("trial", TRIAL("<made by=\"a\" version=\"1\" at=\"02.03.2026\"/>"), "02.03.2026");
+    not_valid("trial",
+              TRIAL("<made by=\"a\" version=\"1\" at=\"2026-03-02T21:40:00Z\"><input role=\"run\" "
+                    "path=\"../x\" sha256=\"" ZEROS "\"/></made>"),
+              "../x");
+    not_valid("trial", TRIAL("<remark code=\"gap\" severity=\"grave\">x</remark>"), "grave");
+    not_valid("trial", TRIAL("<remark code=\"gap\" severity=\"flag\" burst=\"0\">x</remark>"), "'0'");
+    not_valid("procedure",
+              PROCEDURE("<choice name=\"law\" value=\"wlf\"/><choice name=\"law\" value=\"vft\"/>"),
+              "choiceName");
+    not_valid("procedure", PROCEDURE("<choise name=\"law\" value=\"wlf\"/>"), "choise");
+}
+
 static void a_document_without_record_says_so(void **state)
 {
     an_made made;
@@ -386,6 +419,7 @@ int main(void)
         cmocka_unit_test(the_date_can_be_fixed),
         cmocka_unit_test(a_record_comes_back),
         cmocka_unit_test(the_chain_grows_by_one_maker_a_stage),
+        cmocka_unit_test(the_schema_refuses_what_is_ambiguous),
         cmocka_unit_test(a_document_without_record_says_so),
         cmocka_unit_test(every_remark_says_what_to_do),
         cmocka_unit_test(remarks_are_counted_by_burst_and_weight),
