@@ -11,7 +11,9 @@
 #include <string.h>
 
 #define MARGIN             0.04 /* of the axis beyond the data, each side */
-#define DECADES_FOR_POWERS 1.6  /* a log10 axis shorter than this is labelled with plain numbers */
+#define DECADES_OF_NUMBERS 2.3  /* the longest log10 axis labelled with plain numbers, where they have room  \
+                                 */
+#define DECADES_OF_POWERS 1.3   /* the shortest one labelled with powers of ten */
 
 extent extent_empty(void)
 {
@@ -206,13 +208,12 @@ tick_set ticks_make(const scale *s, int most_labels)
 {
     if (s->kind == AN_AXIS_LINEAR)
         return linear_ticks(s, most_labels);
-    if (log10(s->to / s->from) >= DECADES_FOR_POWERS)
-        return power_ticks(s, most_labels);
+    double decades = log10(s->to / s->from), largest = fmax(s->to, 1 / s->from);
     tick_set ticks = short_log_ticks(s);
-    double largest = fmax(s->to, 1 / s->from);
-    if (ticks.n_major >= 3 && largest < 1e5)
+    bool has_room = ticks.n_major >= 3 && ticks.n_major <= most_labels + 1;
+    if (decades < DECADES_OF_NUMBERS && has_room && largest < 1e5)
         return ticks;
-    return linear_ticks(s, most_labels);
+    return decades >= DECADES_OF_POWERS ? power_ticks(s, most_labels) : linear_ticks(s, most_labels);
 }
 
 void tick_write(FILE *out, const tick_set *ticks, int i_major, double size)

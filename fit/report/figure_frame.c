@@ -203,7 +203,7 @@ void draw_ramp(FILE *out, const an_figure *figure, const frame *f)
     fputs("</text>\n", out);
     an_figure_axis axis = {.scale = figure->ramp.scale, .from = figure->ramp.from, .to = figure->ramp.to};
     scale s = scale_make(&axis, (extent){axis.from, axis.to}, x, RAMP_LENGTH);
-    tick_set ticks = ticks_make(&s, 5);
+    tick_set ticks = ticks_make(&s, s.kind == AN_AXIS_LOG10 ? 7 : 5);
     for (int k = 0; k < ticks.n_major; k++) {
         text_at(out, "middle", scale_place(&s, ticks.major[k]), y + 25);
         tick_write(out, &ticks, k, FIGURE_TICK_SIZE);

@@ -330,6 +330,8 @@ static void test_ticks(void **state)
                 "6 10\xe2\x88\x92"
                 "3 100 103 106 109 1012 ");
     check_ticks(AN_AXIS_LOG10, 0.3, 7, "0.5 1 2 5 ");
+    check_ticks(AN_AXIS_LOG10, 0.2, 20, "0.2 0.5 1 2 5 10 20 ");
+    check_ticks(AN_AXIS_LOG10, 2e6, 3e8, "107 108 ");
     check_ticks(AN_AXIS_LOG10, 4.1, 4.6, "4.1 4.2 4.3 4.4 4.5 4.6 ");
 }
 
