@@ -13,27 +13,6 @@
 #include <string.h>
 #include <unistd.h>
 
-/* The first element's name in the head of a document, behind declaration and comments; 0 where there is none.
- */
-static int root_name(const char *text, char *name, size_t n_name)
-{
-    for (const char *at = text; (at = strchr(at, '<')); at++) {
-        if (at[1] == '?') {
-            if (!(at = strstr(at, "?>")))
-                return 0;
-        } else if (strncmp(at, "<!--", 4) == 0) {
-            if (!(at = strstr(at, "-->")))
-                return 0;
-        } else {
-            const char *colon = memchr(at, ':', strcspn(at, " \t\r\n/>"));
-            const char *from = colon ? colon + 1 : at + 1;
-            snprintf(name, n_name, "%.*s", (int)strcspn(from, " \t\r\n/>"), from);
-            return 1;
-        }
-    }
-    return 0;
-}
-
 static int is_kind(const char *path, const char *kind)
 {
     char text[8192], name[64];
@@ -43,7 +22,7 @@ static int is_kind(const char *path, const char *kind)
     size_t n = fread(text, 1, sizeof text - 1, file);
     fclose(file);
     text[n] = '\0';
-    return strlen(text) == n && strstr(text, AN_XML_NAMESPACE) && root_name(text, name, sizeof name) &&
+    return strlen(text) == n && strstr(text, AN_XML_NAMESPACE) && an_xml_sniff(text, name, sizeof name) &&
            strcmp(name, kind) == 0;
 }
 

@@ -10,10 +10,11 @@
 #include <stdlib.h>
 #include <string.h>
 
-#define MARGIN             0.04 /* of the axis beyond the data, each side */
-#define DECADES_OF_NUMBERS 2.3  /* the longest log10 axis labelled with plain numbers, where they have room  \
-                                 */
-#define DECADES_OF_POWERS 1.3   /* the shortest one labelled with powers of ten */
+#define MARGIN 0.04 /* of the axis beyond the data, each side */
+#define DECADES_OF_NUMBERS                                                                                   \
+    2.3                       /* the longest log10 axis labelled with plain numbers, where they have room    \
+                               */
+#define DECADES_OF_POWERS 1.3 /* the shortest one labelled with powers of ten */
 
 extent extent_empty(void)
 {

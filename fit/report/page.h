@@ -84,10 +84,11 @@ const char *page_why(const an_report *report, an_report_role role, const char *o
 /* page_no_material: why there is no material, in plain words; NULL where there is one. */
 const char *page_no_material(const an_report *report);
 
-/* Table cells: short text, words that may wrap, a number, a number with its uncertainty, an integer. */
+/* Table cells: short text, words that may wrap, a number by significant digits or by decimals, a number with its uncertainty, an integer. */
 void cell_text(FILE *out, const char *text);
 void cell_words(FILE *out, const char *text);
 void cell_number(FILE *out, double value, int digits);
+void cell_fixed(FILE *out, double value, int decimals);
 void cell_with_u(FILE *out, double value, double u);
 void cell_integer(FILE *out, long value);
 

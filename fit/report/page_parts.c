@@ -156,6 +156,16 @@ void cell_number(FILE *out, double value, int digits)
     fputs("</td>", out);
 }
 
+void cell_fixed(FILE *out, double value, int decimals)
+{
+    fputs("<td class=\"n\">", out);
+    if (isfinite(value))
+        markup_fixed(out, value, decimals);
+    else
+        fputs("–", out);
+    fputs("</td>", out);
+}
+
 void cell_with_u(FILE *out, double value, double u)
 {
     fputs("<td class=\"n\">", out);

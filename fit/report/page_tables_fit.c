@@ -15,7 +15,7 @@ static void table_shifts(page *p)
     for (int i = 0; i < master->n_shift; i++) {
         const an_shift *s = &master->shift[i];
         fprintf(p->out, "<tr%s>", s->determined ? "" : " class=\"muted\"");
-        cell_with_u(p->out, s->temperature_K - ZERO_CELSIUS_K, s->u_temperature_K);
+        cell_fixed(p->out, s->temperature_K - ZERO_CELSIUS_K, 2);
         cell_with_u(p->out, s->log10_aT, s->u_log10_aT);
         cell_number(p->out, s->u_noise_log10_aT, 2);
         cell_number(p->out, s->u_common_log10_aT, 2);

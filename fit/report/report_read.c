@@ -4,7 +4,6 @@
  */
 #include "anelast/report.h"
 
-#include <ctype.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -51,42 +50,19 @@ an_status an_report_say_missing(an_report *report, const char *text, an_error *e
                    "'%s' is not one of run, points, grid, master, material with = and a reason", text);
 }
 
-/* Where the root element's name starts behind declaration and comments; NULL where none is found. */
-static const char *root_name(const char *text)
-{
-    while ((text = strchr(text, '<'))) {
-        const char *end = strncmp(text, "<!--", 4) == 0 ? "-->"
-                          : text[1] == '?'              ? "?>"
-                          : text[1] == '!'              ? ">"
-                                                        : NULL;
-        if (!end)
-            return text + 1;
-        text = strstr(text, end);
-        if (!text)
-            return NULL;
-    }
-    return NULL;
-}
-
 /* The role of an open file by its root element; AN_REPORT_SOURCES where it is none. */
 static int find_role(FILE *in)
 {
-    char *text = calloc(1, SNIFFED + 1);
-    if (!text)
+    char *head = calloc(1, SNIFFED + 1), name[64] = "";
+    if (!head)
         return AN_REPORT_SOURCES;
-    size_t n = fread(text, 1, SNIFFED, in);
+    head[fread(head, 1, SNIFFED, in)] = '\0';
     rewind(in);
-    text[n] = '\0';
-    const char *name = root_name(text);
-    int role = AN_REPORT_SOURCES;
-    for (int i = 0; name && i < AN_REPORT_SOURCES; i++) {
-        const char *local = name + strcspn(name, ": \t\r\n>/");
-        local = *local == ':' ? local + 1 : name;
-        size_t length = strlen(roles[i]);
-        if (strncmp(local, roles[i], length) == 0 && !isalnum((unsigned char)local[length]))
-            role = i;
-    }
-    free(text);
+    int role = 0;
+    an_xml_sniff(head, name, sizeof name);
+    while (role < AN_REPORT_SOURCES && strcmp(name, roles[role]) != 0)
+        role++;
+    free(head);
     return role;
 }
 

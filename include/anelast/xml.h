@@ -94,6 +94,11 @@ an_status an_xml_read_stream(FILE *stream, const char *name, const an_xml_readin
 /* an_xml_document_clear: release all that it holds. */
 void an_xml_document_clear(an_xml_document *document);
 
+/* an_xml_sniff: the name of the first element, without prefix, in the head of a document, behind declaration
+ * and comments. head [in] text, terminated; name [out] cut to n_name bytes with its zero byte. Returns false
+ * where there is none. */
+bool an_xml_sniff(const char *head, char *name, size_t n_name);
+
 /* an_xml_schema_path: the path of the schema of a root element, from ANELAST_SCHEMA_DIR in the environment,
  * the source, or where it was installed. Returns AN_OK or AN_E_IO with the folders that were looked at. */
 an_status an_xml_schema_path(const char *root, char *path, size_t n_path, an_error *err);
