@@ -14,7 +14,7 @@ import random
 
 LENGTH, WIDTH, THICKNESS = 0.012, 0.005, 0.001  # m
 COMPLIANCE = 1.5e-7  # m/N
-FREQUENCIES = (0.5, 1.0, 2.0, 5.0, 10.0)  # Hz
+FREQUENCIES = (0.2, 0.5, 1.0, 2.0, 5.0, 10.0, 20.0)  # Hz
 SAMPLES, CYCLES = 32, 8
 
 
@@ -97,8 +97,8 @@ def main():
     options = parser.parse_args()
     os.makedirs(options.folder, exist_ok=True)
     chance, rows, step, start = random.Random(options.seed), ["step,time_s,position_um,force_N,chamber_degC,set_Hz"], 0, 300.0
-    for i in range(1 if options.few else 9):
-        kelvin = 248 + 5 * i + chance.uniform(-0.15, 0.15)
+    for i in range(1 if options.few else 12):
+        kelvin = 248 + 4 * i + chance.uniform(-0.15, 0.15)
         for hertz in (0,) if options.hold else FREQUENCIES:
             step += 1
             if options.hold:

@@ -30,19 +30,17 @@ static size_t fitting(const char *text, int n_column)
 static void put_block(FILE *out, const char *label, int n_line, const char *text)
 {
     fprintf(out, "  %-*s", INDENT - 2, label);
-    for (int i = 0; i < n_line; i++) {
-        int last = i == n_line - 1;
-        size_t n = fitting(text, COLUMNS - INDENT - (last ? 4 : 0));
-        fprintf(out, "%.*s", (int)n, text);
+    for (int i = 1;; i++) {
+        size_t n = fitting(text, COLUMNS - INDENT);
+        int cut = i == n_line && text[n];
+        if (cut)
+            n = fitting(text, COLUMNS - INDENT - 4);
+        fprintf(out, "%.*s%s\n", (int)n, text, cut ? " ..." : "");
         text += n + (text[n] == ' ');
-        if (!*text)
-            break;
-        if (last)
-            fputs(" ...", out);
-        else
-            fprintf(out, "\n%*s", INDENT, "");
+        if (!*text || i == n_line)
+            return;
+        fprintf(out, "%*s", INDENT, "");
     }
-    fputc('\n', out);
 }
 
 __attribute__((format(printf, 3, 4))) static void append(char *text, const char *between, const char *format,
@@ -123,13 +121,22 @@ static void print_glass(const an_xml_node *grid, FILE *out)
         put_block(out, "glass", 1, "no reading: too few temperatures at any one frequency");
 }
 
+static const char before_unclamping[] = "before unclamping, ";
+
+/* Reasons, and apart from them what to do while the specimen is still in the clamps. */
 static void print_why(const an_xml_node *assessment, FILE *out)
 {
-    char text[TEXT] = "";
+    char why[TEXT] = "", redo[TEXT] = "";
+    size_t n = sizeof before_unclamping - 1;
     for (const an_xml_node *reason = an_xml_child(assessment, "reason"); reason;
          reason = an_xml_next(reason, "reason"))
-        append(text, " | ", "%s", reason->text);
-    put_block(out, "why", 3, text[0] ? text : "nothing was noticed that speaks against it");
+        if (strncmp(reason->text, before_unclamping, n) == 0)
+            append(redo, "; ", "%s", reason->text + n);
+        else
+            append(why, " | ", "%s", reason->text);
+    put_block(out, "why", 2, why[0] ? why : "nothing was noticed that speaks against it");
+    if (redo[0])
+        put_block(out, "redo now", 2, redo);
 }
 
 static an_status print_grid(const an_xml_node *grid, FILE *out, an_error *err)
@@ -138,12 +145,12 @@ static an_status print_grid(const an_xml_node *grid, FILE *out, an_error *err)
     AN_TRY(an_xml_need(grid, "assessment", &assessment, err));
     const an_xml_node *largest = an_xml_child(assessment, "largest_correction");
     char text[TEXT] = "";
-    append(text, "", "%s used, %s flagged, %s skipped; %zu isotherms", text_of(assessment, "used"),
-           text_of(assessment, "flagged"), text_of(assessment, "skipped"),
-           an_xml_count_children(grid, "isotherm"));
+    size_t n = an_xml_count_children(grid, "isotherm");
+    append(text, "", "%s used, %s flagged, %s skipped; %zu isotherm%s", text_of(assessment, "used"),
+           text_of(assessment, "flagged"), text_of(assessment, "skipped"), n, n == 1 ? "" : "s");
     put_block(out, "bursts", 1, text);
     print_why(assessment, out);
-    put_block(out, "correction", 2, largest ? largest->text : "none");
+    put_block(out, "correction", 1, largest ? largest->text : "none");
     print_glass(grid, out);
     return AN_OK;
 }
@@ -164,7 +171,12 @@ static an_status print_master(const an_after_run *run, FILE *out, an_error *err)
     char text[TEXT] = "";
     AN_TRY(read_document(run, "master.xml", &document, err));
     const an_xml_node *superposition = an_xml_child(document.root, "superposition");
-    append(text, "", "%s: %s", text_of(superposition, "verdict"), text_of(superposition, "reason"));
+    append(text, "", "%s (reduced chi-square %.3g", text_of(superposition, "verdict"),
+           number_of(superposition, "reduced_chi_square", "value"));
+    if (isfinite(number_of(superposition, "separation", "value")))
+        append(text, "", ", isotherms %.2g° apart in phase",
+               number_of(superposition, "separation", "value") * 180 / M_PI);
+    append(text, "", "): %s", text_of(superposition, "reason"));
     put_block(out, "superposes", 2, text);
     an_xml_document_clear(&document);
     return AN_OK;
@@ -189,28 +201,21 @@ static an_status print_material(const an_after_run *run, FILE *out, an_error *er
     return AN_OK;
 }
 
-static void print_chosen(const an_after_run *run, FILE *out)
-{
-    char text[TEXT] = "";
-    const char *const chosen[] = {run->layout, run->specimen, run->apparatus};
-    for (int i = 0; i < 3; i++)
-        if (chosen[i][0])
-            append(text, ", ", "%s", chosen[i]);
-    if (text[0])
-        put_block(out, "chosen", 1, text);
-}
-
 /* Superposition and material, or why there is none. */
 static an_status print_fit(const an_after_run *run, FILE *out, an_error *err)
 {
     if (run->stopped_at[0]) {
-        put_block(out, "superposes", 2, run->reason);
+        char text[TEXT] = "";
+        append(text, "", "no master curve: %s", run->reason);
+        put_block(out, "superposes", 2, text);
         return AN_OK;
     }
     AN_TRY(print_master(run, out, err));
     if (!run->no_material[0])
         return print_material(run, out, err);
-    put_block(out, "material", 2, run->no_material);
+    char text[TEXT] = "";
+    append(text, "", "none: %s", run->no_material);
+    put_block(out, "material", 1, text);
     return AN_OK;
 }
 
@@ -224,17 +229,27 @@ static void print_head(const an_after_run *run, const char *verdict, FILE *out)
     fprintf(out, "%.*s\n", (int)n, text);
 }
 
+/* Which documents were chosen beside the dump, what was replaced, and where the page is. */
 static void print_place(const an_after_run *run, FILE *out)
 {
     char text[TEXT] = "";
+    const char *const chosen[] = {run->layout, run->specimen, run->apparatus};
     if (run->replaced)
-        append(text, "", "%s",
-               run->replaced == 1 ? "an earlier one of the same dump and documents was replaced"
-                                  : "an earlier one of the same dump with other documents was replaced");
-    print_chosen(run, out);
+        append(text, "", "%s replaced",
+               run->replaced == 1 ? "the same reduction" : "another reduction of the same dump");
+    const char *between = "; beside the dump: ";
+    for (int i = 0; i < 3; i++)
+        if (chosen[i][0]) {
+            const char *slash = strrchr(chosen[i], '/');
+            append(text, between, "%s%s", text[0] ? "" : "beside the dump: ", slash ? slash + 1 : chosen[i]);
+            between = ", ";
+        }
     if (text[0])
-        put_block(out, "folder", 1, text);
-    fprintf(out, "  %-*s%s/report.html\n", INDENT - 2, "page", run->folder);
+        put_block(out, "chosen", 1, text);
+    if (run->no_page[0])
+        fprintf(out, "  %-*s%s\n", INDENT - 2, "no page", run->folder);
+    else
+        fprintf(out, "  %-*s%s/report.html\n", INDENT - 2, "page", run->folder);
 }
 
 /* A run without oscillation goes as far as its run document. */

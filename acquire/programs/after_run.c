@@ -161,6 +161,15 @@ static an_status run_stages(job *one, int *i_stage, an_stage_end *end, an_error 
     return AN_OK;
 }
 
+/* What a stage said of this run, which is named elsewhere. */
+static void keep_reason(const job *one, const an_stage_end *end, char *reason, size_t n_reason)
+{
+    an_stage_reason(end, reason, n_reason);
+    size_t n = strlen(one->facts.id);
+    if (strncmp(reason, one->facts.id, n) == 0 && reason[n] == ':' && reason[n + 1] == ' ')
+        memmove(reason, reason + n + 2, strlen(reason + n + 2) + 1);
+}
+
 /* How far it came, and why no further. */
 static an_status judge(job *one, int i_stage, const an_stage_end *end, an_error *err)
 {
@@ -170,11 +179,11 @@ static an_status judge(job *one, int i_stage, const an_stage_end *end, an_error 
     if (end->exit_code != 1 || i_stage == PHASE)
         return refuse(end, err);
     if (i_stage == PRONY) {
-        an_stage_reason(end, run->no_material, sizeof run->no_material);
+        keep_reason(one, end, run->no_material, sizeof run->no_material);
         return AN_OK;
     }
     snprintf(run->stopped_at, sizeof run->stopped_at, "%s", stages[i_stage].program);
-    an_stage_reason(end, run->reason, sizeof run->reason);
+    keep_reason(one, end, run->reason, sizeof run->reason);
     return i_stage == GRID ? AN_DUBIOUS : AN_OK;
 }
 
@@ -190,6 +199,7 @@ static void say_missing(const an_after_run *run, char *text, size_t size)
                      run->reason);
 }
 
+/* A page that its program refuses costs no document: they stand, and the program's word for it is told. */
 static an_status make_page(const job *one, an_error *err)
 {
     char missing[1100];
@@ -207,7 +217,9 @@ static an_status make_page(const job *one, an_error *err)
     say_missing(one->run, missing, sizeof missing);
     add(arguments, "--missing", missing);
     AN_TRY(run_stage(one, arguments, &end, err));
-    return end.exit_code == 0 ? AN_OK : refuse(&end, err);
+    if (end.exit_code == 1)
+        snprintf(one->run->no_page, sizeof one->run->no_page, "%.1000s", end.said);
+    return end.exit_code <= 1 ? AN_OK : refuse(&end, err);
 }
 
 static an_status make_all(job *one, an_error *err)
@@ -232,7 +244,7 @@ static an_status make_all(job *one, an_error *err)
     }
     AN_TRY(make_page(one, err));
     AN_TRY(an_folder_publish(one->work, one->options->into, name, err));
-    return status;
+    return run->no_page[0] ? AN_DUBIOUS : status;
 }
 
 an_status an_after_run_make(const char *programs, const char *dump, const an_after_options *options,

@@ -29,14 +29,15 @@ typedef struct an_after_run {
     int replaced;               /* nonzero: an earlier reduction of the same dump stood in its place */
     char stopped_at[32];        /* the stage that refused while earlier documents stand; "" where none did */
     char reason[1024];          /* what it said */
+    char no_page[1024];         /* what anelast-report said where it made no page; "" where it did */
     char no_material[1024];     /* why there is no material; "" where there is one */
 } an_after_run;
 
 /* an_after_run_make: reduce one dump.
  *   programs [in] folder of the stage programs; dump [in] path; run [out]
- * Returns AN_OK where at least a grid, or a run of holds and pulls, stands; AN_DUBIOUS where documents and
- * page stand but no grid; or a refusal, AN_E_USAGE, AN_E_IO, AN_E_SCIENCE, and nothing is left behind. What a
- * refusing stage said is in err. */
+ * Returns AN_OK where at least a grid, or a run of holds and pulls, stands; AN_DUBIOUS where documents
+ * stand but no grid, or no page; or a refusal, AN_E_USAGE, AN_E_IO, AN_E_SCIENCE, and nothing is left behind.
+ * What a refusing stage said is in err. */
 an_status an_after_run_make(const char *programs, const char *dump, const an_after_options *options,
                             an_after_run *run, an_error *err);
 

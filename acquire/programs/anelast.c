@@ -61,6 +61,8 @@ static int reduce_one(const char *programs, const char *dump, const an_after_opt
     int exit_code = status == AN_DUBIOUS ? AN_EXIT_REFUSED : an_exit_code(status);
     if (status >= 0 && !quiet)
         status = an_after_run_print(run, stdout, &err);
+    if (status >= 0 && run->no_page[0])
+        fprintf(stderr, "%s\n", run->no_page);
     if (status < 0) {
         tell(&err);
         exit_code = an_exit_code(status);
@@ -79,10 +81,9 @@ int main(int argc, char **argv)
     if (an_stage_folder(programs, sizeof programs, &err) < 0)
         return an_program_refuse(&program, &err);
     const char *into = an_argument(&arguments, "into");
-    an_after_options options = {
-        an_argument(&arguments, "layout"),           an_argument(&arguments, "specimen"),
-        an_argument(&arguments, "apparatus"),        an_argument(&arguments, "procedure"),
-        an_argument(&arguments, "override"), into ? into : "."};
+    an_after_options options = {an_argument(&arguments, "layout"),    an_argument(&arguments, "specimen"),
+                                an_argument(&arguments, "apparatus"), an_argument(&arguments, "procedure"),
+                                an_argument(&arguments, "override"),  into ? into : "."};
     int worst = 0;
     for (int i = 0; i < arguments.n_files; i++) {
         int exit_code = reduce_one(programs, arguments.files[i], &options, arguments.quiet);

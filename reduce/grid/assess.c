@@ -135,8 +135,7 @@ static void say_what_to_redo(const an_points *points, int n_points, an_assessmen
 }
 
 static const char *const rung_phrases[AN_RUNG_COUNT] = {
-    "gain and delay of the channels", "moving mass and shaft", "compliance of frame and transducer",
-    "end, shear and constraint terms"};
+    "channel gain and delay", "mass and shaft", "frame compliance", "end, shear and constraint terms"};
 
 static void find_largest_correction(const an_points *points, int n_points, an_assessment *assessment)
 {
@@ -158,7 +157,7 @@ static void find_largest_correction(const an_points *points, int n_points, an_as
         snprintf(assessment->largest_correction, sizeof assessment->largest_correction, "none");
     else
         snprintf(assessment->largest_correction, sizeof assessment->largest_correction,
-                 "%s, %.2g %% of the stiffness at burst %d (%.3g Hz, %.1f °C), K_s C = %.2g",
+                 "%s: %.2g %% of the stiffness at burst %d (%.3g Hz, %.1f °C); K_s C = %.2g",
                  rung_phrases[i_rung], 100 * size, most->burst, most->frequency_Hz, degc(most->temperature_K),
                  most->stiffness_compliance);
 }

@@ -306,7 +306,7 @@ static void the_largest_correction_is_named(void **state)
     points.point[8].rung[AN_RUNG_SERIES][1] = 0.16;
     points.point[8].stiffness_compliance = 0.24;
     grid_of(&points, 1, &grid);
-    assert_non_null(strstr(grid.assessment.largest_correction, "compliance of frame"));
+    assert_non_null(strstr(grid.assessment.largest_correction, "frame compliance: "));
     assert_non_null(strstr(grid.assessment.largest_correction, "34 %"));
     assert_non_null(strstr(grid.assessment.largest_correction, "burst 9 (0.5 Hz"));
     assert_non_null(strstr(grid.assessment.largest_correction, "K_s C = 0.24"));
