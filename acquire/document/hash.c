@@ -2,7 +2,9 @@
 #include "anelast/hash.h"
 
 #include <errno.h>
+#include <openssl/crypto.h>
 #include <openssl/evp.h>
+#include <stdbool.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
@@ -11,9 +13,15 @@ struct an_sha256 {
     EVP_MD_CTX *context;
 };
 
+/* OpenSSL starts up at its first call, and does not survive one that follows a start without memory. */
+static bool is_started(void)
+{
+    return OSSL_LIB_CTX_get0_global_default() != NULL;
+}
+
 an_sha256 *an_sha256_new(void)
 {
-    an_sha256 *hash = malloc(sizeof *hash);
+    an_sha256 *hash = is_started() ? malloc(sizeof *hash) : NULL;
     if (!hash)
         return NULL;
     hash->context = EVP_MD_CTX_new();
@@ -54,7 +62,7 @@ an_status an_sha256_finish(an_sha256 *hash, char hex[AN_SHA256_SIZE])
 an_status an_sha256_of(const void *bytes, size_t n, char hex[AN_SHA256_SIZE])
 {
     unsigned char digest[EVP_MAX_MD_SIZE];
-    if (EVP_Digest(bytes, n, digest, NULL, EVP_sha256(), NULL) != 1)
+    if (!is_started() || EVP_Digest(bytes, n, digest, NULL, EVP_sha256(), NULL) != 1)
         return AN_E_MEMORY;
     print_hex(digest, hex);
     return AN_OK;

@@ -12,9 +12,12 @@
  * files. */
 static inline int scratch_enter(void **state)
 {
-    char *folder = strdup("/tmp/anelast-test-XXXXXX");
+    const char *place = getenv("TMPDIR");
+    char *folder = NULL;
+    if (asprintf(&folder, "%s/anelast-test-XXXXXX", place ? place : P_tmpdir) < 0)
+        return -1;
     *state = folder;
-    return folder && mkdtemp(folder) && chdir(folder) == 0 ? 0 : -1;
+    return mkdtemp(folder) && chdir(folder) == 0 ? 0 : -1;
 }
 
 static inline int scratch_count(void)
