@@ -17,6 +17,12 @@ void an_numbers_write(an_xml_writer *writer, const double *value, size_t n)
     }
 }
 
+/* A number and the blank behind it take two bytes at least; the last one needs no blank. */
+bool an_numbers_fit(const an_xml_node *node, size_t n)
+{
+    return n <= (node->n_text + 1) / 2;
+}
+
 an_status an_numbers_read(const an_xml_node *node, double *value, size_t n, an_error *err)
 {
     static const char blanks[] = " \t\r\n";

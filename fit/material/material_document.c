@@ -175,6 +175,9 @@ static an_status read_covariance(const an_xml_node *node, an_material *material,
     AN_TRY(an_xml_text(covariance, "unit", &unit, err));
     if (strcmp(unit, "Pa2") != 0)
         return an_xml_fail(covariance, err, AN_E_UNIT, "unit '%.20s'; Pa2 is allowed", unit);
+    if (!an_numbers_fit(covariance, n * n))
+        return an_xml_fail(covariance, err, AN_E_VALUE, "fewer numbers than the %zu that %zu modes need",
+                           n * n, n - 1);
     material->covariance_Pa2 = calloc(n * n, sizeof *material->covariance_Pa2);
     if (!material->covariance_Pa2)
         return an_fail_memory(err, "the covariance of a material");

@@ -105,6 +105,9 @@ static an_status read_shifts(const an_xml_node *node, an_master *master, an_erro
     }
     if (!covariance)
         return AN_OK;
+    if (!an_numbers_fit(covariance, 4 * n * n))
+        return an_xml_fail(covariance, err, AN_E_VALUE, "fewer numbers than the %zu that %zu shifts need",
+                           4 * n * n, n);
     master->covariance = calloc(4 * n * n + 1, sizeof *master->covariance);
     if (!master->covariance)
         return an_fail_memory(err, "the covariance of the shifts");

@@ -40,8 +40,11 @@ an_status an_maxwell_read(const an_xml_node *node, an_maxwell *model, double *in
                           an_error *err);
 
 /* an_numbers_write, an_numbers_read: n numbers as text content, parted by blanks.
- * Reading returns AN_OK; AN_E_VALUE where they are not exactly n numbers. */
+ * Reading returns AN_OK; AN_E_VALUE where they are not exactly n numbers.
+ * an_numbers_fit: whether the node's text is long enough to hold n numbers at all; asked before room for n is
+ * claimed, so that a hostile document cannot make a matrix of what it does not hold. */
 void an_numbers_write(an_xml_writer *writer, const double *value, size_t n);
+bool an_numbers_fit(const an_xml_node *node, size_t n);
 an_status an_numbers_read(const an_xml_node *node, double *value, size_t n, an_error *err);
 
 #endif

@@ -187,6 +187,23 @@ static void moduli_must_add_up(void **state)
     an_material_clear(&material);
 }
 
+/* A covariance that does not hold what its modes need is refused before room for it is claimed. */
+static void a_short_covariance_is_refused(void **state)
+{
+    (void)state;
+    an_material material, again;
+    an_error err = {0};
+    make(&material);
+    write(&material);
+    an_material_clear(&material);
+    assert_int_equal(
+        system("sed -i 's|<covariance unit=\"Pa2\">[^<]*|<covariance unit=\"Pa2\">1 2 3|' test_material.xml"),
+        0);
+    assert_int_equal(read_again(&again, &err), AN_E_VALUE);
+    assert_non_null(strstr(err.text, "fewer numbers than the 16 that 3 modes need"));
+    an_material_clear(&again);
+}
+
 static const char by_hand[] =
     "<?xml version='1.0'?>\n"
     "<material xmlns='urn:x-anelast:documents:1' version='1.0' id='by-hand'>\n"
@@ -253,8 +270,11 @@ static void cautions_follow_the_material(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(it_comes_back_without_loss),   cmocka_unit_test(every_fault_is_named),
-        cmocka_unit_test(moduli_must_add_up),           cmocka_unit_test(a_series_typed_by_hand_is_read),
+        cmocka_unit_test(it_comes_back_without_loss),
+        cmocka_unit_test(every_fault_is_named),
+        cmocka_unit_test(moduli_must_add_up),
+        cmocka_unit_test(a_short_covariance_is_refused),
+        cmocka_unit_test(a_series_typed_by_hand_is_read),
         cmocka_unit_test(cautions_follow_the_material),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
