@@ -1,0 +1,80 @@
+/* anelast-shift: a grid to a master curve. */
+#include "acquire/programs/shape.h"
+#include "anelast/master.h"
+#include "anelast/output.h"
+
+#include <gsl/gsl_errno.h>
+
+static const char *const about[] = {
+    "Shifts all isotherms of a grid together with one non-negative Maxwell spectrum, so that E*(omega, T) = b_T E*(omega a_T, "
+    "T0), and gives every shift factor with its uncertainty, noise and common parts apart.",
+    "Says whether one shift a temperature brings the isotherms together at all (simple, doubtful, complex), with the numbers "
+    "that say so, fits laws to the shift factors and chooses one by an information criterion.",
+    NULL};
+static const char *const examples[] = {"anelast-shift grid.xml --output master.xml",
+                                       "anelast-phase run.xml | anelast-grid | anelast-shift | anelast-prony > material.xml", NULL};
+static const an_program program = {
+    .name = "anelast-shift",
+    .summary = "grid document to shift factors, verdict on superposition, law and master curve",
+    .operands = "[GRID]",
+    .about = about,
+    .examples = examples,
+    .takes = AN_TAKES_OUTPUT | AN_TAKES_PROCEDURE | AN_TAKES_QUIET,
+    .files_least = 0,
+    .files_most = 1,
+};
+
+static an_status write_master(const char *path, const an_master *master, an_error *err)
+{
+    an_output *output;
+    AN_TRY(an_output_open(path, &output, err));
+    an_xml_writer *writer = an_xml_writer_new(an_output_stream(output), "master");
+    an_status status = writer ? AN_OK : an_fail_memory(err, "a master document");
+    if (writer) {
+        an_master_write(writer, master);
+        status = an_xml_writer_finish(writer, err);
+        an_xml_writer_free(&writer);
+    }
+    if (status >= 0)
+        return an_output_commit(&output, err);
+    an_output_discard(&output);
+    return status;
+}
+
+static an_status make_master(const an_arguments *arguments, an_grid *grid, an_master *master, an_error *err)
+{
+    char sha256[AN_SHA256_SIZE];
+    const char *path = an_argument_file(arguments, 0);
+    AN_TRY(an_grid_read(path, grid, sha256, err));
+    AN_TRY(an_made_init(&master->made, program.name, err));
+    AN_TRY(an_made_add_input(&master->made, "grid", path, sha256, err));
+    AN_TRY(an_made_extend(&master->made, &grid->made, sha256, err));
+    AN_TRY(an_procedure_record(&arguments->procedure, "superpose", &master->made, err));
+    AN_TRY(an_master_make(grid, &arguments->procedure, master, err));
+    return write_master(arguments->output, master, err);
+}
+
+static void tell(const an_master *master)
+{
+    if (master->simplicity != AN_SIMPLE)
+        an_program_say(&program, NULL, "%s: %s", an_simplicity_word(master->simplicity), master->simplicity_reason);
+}
+
+int main(int argc, char **argv)
+{
+    an_arguments arguments;
+    an_error err = {0};
+    an_grid grid;
+    an_master master;
+    gsl_set_error_handler_off();
+    if (!an_program_begin(&program, argc, argv, &arguments))
+        return arguments.exit_code;
+    an_grid_init(&grid);
+    an_master_init(&master);
+    an_status status = make_master(&arguments, &grid, &master, &err);
+    if (status >= 0 && !arguments.quiet)
+        tell(&master);
+    an_grid_clear(&grid);
+    an_master_clear(&master);
+    return status < 0 ? an_program_refuse(&program, &err) : an_program_end(&program);
+}

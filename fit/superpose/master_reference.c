@@ -1,0 +1,91 @@
+/* Another reference temperature for a finished superposition. Stage: superpose. Method: exact algebra on shifts and times, with
+ * log10 a_T and log10 b_T at the new reference from the law chosen, from T/T0, or from neighbours for free vertical
+ * shifts. Range: inside the isotherms. */
+#include "fit/superpose/master_make.h"
+
+#include <math.h>
+#include <stdio.h>
+
+static const an_law_trial *chosen_of(const an_law_trial *trial, size_t n_trial)
+{
+    for (size_t i = 0; i < n_trial; i++)
+        if (trial[i].chosen)
+            return &trial[i];
+    return NULL;
+}
+
+/* log10 b_T at a temperature. *variance [out]. */
+static double scale_at(const an_superpose_input *input, const an_superposition *result, double temperature_K,
+                       double *variance)
+{
+    *variance = 0;
+    if (result->vertical == AN_VERTICAL_NONE)
+        return 0;
+    if (result->vertical == AN_VERTICAL_DENSITY_TEMPERATURE)
+        return log10(temperature_K / result->reference_temperature_K);
+    size_t i = 0, n = result->n_isotherm, stride = 2 * n;
+    while (i + 2 < n && temperature_K > input->isotherm[i + 1].temperature_K)
+        i++;
+    double low_K = input->isotherm[i].temperature_K, high_K = input->isotherm[i + 1].temperature_K;
+    double part = (temperature_K - low_K) / (high_K - low_K);
+    const double *c = result->noise_covariance + (n + i) * stride + n + i;
+    *variance = (1 - part) * (1 - part) * c[0] + 2 * part * (1 - part) * c[1] + part * part * c[stride + 1];
+    return (1 - part) * result->log10_bT[i] + part * result->log10_bT[i + 1];
+}
+
+/* Take shift and scale off all isotherms, and add their variances. */
+static void move_shifts(an_superposition *result, const double by[2], const double variance[2])
+{
+    size_t n = result->n_isotherm, stride = 2 * n;
+    for (size_t i = 0; i < n; i++) {
+        result->log10_aT[i] -= by[0];
+        result->log10_bT[i] -= by[1];
+        for (size_t j = 0; j < n; j++) {
+            result->noise_covariance[i * stride + j] += variance[0];
+            result->noise_covariance[(n + i) * stride + n + j] += variance[1];
+        }
+    }
+}
+
+static void move_spectrum(an_superposition *result, double log10_a, double log10_b)
+{
+    double a = pow(10, log10_a), b = pow(10, log10_b);
+    for (size_t i = 0; i < result->spectrum.n_mode; i++) {
+        result->spectrum.time_s[i] *= a;
+        result->spectrum.modulus_Pa[i] *= b;
+    }
+    result->spectrum.equilibrium_Pa *= b;
+    result->omega_range[0] /= a;
+    result->omega_range[1] /= a;
+}
+
+an_status an_superposition_move(const an_superpose_input *input, double temperature_K, an_superposition *result,
+                                an_law_trial *trial, size_t n_trial, an_error *err)
+{
+    const an_law_trial *chosen = chosen_of(trial, n_trial);
+    double low_K = input->isotherm[0].temperature_K, high_K = input->isotherm[input->n_isotherm - 1].temperature_K;
+    double by[2], variance[2];
+    if (temperature_K < low_K || temperature_K > high_K)
+        return an_fail(err, AN_E_SCIENCE, NULL, "reference temperature %.2f K, where %.2f to %.2f K is measured", temperature_K,
+                       low_K, high_K);
+    if (!chosen)
+        return an_fail(err, AN_E_SCIENCE, NULL, "reference temperature %.2f K is no isotherm's, and no law leads there",
+                       temperature_K);
+    AN_TRY(an_law_log10_aT(&chosen->law, temperature_K, AN_RANGE_MARK, &by[0], err));
+    double u = an_law_u_log10_aT(&chosen->law, temperature_K);
+    variance[0] = isfinite(u) ? u * u : 0;
+    by[1] = scale_at(input, result, temperature_K, &variance[1]);
+    move_shifts(result, by, variance);
+    move_spectrum(result, by[0], by[1]);
+    for (size_t i = 0; i < n_trial; i++) {
+        an_law moved;
+        if (trial[i].reason[0])
+            continue;
+        if (an_law_change_reference(&trial[i].law, temperature_K, &moved, NULL) >= 0)
+            trial[i].law = moved;
+        else
+            snprintf(trial[i].reason, sizeof trial[i].reason, "it diverges at the reference temperature");
+    }
+    result->reference_temperature_K = temperature_K;
+    return AN_OK;
+}
