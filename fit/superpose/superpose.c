@@ -101,9 +101,11 @@ static double overlap_with(const an_superpose_input *input, size_t i, size_t oth
     return width > 0 ? (fmin(own[1], its[1]) - fmax(own[0], its[0])) / width : 0;
 }
 
-/* T0: the isotherm nearest to the one asked for; else, of the middle half, the one that overlaps its neighbours most. */
+/* T0: the isotherm nearest to the one asked for; else the one nearest to the middle that overlaps both neighbours by half its
+ * own range in ln |E*|, or, where none of the middle half does, the one that overlaps them most. */
 static size_t choose_reference(const an_superpose_input *input, double wanted_K)
 {
+    static const double enough = 0.5, nearness = 1e-3; /* a step from the middle weighs less than a part in 1000 of overlap */
     size_t n = input->n_isotherm, best = n / 2;
     double best_score = -INFINITY;
     for (size_t i = 0; i < n; i++) {
@@ -112,8 +114,11 @@ static size_t choose_reference(const an_superpose_input *input, double wanted_K)
             score = -fabs(input->isotherm[i].temperature_K - wanted_K);
         else if (n > 2 && (i == 0 || i + 1 == n || 4 * i < n - 1 || 4 * i > 3 * (n - 1)))
             continue;
+        else if (n > 2)
+            score = fmin(fmin(overlap_with(input, i, i - 1), overlap_with(input, i, i + 1)), enough) -
+                    nearness * fabs((double)i - 0.5 * (double)(n - 1));
         else
-            score = n > 2 ? fmin(overlap_with(input, i, i - 1), overlap_with(input, i, i + 1)) : 0;
+            score = -(double)i;
         if (score > best_score) {
             best_score = score;
             best = i;
