@@ -107,9 +107,9 @@ def wlf(master_path, truth_path):
     matrix = np.column_stack([-difference, -shift])
     c1_true, c2_true = np.linalg.lstsq(matrix, shift * difference, rcond=None)[0]
     master = ElementTree.parse(master_path).getroot()
-    chosen = [law for law in master.iter(NAMESPACE + "law") if law.get("chosen") in ("1", "true")]
+    chosen = [trial for trial in master.iter(NAMESPACE + "trial") if trial.get("chosen") in ("1", "true")]
     check("laws chosen", len(chosen), 1, 1)
-    law = chosen[0]
+    law = chosen[0].find(NAMESPACE + "law")
     print("    law chosen:", law.get("kind"))
     if law.get("kind") != "wlf":
         failures.append("law chosen is not wlf")
@@ -136,8 +136,7 @@ def modulus_of_time(material_path, truth_path):
     scale = t0 / 343.15 if truth["meta"]["specimen"].startswith("HL") else 1.0  # hull laminate: b_T = T / 343.15 K
     times = np.array([float(mode.find(NAMESPACE + "relaxation_time").get("value")) for mode in material.iter(NAMESPACE + "mode")])
     moduli_ = np.array([float(mode.find(NAMESPACE + "modulus").get("value")) for mode in material.iter(NAMESPACE + "mode")])
-    window = material.find(".//" + NAMESPACE + "window_time")
-    lowest, highest = float(window.get("from")), float(window.get("to"))
+    lowest, highest = value("time_from"), value("time_to")
     t = np.logspace(np.log10(lowest), np.log10(highest), 200)
     found = value("long_term_modulus") + np.exp(-t[:, None] / times) @ moduli_
     true_times = np.array(truth["mode_time_s"]) * 10 ** log_a(t0)
