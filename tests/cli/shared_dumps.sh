@@ -41,7 +41,7 @@ XML
 done
 
 # two phases: superposition does not apply, and no spectrum is handed over without the override
-run grep -q '<simplicity[^>]*verdict="complex"' out/two_phase/master.xml
+run grep -q '<superposition[^>]*verdict="complex"' out/two_phase/master.xml
 run test ! -e out/two_phase/material.xml
 "$ANELAST_BIN/anelast-prony" out/two_phase/master.xml --output two_phase.material.xml 2>two_phase.err
 run test $? -eq 1
