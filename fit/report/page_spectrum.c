@@ -9,7 +9,7 @@
 
 #define COVERAGE 2.0 /* [1] coverage factor of the band */
 
-enum { CURVE = 240 }; /* points of a drawn curve */
+enum { CURVE = 240, STEMS = 30 }; /* points of a drawn curve; most modes drawn with stems */
 
 static void add_window(an_figure *figure, const double window[2])
 {
@@ -30,7 +30,7 @@ static void add_modes(an_figure *figure, const an_maxwell *modes, const int *tru
             continue;
         an_figure_style style = {.color = wanted ? AN_COLOR_FIRST : AN_COLOR_MUTED,
                                  .radius = 3.6,
-                                 .stems = wanted,
+                                 .stems = wanted && modes->n_mode <= STEMS,
                                  .marker = wanted ? AN_MARKER_DISC : AN_MARKER_CROSS};
         an_figure_add_series(figure,
                              &(an_figure_series){.x = &tau,
@@ -149,7 +149,9 @@ static void write_summary(page *p, const an_material *m)
     number_term(p->out, "Instantaneous, inside the window", m->instantaneous_Pa / 1e6, "MPa");
     number_term(p->out, "Long-term", m->long_term_Pa / 1e6, "MPa");
     text_term(p->out, "End state", m->end_state);
-    number_term(p->out, "Reference temperature", m->reference_temperature_K - ZERO_CELSIUS_K, "°C");
+    fputs("<dt>Reference temperature</dt><dd>", p->out);
+    markup_fixed(p->out, m->reference_temperature_K - ZERO_CELSIUS_K, 2);
+    fputs(" °C</dd>\n", p->out);
     number_term(p->out, "Off the data, rms", 100 * m->fit_error, "%");
     number_term(p->out, "Off the data, worst", 100 * m->fit_error_worst, "%");
     number_term(p->out, "Common uncertainty of all moduli", 100 * m->u_common_relative, "%");

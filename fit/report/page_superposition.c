@@ -22,21 +22,21 @@ static const an_law *chosen_law(const an_master *master)
 
 /* Shifts as arrays for one figure; [n_shift] each, in one allocation. */
 typedef struct shift_arrays {
-    double *values;                                   /* owned */
-    double *T, *log_a, *bar_a, *log_b, *bar_b, *miss; /* [degC], [1] */
+    double *values;                                             /* owned */
+    double *T, *log_a, *bar_a, *noise_a, *log_b, *bar_b, *miss; /* [degC], [1] */
 } shift_arrays;
 
 static bool shift_arrays_new(page *p, shift_arrays *s)
 {
     const an_master *master = &p->report->master;
     size_t n = (size_t)master->n_shift;
-    s->values = calloc(6 * n + 1, sizeof *s->values);
+    s->values = calloc(7 * n + 1, sizeof *s->values);
     if (!s->values) {
         p->status = an_fail_memory(p->err, "the shifts of a figure");
         return false;
     }
-    double **arrays[] = {&s->T, &s->log_a, &s->bar_a, &s->log_b, &s->bar_b, &s->miss};
-    for (size_t k = 0; k < 6; k++)
+    double **arrays[] = {&s->T, &s->log_a, &s->bar_a, &s->noise_a, &s->log_b, &s->bar_b, &s->miss};
+    for (size_t k = 0; k < 7; k++)
         *arrays[k] = s->values + k * n;
     const an_law *law = chosen_law(master);
     for (size_t i = 0; i < n; i++) {
@@ -44,6 +44,7 @@ static bool shift_arrays_new(page *p, shift_arrays *s)
         s->T[i] = shift->temperature_K - ZERO_CELSIUS_K;
         s->log_a[i] = shift->log10_aT;
         s->bar_a[i] = COVERAGE * shift->u_log10_aT;
+        s->noise_a[i] = COVERAGE * shift->u_noise_log10_aT;
         s->log_b[i] = shift->log10_bT;
         s->bar_b[i] = COVERAGE * shift->u_log10_bT;
         double by_law;
@@ -133,14 +134,19 @@ static void figure_shifts(page *p)
         an_figure_add_rule(figure, master->reference_temperature_K - ZERO_CELSIUS_K, "reference");
         an_figure_add_panel(figure, &(an_figure_axis){.label = "off law", .symbol = "log a − law"}, 80);
         an_figure_add_level(figure, 0);
-        add_shifts(p, figure, s.T, s.miss, s.bar_a, "log a");
-        an_figure_add_panel(figure, &(an_figure_axis){.label = "log_{10} b_{T}", .symbol = "log b"}, 80);
-        an_figure_add_level(figure, 0);
-        add_shifts(p, figure, s.T, s.log_b, s.bar_b, "log b");
+        add_shifts(p, figure, s.T, s.miss, s.noise_a, "log a");
+        if (master->vertical != AN_VERTICAL_NONE) {
+            an_figure_add_panel(figure, &(an_figure_axis){.label = "log_{10} b_{T}", .symbol = "log b"}, 80);
+            an_figure_add_level(figure, 0);
+            add_shifts(p, figure, s.T, s.log_b, s.bar_b, "log b");
+        }
         page_figure_end(p, &figure,
                         "Horizontal shift factors with the law that was chosen, their distance from it in "
-                        "decades, and the "
-                        "vertical shift factors. Bars are twice the standard uncertainty.");
+                        "decades, and, where "
+                        "there are any, vertical shift factors. Bars are twice the standard uncertainty: "
+                        "both parts, but the "
+                        "noise part alone at the distance from the law, since what all isotherms share moves "
+                        "the law with them.");
     }
     free(s.values);
 }

@@ -66,8 +66,9 @@ static void cell_constants(FILE *out, const an_law *law)
 static void cell_range(FILE *out, const an_law *law)
 {
     fputs("<td class=\"n\">", out);
-    if (!(law->valid_from_K > 0) && !isfinite(law->valid_to_K)) {
-        fputs("open</td>", out);
+    bool is_open = !(law->valid_from_K > 0) && !isfinite(law->valid_to_K);
+    if (is_open || !(law->valid_to_K > law->valid_from_K)) {
+        fputs(is_open ? "open</td>" : "–</td>", out);
         return;
     }
     if (law->valid_from_K > 0)
@@ -90,7 +91,9 @@ static void table_laws(page *p)
         page_absent(p, "No shift law.", "No law was tried on these shift factors.");
         return;
     }
-    table_begin(p->out, "Shift laws tried; the smallest criterion is chosen", heads);
+    table_begin(p->out,
+                "Shift laws tried, constants with the noise part of u; the smallest criterion is chosen",
+                heads);
     for (int i = 0; i < master->n_trial; i++) {
         const an_law_trial *trial = &master->trial[i];
         fprintf(p->out, "<tr%s>", trial->chosen ? "" : " class=\"muted\"");
