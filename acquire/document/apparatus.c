@@ -1,6 +1,7 @@
-/* The apparatus document: what stands between the specimen and the numbers of the dump. Read from what people write,
- * carried in runs, asked for its compliance at a frequency and temperature. A calibrated table is linear in temperature
- * and in the logarithm of frequency between its rows, and constant outside (common practice: a frame softens slowly).
+/* The apparatus document: what stands between the specimen and the numbers of the dump. Read from what people
+ * write, carried in runs, asked for its compliance at a frequency and temperature. A calibrated table is
+ * linear in temperature and in the logarithm of frequency between its rows, and constant outside (common
+ * practice: a frame softens slowly).
  */
 #include "anelast/apparatus.h"
 
@@ -30,8 +31,8 @@ static an_status read_text(const an_xml_node *node, const char *name, char *text
 }
 
 /* A constant where it is given, `fallback` where it is not; an uncertainty that is not given counts as 0. */
-static an_status read_constant(const an_xml_node *node, const char *name, const char *unit, an_measure fallback,
-                               an_measure *measure, an_error *err)
+static an_status read_constant(const an_xml_node *node, const char *name, const char *unit,
+                               an_measure fallback, an_measure *measure, an_error *err)
 {
     AN_TRY(an_xml_measure_optional(node, name, unit, measure, err));
     if (isnan(measure->value))
@@ -87,7 +88,8 @@ static an_status read_compliance(const an_xml_node *node, an_compliance_row *row
 
 static an_status read_compliances(const an_xml_node *node, an_apparatus *apparatus, an_error *err)
 {
-    for (const an_xml_node *child = an_xml_child(node, "compliance"); child; child = an_xml_next(child, "compliance")) {
+    for (const an_xml_node *child = an_xml_child(node, "compliance"); child;
+         child = an_xml_next(child, "compliance")) {
         if (apparatus->n_compliance == AN_COMPLIANCE_ROWS)
             return an_xml_fail(child, err, AN_E_LIMIT, "more than %d rows", AN_COMPLIANCE_ROWS);
         AN_TRY(read_compliance(child, &apparatus->compliance[apparatus->n_compliance], err));
@@ -107,7 +109,8 @@ static an_status read_chain(const an_xml_node *node, an_apparatus *apparatus, an
     AN_TRY(read_constant(node, "moving_mass", "kg", ideal, &apparatus->moving_mass, err));
     AN_TRY(read_constant(node, "shaft_stiffness", "N/m", ideal, &apparatus->shaft_stiffness, err));
     AN_TRY(read_constant(node, "shaft_damping", "N.s/m", ideal, &apparatus->shaft_damping, err));
-    AN_TRY(read_constant(node, "transducer_stiffness", "N/m", AN_MEASURE_NONE, &apparatus->transducer_stiffness, err));
+    AN_TRY(read_constant(node, "transducer_stiffness", "N/m", AN_MEASURE_NONE,
+                         &apparatus->transducer_stiffness, err));
     return read_constant(node, "fixture_mass", "kg", ideal, &apparatus->fixture_mass, err);
 }
 
@@ -117,7 +120,8 @@ static an_status read_bias(const an_xml_node *node, an_measure *bias, an_error *
     const an_xml_node *child = an_xml_child(node, "temperature_bias");
     const char *unit = child ? an_xml_attribute_of(child, "unit") : NULL;
     if (unit && strcmp(unit, "K") != 0)
-        return an_xml_fail(child, err, AN_E_UNIT, "unit '%s': a difference of temperatures is stated in K", unit);
+        return an_xml_fail(child, err, AN_E_UNIT, "unit '%s': a difference of temperatures is stated in K",
+                           unit);
     return read_constant(node, "temperature_bias", "K", ideal, bias, err);
 }
 
@@ -217,7 +221,8 @@ static complex_compliance row_value(const an_compliance_row *row)
 static complex_compliance mix(complex_compliance one, complex_compliance other, double share)
 {
     return (complex_compliance){one.storage + share * (other.storage - one.storage),
-                                one.loss + share * (other.loss - one.loss), one.u + share * (other.u - one.u)};
+                                one.loss + share * (other.loss - one.loss),
+                                one.u + share * (other.u - one.u)};
 }
 
 /* Where x stands between one and other, held in 0..1; 0 where either is "all". */
@@ -229,7 +234,8 @@ static double share_of(double x, double one, double other)
 }
 
 /* Along frequency at one temperature of the table (NAN: the rows that hold at all temperatures). */
-static complex_compliance along_frequency(const an_apparatus *apparatus, double temperature_K, double frequency_Hz)
+static complex_compliance along_frequency(const an_apparatus *apparatus, double temperature_K,
+                                          double frequency_Hz)
 {
     const an_compliance_row *below = NULL, *above = NULL;
     for (int i = 0; i < apparatus->n_compliance; i++) {
@@ -248,8 +254,8 @@ static complex_compliance along_frequency(const an_apparatus *apparatus, double 
     return mix(row_value(below), row_value(above), share);
 }
 
-void an_apparatus_compliance(const an_apparatus *apparatus, double frequency_Hz, double temperature_K, double *storage,
-                             double *loss, double *u)
+void an_apparatus_compliance(const an_apparatus *apparatus, double frequency_Hz, double temperature_K,
+                             double *storage, double *loss, double *u)
 {
     double below = NAN, above = NAN;
     *storage = *loss = *u = 0;
@@ -265,7 +271,8 @@ void an_apparatus_compliance(const an_apparatus *apparatus, double frequency_Hz,
     double nearest = isnan(below) ? above : below;
     complex_compliance result = along_frequency(apparatus, nearest, frequency_Hz);
     if (!isnan(below) && !isnan(above))
-        result = mix(result, along_frequency(apparatus, above, frequency_Hz), share_of(temperature_K, below, above));
+        result = mix(result, along_frequency(apparatus, above, frequency_Hz),
+                     share_of(temperature_K, below, above));
     *storage = result.storage;
     *loss = result.loss;
     *u = result.u;

@@ -1,6 +1,6 @@
-/* The run document, written piece by piece and read burst by burst: one dump with its units known, its bursts apart and
- * nothing lost. Memory is bounded by the largest burst on both sides. A document without its <end> is truncated and
- * refused, and so is one whose <end> counts other bursts than came before it.
+/* The run document, written piece by piece and read burst by burst: one dump with its units known, its bursts
+ * apart and nothing lost. Memory is bounded by the largest burst on both sides. A document without its <end>
+ * is truncated and refused, and so is one whose <end> counts other bursts than came before it.
  */
 #include "anelast/run.h"
 
@@ -135,7 +135,8 @@ static an_status read_head(reading_state *state, const an_xml_node *root, an_err
     return state->visitor->head(run, state->visitor->user, err);
 }
 
-/* Put a signal in its place in the burst. Quantities of torsion take the places of their linear counterparts. */
+/* Put a signal in its place in the burst. Quantities of torsion take the places of their linear counterparts.
+ */
 static an_signal *place_of(an_burst *burst, an_signal_quantity quantity)
 {
     switch (quantity) {
@@ -156,15 +157,16 @@ static an_signal *place_of(an_burst *burst, an_signal_quantity quantity)
 
 static an_status read_signals(const an_xml_node *node, an_burst *burst, an_error *err)
 {
-    for (const an_xml_node *child = an_xml_child(node, "signal"); child; child = an_xml_next(child, "signal")) {
+    for (const an_xml_node *child = an_xml_child(node, "signal"); child;
+         child = an_xml_next(child, "signal")) {
         an_signal signal = AN_SIGNAL_NONE;
         AN_TRY(an_signal_read(child, &signal, err));
         an_signal *place = place_of(burst, signal.quantity);
         if (!place || place->data) {
             const char *name = an_signal_quantity_name(signal.quantity);
             an_signal_clear(&signal);
-            return an_xml_fail(child, err, AN_E_DOCUMENT, "a second signal of %s, or one that a burst cannot hold",
-                               name);
+            return an_xml_fail(child, err, AN_E_DOCUMENT,
+                               "a second signal of %s, or one that a burst cannot hold", name);
         }
         *place = signal;
     }
@@ -178,8 +180,9 @@ static an_status read_clock(const an_xml_node *node, an_burst *burst, an_error *
     burst->has_time = clock == NULL;
     if (!clock) {
         burst->clock.count = (long)burst->time.count;
-        return burst->time.count ? AN_OK
-                                 : an_xml_fail(node, err, AN_E_DOCUMENT, "neither a clock nor a signal of time");
+        return burst->time.count
+                   ? AN_OK
+                   : an_xml_fail(node, err, AN_E_DOCUMENT, "neither a clock nor a signal of time");
     }
     AN_TRY(an_xml_double(clock, "start", &burst->clock.start, err));
     AN_TRY(an_xml_double(clock, "interval", &burst->clock.interval, err));
@@ -195,9 +198,10 @@ static an_status check_counts(const an_xml_node *node, const an_burst *burst, an
     size_t count = (size_t)burst->clock.count;
     if (burst->displacement.count != count || burst->force.count != count ||
         (burst->temperature.count && burst->temperature.count != count))
-        return an_xml_fail(node, err, AN_E_DOCUMENT,
-                           "%zu times, %zu samples of displacement, %zu of force, %zu of temperature: all must be alike",
-                           count, burst->displacement.count, burst->force.count, burst->temperature.count);
+        return an_xml_fail(
+            node, err, AN_E_DOCUMENT,
+            "%zu times, %zu samples of displacement, %zu of force, %zu of temperature: all must be alike",
+            count, burst->displacement.count, burst->force.count, burst->temperature.count);
     return AN_OK;
 }
 
@@ -224,7 +228,8 @@ static an_status read_burst(const an_xml_node *node, an_burst *burst, an_error *
     return an_remark_list_read(node, &burst->remarks, err);
 }
 
-static an_status visit_burst(void *context, const an_xml_document *document, const an_xml_node *node, an_error *err)
+static an_status visit_burst(void *context, const an_xml_document *document, const an_xml_node *node,
+                             an_error *err)
 {
     reading_state *state = context;
     an_burst burst;
@@ -257,7 +262,8 @@ static an_status read_end(reading_state *state, const an_xml_node *root, an_erro
     return an_remark_list_read(end, &state->run->remarks, err);
 }
 
-an_status an_run_read(const char *path, an_run *run, const an_run_visitor *visitor, char sha256[65], an_error *err)
+an_status an_run_read(const char *path, an_run *run, const an_run_visitor *visitor, char sha256[65],
+                      an_error *err)
 {
     static const char *const streamed[] = {"burst", NULL};
     reading_state state = {.run = run, .visitor = visitor};

@@ -1,7 +1,6 @@
-/* The specimen document: who and what was tested, and its geometry, read from what people write, merged with what the
- * dump says, written into runs. One table says which dimension each element holds and in which unit; another says which
- * dimensions a kind of geometry cannot do without. Range: dimensions
- * from 1 um to 2 m.
+/* The specimen document: who and what was tested, and its geometry, read from what people write, merged with
+ * what the dump says, written into runs. One table says which dimension each element holds and in which unit;
+ * another says which dimensions a kind of geometry cannot do without. Range: dimensions from 1 um to 2 m.
  */
 #include "anelast/specimen.h"
 
@@ -27,10 +26,10 @@ static const char *const geometry_words[AN_GEOMETRY_COUNT] = {
 
 /* One dimension of a geometry. */
 typedef struct dimension {
-    const char *name;    /* of the element */
-    const char *unit;    /* SI, UCUM */
-    size_t offset;       /* of the measure in an_geometry */
-    double least, most;  /* [unit] plausible range; the checks name it */
+    const char *name;   /* of the element */
+    const char *unit;   /* SI, UCUM */
+    size_t offset;      /* of the measure in an_geometry */
+    double least, most; /* [unit] plausible range; the checks name it */
 } dimension;
 
 #define PLACE(member) offsetof(an_geometry, member)
@@ -76,10 +75,14 @@ typedef struct label {
     size_t size;      /* bytes */
 } label;
 
-#define LABEL(attribute, member) {attribute, offsetof(an_specimen, member), sizeof((an_specimen *)0)->member}
+#define LABEL(attribute, member)                                                                             \
+    {                                                                                                        \
+        attribute, offsetof(an_specimen, member), sizeof((an_specimen *)0)->member                           \
+    }
 
 static const label labels[] = {
-    LABEL("id", id),           LABEL("material", material), LABEL("lot", lot), LABEL("operator", operator_name),
+    LABEL("id", id),           LABEL("material", material),
+    LABEL("lot", lot),         LABEL("operator", operator_name),
     LABEL("started", started), LABEL("rig", rig),
 };
 
@@ -145,19 +148,22 @@ char *an_specimen_label(an_specimen *specimen, const char *name, size_t *size)
 }
 
 /* A dimension with an uncertainty alone: the value stands in the dump, the caliper's uncertainty does not. */
-static an_status read_uncertainty(const an_xml_node *node, const dimension *row, an_measure *measure, an_error *err)
+static an_status read_uncertainty(const an_xml_node *node, const dimension *row, an_measure *measure,
+                                  an_error *err)
 {
     const char *unit = an_xml_attribute_of(node, "unit");
     an_conversion conversion;
     double u;
     AN_TRY(an_xml_double(node, "u", &u, err));
     if (an_unit_convert(unit ? unit : "1", row->unit, &conversion, err) < 0)
-        return an_xml_fail(node, err, AN_E_UNIT, "unit '%s' where [%s] is wanted", unit ? unit : "", row->unit);
+        return an_xml_fail(node, err, AN_E_UNIT, "unit '%s' where [%s] is wanted", unit ? unit : "",
+                           row->unit);
     measure->u = an_unit_si_difference(&conversion, u);
     return AN_OK;
 }
 
-static an_status read_dimension(const an_xml_node *geometry, const dimension *row, an_measure *measure, an_error *err)
+static an_status read_dimension(const an_xml_node *geometry, const dimension *row, an_measure *measure,
+                                an_error *err)
 {
     const an_xml_node *node = an_xml_child(geometry, row->name);
     if (!node)
@@ -166,8 +172,8 @@ static an_status read_dimension(const an_xml_node *geometry, const dimension *ro
         return read_uncertainty(node, row, measure, err);
     AN_TRY(an_xml_measure_here(node, row->unit, measure, err));
     if (!(measure->value >= row->least && measure->value <= row->most))
-        return an_xml_fail(node, err, AN_E_VALUE, "%g %s is outside %g .. %g %s; check the unit", measure->value,
-                           row->unit, row->least, row->most, row->unit);
+        return an_xml_fail(node, err, AN_E_VALUE, "%g %s is outside %g .. %g %s; check the unit",
+                           measure->value, row->unit, row->least, row->most, row->unit);
     return AN_OK;
 }
 
@@ -244,8 +250,8 @@ void an_specimen_write(an_xml_writer *writer, const an_specimen *specimen)
     an_xml_end(writer);
 }
 
-/* Two statements of one dimension disagree beyond 3 combined standard uncertainties, and beyond 0.1 %, which covers
- * a value written with fewer digits (common practice). */
+/* Two statements of one dimension disagree beyond 3 combined standard uncertainties, and beyond 0.1 %, which
+ * covers a value written with fewer digits (common practice). */
 static int disagree(const an_measure *one, const an_measure *other)
 {
     if (isnan(one->value) || isnan(other->value))
@@ -255,12 +261,13 @@ static int disagree(const an_measure *one, const an_measure *other)
     return difference > 3 * hypot(u_one, u_other) && difference > 1e-3 * fabs(other->value);
 }
 
-static void merge_dimension(const dimension *row, an_measure *base, const an_measure *over, an_remark_list *remarks)
+static void merge_dimension(const dimension *row, an_measure *base, const an_measure *over,
+                            an_remark_list *remarks)
 {
     if (disagree(base, over))
         an_remark_list_add(remarks, "geometry-disagrees", 0, NULL,
-                           "%s: the dump says %.6g %s, the specimen document %.6g %s; the document is used", row->name,
-                           base->value, row->unit, over->value, row->unit);
+                           "%s: the dump says %.6g %s, the specimen document %.6g %s; the document is used",
+                           row->name, base->value, row->unit, over->value, row->unit);
     if (!isnan(over->value))
         *base = *over;
     else if (!isnan(over->u))
@@ -281,7 +288,8 @@ void an_specimen_merge(an_specimen *base, const an_specimen *over, an_remark_lis
                         measure_of(&over->geometry, &dimensions[i]), remarks);
 }
 
-static const an_measure *dimension_named(const an_geometry *geometry, const char *name, size_t n, const dimension **row)
+static const an_measure *dimension_named(const an_geometry *geometry, const char *name, size_t n,
+                                         const dimension **row)
 {
     for (int i = 0; i < N_DIMENSIONS; i++) {
         if (strlen(dimensions[i].name) != n || strncmp(name, dimensions[i].name, n) != 0)
@@ -292,8 +300,10 @@ static const an_measure *dimension_named(const an_geometry *geometry, const char
     return NULL;
 }
 
-/* How many dimensions of one alternative are not there; the first of them in missing; those that are there in given. */
-static int count_missing(const an_geometry *geometry, const char *names, size_t n, const dimension **missing, int *given)
+/* How many dimensions of one alternative are not there; the first of them in missing; those that are there in
+ * given. */
+static int count_missing(const an_geometry *geometry, const char *names, size_t n, const dimension **missing,
+                         int *given)
 {
     int n_missing = 0;
     *given = 0;
@@ -332,8 +342,9 @@ static an_status check_needed(const an_specimen *specimen, an_error *err)
 an_status an_specimen_check(const an_specimen *specimen, an_error *err)
 {
     if (specimen->geometry.kind == AN_GEOMETRY_NONE)
-        return an_fail(err, AN_E_VALUE, NULL,
-                       "specimen: the kind of geometry is not given, neither by the dump nor by a specimen document");
+        return an_fail(
+            err, AN_E_VALUE, NULL,
+            "specimen: the kind of geometry is not given, neither by the dump nor by a specimen document");
     for (int i = 0; i < N_DIMENSIONS; i++) {
         const dimension *row = &dimensions[i];
         double value = measure_of(&specimen->geometry, row)->value;

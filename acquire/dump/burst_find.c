@@ -1,23 +1,25 @@
-/* Finding bursts in a continuous record. Benches pause between bursts, or sample each frequency at its own rate: gaps and
- * changes of the interval tell most of them. Where a bench samples on at one rate, the swings of the displacement tell: two in
- * a row that last, or reach, otherwise than two before. Range: at least 8 samples a cycle and three cycles a burst for the
- * latter; drifts and start-up transients of an ordinary test stay within the limits below (common practice).
+/* Finding bursts in a continuous record. Benches pause between bursts, or sample each frequency at its own
+ * rate: gaps and changes of the interval tell most of them. Where a bench samples on at one rate, the swings
+ * of the displacement tell: two in a row that last, or reach, otherwise than two before. Range: at least 8
+ * samples a cycle and three cycles a burst for the latter; drifts and start-up transients of an ordinary test
+ * stay within the limits below (common practice).
  */
 #include "anelast/burst_find.h"
 
 #include <math.h>
 #include <string.h>
 
-static const double gap_least = 5;           /* [intervals] a pause; fewer may be lost samples */
+static const double gap_least = 5;             /* [intervals] a pause; fewer may be lost samples */
 static const double interval_tolerance = 0.05; /* [1] jitter of a clock */
-static const double duration_change = 1.25;  /* [1] frequencies of a sweep lie further apart */
-static const double height_change = 4;       /* [1] more than a start-up transient or a creeping specimen does */
-static const double turn_least = 0.3;        /* [1] part of a swing that must be taken back to make a turn */
-static const double samples_a_swing = 4;     /* shorter ones are noise */
-/* A turn must also exceed 8 standard deviations of the noise. White noise of deviation s has second differences of mean
- * magnitude sqrt(6) sqrt(2 / pi) s = 1.954 s; a sine of 8 samples a cycle raises that estimate, and still passes. */
+static const double duration_change = 1.25;    /* [1] frequencies of a sweep lie further apart */
+static const double height_change = 4;   /* [1] more than a start-up transient or a creeping specimen does */
+static const double turn_least = 0.3;    /* [1] part of a swing that must be taken back to make a turn */
+static const double samples_a_swing = 4; /* shorter ones are noise */
+/* A turn must also exceed 8 standard deviations of the noise. White noise of deviation s has second
+ * differences of mean magnitude sqrt(6) sqrt(2 / pi) s = 1.954 s; a sine of 8 samples a cycle raises that
+ * estimate, and still passes. */
 static const double turn_in_roughness = 8 / 1.954;
-static const size_t roughness_least = 8;     /* [samples] before the estimate is of use */
+static const size_t roughness_least = 8; /* [samples] before the estimate is of use */
 
 void an_burst_finder_reset(an_burst_finder *finder)
 {
@@ -69,8 +71,8 @@ static bool same_height(const an_swing *one, const an_swing *other, double ratio
     return !changed(one->height, other->height, ratio);
 }
 
-/* A swing has ended: are the newest two alike, and other than an earlier two that are alike? The swing between may have been cut
- * by the change. Returns the sample where the new burst began, or 0. */
+/* A swing has ended: are the newest two alike, and other than an earlier two that are alike? The swing
+ * between may have been cut by the change. Returns the sample where the new burst began, or 0. */
 static size_t judge_swings(const an_burst_finder *finder)
 {
     const an_swing *swing = finder->swings;
@@ -84,7 +86,8 @@ static size_t judge_swings(const an_burst_finder *finder)
                   !same_height(&swing[1], &swing[3], height_change);
     if (!longer && !higher)
         return 0;
-    bool third_is_old = longer ? same_duration(&swing[1], &swing[2]) : same_height(&swing[1], &swing[2], twice);
+    bool third_is_old =
+        longer ? same_duration(&swing[1], &swing[2]) : same_height(&swing[1], &swing[2], twice);
     return swing[third_is_old ? 3 : 2].begin;
 }
 

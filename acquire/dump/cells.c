@@ -1,5 +1,5 @@
-/* Cutting lines into fields: the inner loop of reading text, so it copies nothing. A quote character doubled within a quoted
- * field stays doubled: such fields are names, never numbers.
+/* Cutting lines into fields: the inner loop of reading text, so it copies nothing. A quote character doubled
+ * within a quoted field stays doubled: such fields are names, never numbers.
  */
 #include "acquire/dump/cells.h"
 

@@ -1,8 +1,9 @@
-/* Printed times to a clock. A dump prints t0 + i dt rounded to its last digit, so every time allows a band for the line, and
- * a clock exists where one line passes through all bands. For a slope b the intercepts allowed are
- * [max (t_i - tol_i - b i), min (t_i + tol_i - b i)]; the width of that interval is concave in b, so its greatest is found
- * by halving a bracket by the sign of its slope. The clock is the line in the middle of what is allowed there, whose error
- * falls as 1/n. Where times are printed as exact halves of the last digit, that line is the only one.
+/* Printed times to a clock. A dump prints t0 + i dt rounded to its last digit, so every time allows a band
+ * for the line, and a clock exists where one line passes through all bands. For a slope b the intercepts
+ * allowed are [max (t_i - tol_i - b i), min (t_i + tol_i - b i)]; the width of that interval is concave in b,
+ * so its greatest is found by halving a bracket by the sign of its slope. The clock is the line in the middle
+ * of what is allowed there, whose error falls as 1/n. Where times are printed as exact halves of the last
+ * digit, that line is the only one.
  */
 #include "acquire/dump/clock.h"
 

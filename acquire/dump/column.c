@@ -1,6 +1,6 @@
-/* Columns: decimals become integers with a scale, which is lossless, half the size and quicker to read than doubles. The
- * integers stay below 2^53, so that the double a text means is its integer divided once by a power of ten: the correctly
- * rounded value as long as there are at most 22 decimals [CLINGER90, section 3].
+/* Columns: decimals become integers with a scale, which is lossless, half the size and quicker to read than
+ * doubles. The integers stay below 2^53, so that the double a text means is its integer divided once by a
+ * power of ten: the correctly rounded value as long as there are at most 22 decimals [CLINGER90, section 3].
  */
 #include "acquire/dump/column.h"
 
@@ -12,8 +12,9 @@
 
 enum { DECIMALS_MOST = 15, POWERS = 23 };
 
-static const double power_of_ten[POWERS] = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,  1e6,  1e7,  1e8,  1e9,  1e10, 1e11,
-                                            1e12, 1e13, 1e14, 1e15, 1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22};
+static const double power_of_ten[POWERS] = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,  1e6,  1e7,
+                                            1e8,  1e9,  1e10, 1e11, 1e12, 1e13, 1e14, 1e15,
+                                            1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22};
 
 static const int64_t exact_most = INT64_C(1) << 53;
 
@@ -237,8 +238,8 @@ static void fill_data(const an_column *column, an_signal *signal)
     }
 }
 
-an_status an_column_signal(const an_column *column, an_signal_quantity quantity, const an_conversion *conversion,
-                           double gain, an_signal *signal, an_error *err)
+an_status an_column_signal(const an_column *column, an_signal_quantity quantity,
+                           const an_conversion *conversion, double gain, an_signal *signal, an_error *err)
 {
     an_signal_coding coding = AN_CODING_FLOAT64;
     bool integers = !column->real && integer_coding(column, &coding);

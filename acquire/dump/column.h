@@ -1,5 +1,5 @@
-/* column.h: the samples of one channel of one burst while it is read, as the dump holds them: fixed decimals as integers
- * with a number of decimals, so long as they fit, else the doubles that the texts mean.
+/* column.h: the samples of one channel of one burst while it is read, as the dump holds them: fixed decimals
+ * as integers with a number of decimals, so long as they fit, else the doubles that the texts mean.
  */
 #ifndef ANELAST_DUMP_COLUMN_H
 #define ANELAST_DUMP_COLUMN_H
@@ -19,9 +19,9 @@ typedef union an_sample {
 } an_sample;
 
 typedef struct an_column {
-    bool real;           /* samples are doubles */
-    int decimals;        /* of the integers */
-    bool keeps_places;   /* the place of each text's last digit is kept (time) */
+    bool real;         /* samples are doubles */
+    int decimals;      /* of the integers */
+    bool keeps_places; /* the place of each text's last digit is kept (time) */
     size_t n, room;
     an_sample *samples;  /* [n] */
     signed char *places; /* [n] power of ten of the last digit; NULL unless kept */
@@ -37,7 +37,8 @@ void an_column_release(an_column *column);
 an_status an_column_add_text(an_column *column, const char *text, size_t n, char decimal_mark, double *value,
                              an_error *err);
 
-/* an_column_add_real, an_column_add_integer: add a value that did not come from a text. Return AN_OK or AN_E_MEMORY. */
+/* an_column_add_real, an_column_add_integer: add a value that did not come from a text. Return AN_OK or
+ * AN_E_MEMORY. */
 an_status an_column_add_real(an_column *column, double value, an_error *err);
 an_status an_column_add_integer(an_column *column, int64_t value, an_error *err);
 
@@ -48,8 +49,8 @@ double an_column_value(const an_column *column, size_t i);
  *   rows [in] [n_rows] their indices, rising */
 void an_column_drop(an_column *column, const size_t *rows, size_t n_rows);
 
-/* an_column_move_tail: the samples from `first` on become the beginning of another, empty column; this one ends there.
- * Returns AN_OK or AN_E_MEMORY. */
+/* an_column_move_tail: the samples from `first` on become the beginning of another, empty column; this one
+ * ends there. Returns AN_OK or AN_E_MEMORY. */
 an_status an_column_move_tail(an_column *column, size_t first, an_column *other, an_error *err);
 
 /* an_column_clear: no samples, the room stays. */
@@ -59,7 +60,7 @@ void an_column_clear(an_column *column);
  *   conversion [in] the dump's unit to SI; gain [in, 1] true / dump
  *   signal     [out] clear with an_signal_clear
  * Returns AN_OK or AN_E_MEMORY. */
-an_status an_column_signal(const an_column *column, an_signal_quantity quantity, const an_conversion *conversion,
-                           double gain, an_signal *signal, an_error *err);
+an_status an_column_signal(const an_column *column, an_signal_quantity quantity,
+                           const an_conversion *conversion, double gain, an_signal *signal, an_error *err);
 
 #endif

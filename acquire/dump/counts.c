@@ -1,6 +1,6 @@
-/* Binary dumps: counts of one type, interleaved or one channel after the other, with a text beside them that names channels,
- * sizes of counts and bursts. Read a few thousand frames at a time; counts stay counts. A dump that is shorter than its
- * burst table says gives the bursts that are complete, and is held.
+/* Binary dumps: counts of one type, interleaved or one channel after the other, with a text beside them that
+ * names channels, sizes of counts and bursts. Read a few thousand frames at a time; counts stay counts. A
+ * dump that is shorter than its burst table says gives the bursts that are complete, and is held.
  */
 #include "acquire/dump/counts.h"
 
@@ -24,11 +24,11 @@ typedef struct counts_reader {
     an_sidecar sidecar;
     an_rows rows;
     FILE *stream;
-    int n_channel;              /* of the dump */
+    int n_channel;                       /* of the dump */
     an_channel_in *in[AN_CHANNELS_MOST]; /* [n_channel] NULL: ignored */
-    size_t n_frame;             /* whole frames of the dump */
-    size_t n_rest;              /* [bytes] behind them */
-    unsigned char *raw;         /* [n_channel * FRAMES_AT_ONCE * bytes of a count] */
+    size_t n_frame;                      /* whole frames of the dump */
+    size_t n_rest;                       /* [bytes] behind them */
+    unsigned char *raw;                  /* [n_channel * FRAMES_AT_ONCE * bytes of a count] */
 } counts_reader;
 
 static size_t size_of(an_count_type type)
@@ -67,7 +67,8 @@ static int64_t integer_count(const unsigned char *bytes, const an_counts_form *f
     return (int64_t)(bits ^ sign) - (int64_t)sign;
 }
 
-static an_status add_count(counts_reader *reader, an_channel_in *in, const unsigned char *bytes, an_error *err)
+static an_status add_count(counts_reader *reader, an_channel_in *in, const unsigned char *bytes,
+                           an_error *err)
 {
     const an_counts_form *form = reader->form;
     if (form->type <= AN_COUNT_INT32)
@@ -106,12 +107,14 @@ static an_status bind_channel(counts_reader *reader, int i, an_error *err)
         if (!said->name[0] || is_ignored(layout, said->name))
             return AN_OK;
         return an_fail(err, AN_E_FORMAT, reader->source->sidecar,
-                       "channel %d '%s' is not mapped; give it a role in the layout, or list it as ignored", i + 1,
-                       said->name);
+                       "channel %d '%s' is not mapped; give it a role in the layout, or list it as ignored",
+                       i + 1, said->name);
     }
     an_status status = an_rows_bind(&reader->rows, channel, i, said->unit, strlen(said->unit), err);
     if (status < 0)
-        return err ? an_error_at(err, reader->source->sidecar ? reader->source->sidecar : reader->source->path) : status;
+        return err ? an_error_at(err,
+                                 reader->source->sidecar ? reader->source->sidecar : reader->source->path)
+                   : status;
     reader->in[i] = &reader->rows.in[channel->role];
     if (!isnan(said->size) && said->size != 0)
         reader->in[i]->size = said->size;
@@ -132,8 +135,10 @@ static an_status bind_channels(counts_reader *reader, an_error *err)
     const an_layout *layout = reader->source->layout;
     double declared = reader->sidecar.n_declared;
     reader->n_channel = isnan(declared) ? count_channels(reader) : (int)declared;
-    if (reader->n_channel < 1 || reader->n_channel > AN_CHANNELS_MOST || count_channels(reader) > reader->n_channel)
-        return an_fail(err, AN_E_FORMAT, reader->source->sidecar ? reader->source->sidecar : reader->source->path,
+    if (reader->n_channel < 1 || reader->n_channel > AN_CHANNELS_MOST ||
+        count_channels(reader) > reader->n_channel)
+        return an_fail(err, AN_E_FORMAT,
+                       reader->source->sidecar ? reader->source->sidecar : reader->source->path,
                        "%d channels declared, %d described", reader->n_channel, count_channels(reader));
     for (int i = 0; i < reader->n_channel; i++)
         AN_TRY(bind_channel(reader, i, err));
@@ -163,7 +168,8 @@ static an_status open_dump(counts_reader *reader, an_error *err)
 }
 
 /* n counts from a position [counts] of the dump into raw at `to`. */
-static an_status read_counts(counts_reader *reader, size_t position, size_t n, unsigned char *to, an_error *err)
+static an_status read_counts(counts_reader *reader, size_t position, size_t n, unsigned char *to,
+                             an_error *err)
 {
     size_t size = size_of(reader->form->type);
     off_t at = (off_t)reader->form->offset + (off_t)(position * size);
@@ -219,7 +225,8 @@ static an_status read_tabled_burst(counts_reader *reader, const an_burst_facts *
     return an_rows_end_burst(rows, err);
 }
 
-/* Where one channel stands after the other, a missing byte moves all channels but the first: nothing can be saved. */
+/* Where one channel stands after the other, a missing byte moves all channels but the first: nothing can be
+ * saved. */
 static an_status check_planar(const counts_reader *reader, an_error *err)
 {
     size_t n_needed = 0;
@@ -231,7 +238,8 @@ static an_status check_planar(const counts_reader *reader, an_error *err)
     if (!reader->form->planar || (reader->n_rest == 0 && n_needed <= reader->n_frame))
         return AN_OK;
     return an_fail(err, AN_E_FORMAT, reader->source->path,
-                   "the dump ends after %zu samples a channel and %zu bytes, the burst table names %zu; with one channel "
+                   "the dump ends after %zu samples a channel and %zu bytes, the burst table names %zu; with "
+                   "one channel "
                    "after the other nothing of it can be told apart",
                    reader->n_frame, reader->n_rest, n_needed);
 }
@@ -271,8 +279,8 @@ static an_status read_all(counts_reader *reader, an_error *err)
     return read_bursts(reader, err);
 }
 
-an_status an_counts_dump_read(const an_dump_source *source, const an_dump_visitor *visitor, an_remark_list *remarks,
-                              an_error *err)
+an_status an_counts_dump_read(const an_dump_source *source, const an_dump_visitor *visitor,
+                              an_remark_list *remarks, an_error *err)
 {
     counts_reader *reader = calloc(1, sizeof *reader);
     if (!reader)

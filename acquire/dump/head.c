@@ -1,5 +1,6 @@
-/* The dump's own head becomes specimen fields, by the layout's keys. Nothing is guessed: a key is mapped, or ignored by name,
- * or refused; a unit stands in the layout, beside the value or within it, and where it stands twice both must agree.
+/* The dump's own head becomes specimen fields, by the layout's keys. Nothing is guessed: a key is mapped, or
+ * ignored by name, or refused; a unit stands in the layout, beside the value or within it, and where it
+ * stands twice both must agree.
  */
 #include "acquire/dump/head.h"
 
@@ -28,13 +29,15 @@ static size_t number_length(an_cell value)
     size_t n = 0;
     while (n < value.n && strchr("0123456789+-.,", value.text[n]))
         n++;
-    if (n + 1 < value.n && (value.text[n] == 'e' || value.text[n] == 'E') && strchr("0123456789+-", value.text[n + 1]))
+    if (n + 1 < value.n && (value.text[n] == 'e' || value.text[n] == 'E') &&
+        strchr("0123456789+-", value.text[n + 1]))
         for (n += 2; n < value.n && strchr("0123456789", value.text[n]);)
             n++;
     return n;
 }
 
-static an_status convert(an_cell key, const char *unit, const char *expected, an_conversion *conversion, an_error *err)
+static an_status convert(an_cell key, const char *unit, const char *expected, an_conversion *conversion,
+                         an_error *err)
 {
     an_error why;
     if (an_unit_convert(unit, expected, conversion, &why) >= 0)
@@ -53,13 +56,13 @@ static an_status choose_unit(an_cell key, const char *dump, const char *stated, 
     AN_TRY(convert(key, dump, expected, &other, err));
     double ratio = other.factor / other.divisor / (conversion->factor / conversion->divisor);
     if (fabs(ratio - 1) > 1e-12 || fabs(other.offset - conversion->offset) > 1e-9)
-        return an_fail(err, AN_E_UNIT, NULL, "'%.*s': the dump says unit '%s', the layout '%s'", shown(key.n), key.text,
-                       dump, stated);
+        return an_fail(err, AN_E_UNIT, NULL, "'%.*s': the dump says unit '%s', the layout '%s'", shown(key.n),
+                       key.text, dump, stated);
     return AN_OK;
 }
 
-an_status an_head_number(const an_layout *layout, an_cell key, an_cell value, an_cell unit, const char *stated,
-                         const char *expected, double *si, an_error *err)
+an_status an_head_number(const an_layout *layout, an_cell key, an_cell value, an_cell unit,
+                         const char *stated, const char *expected, double *si, an_error *err)
 {
     char dump[64];
     double number;
@@ -68,30 +71,33 @@ an_status an_head_number(const an_layout *layout, an_cell key, an_cell value, an
     if (rest.n > 0 && unit.n == 0)
         unit = rest;
     if (!an_number_parse(value.text, n, layout->text.decimal_mark, &number) || (rest.n > 0 && !expected))
-        return an_fail(err, AN_E_VALUE, NULL, "'%.*s': '%.*s' is not a number (decimal mark '%c')", shown(key.n),
-                       key.text, shown(value.n), value.text, layout->text.decimal_mark);
+        return an_fail(err, AN_E_VALUE, NULL, "'%.*s': '%.*s' is not a number (decimal mark '%c')",
+                       shown(key.n), key.text, shown(value.n), value.text, layout->text.decimal_mark);
     *si = number;
     if (!expected)
         return AN_OK;
     an_conversion conversion;
     snprintf(dump, sizeof dump, "%.*s", shown(unit.n), unit.n ? unit.text : "");
     if (!stated && !dump[0])
-        return an_fail(err, AN_E_UNIT, NULL, "'%.*s': neither the dump nor the layout says the unit of '%.*s'",
-                       shown(key.n), key.text, shown(value.n), value.text);
+        return an_fail(err, AN_E_UNIT, NULL,
+                       "'%.*s': neither the dump nor the layout says the unit of '%.*s'", shown(key.n),
+                       key.text, shown(value.n), value.text);
     AN_TRY(choose_unit(key, dump, stated, expected, &conversion, err));
     *si = an_unit_si(&conversion, number);
     return AN_OK;
 }
 
-/* xs:dateTime without a zone: 2026-03-09T14:20:00, or the same with a blank. Returns bytes used, 0: not that. */
+/* xs:dateTime without a zone: 2026-03-09T14:20:00, or the same with a blank. Returns bytes used, 0: not that.
+ */
 static size_t iso_length(const char *text)
 {
     int year, month, day, hour, minute, second, used = 0;
     char between;
-    if (sscanf(text, "%4d-%2d-%2d%c%2d:%2d:%2d%n", &year, &month, &day, &between, &hour, &minute, &second, &used) != 7)
+    if (sscanf(text, "%4d-%2d-%2d%c%2d:%2d:%2d%n", &year, &month, &day, &between, &hour, &minute, &second,
+               &used) != 7)
         return 0;
-    bool good = used == 19 && (between == 'T' || between == ' ') && month >= 1 && month <= 12 && day >= 1 && day <= 31 &&
-                hour <= 24 && minute < 60 && second <= 60;
+    bool good = used == 19 && (between == 'T' || between == ' ') && month >= 1 && month <= 12 && day >= 1 &&
+                day <= 31 && hour <= 24 && minute < 60 && second <= 60;
     return good ? 19 : 0;
 }
 
@@ -100,8 +106,9 @@ static bool is_zone(const char *text)
     int hours, minutes, used = 0;
     if (strcmp(text, "Z") == 0)
         return true;
-    return (text[0] == '+' || text[0] == '-') && sscanf(text + 1, "%2d:%2d%n", &hours, &minutes, &used) == 2 &&
-           used == 5 && text[6] == '\0' && hours <= 14 && minutes < 60;
+    return (text[0] == '+' || text[0] == '-') &&
+           sscanf(text + 1, "%2d:%2d%n", &hours, &minutes, &used) == 2 && used == 5 && text[6] == '\0' &&
+           hours <= 14 && minutes < 60;
 }
 
 /* A date and time to xs:dateTime with a zone, from the dump or from the layout. */
@@ -142,11 +149,12 @@ static an_status set_geometry(an_head *head, const an_layout_field *field, const
     head->specimen.geometry.kind = an_geometry_find(word);
     if (head->specimen.geometry.kind != AN_GEOMETRY_NONE)
         return AN_OK;
-    return an_fail(err, AN_E_VALUE, NULL, "geometry: '%s' is no kind known here; the layout can say what it means", word);
+    return an_fail(err, AN_E_VALUE, NULL,
+                   "geometry: '%s' is no kind known here; the layout can say what it means", word);
 }
 
-static an_status set_field(an_head *head, const an_layout_field *field, an_cell key, an_cell value, an_cell unit,
-                           an_error *err)
+static an_status set_field(an_head *head, const an_layout_field *field, an_cell key, an_cell value,
+                           an_cell unit, an_error *err)
 {
     const char *expected;
     an_measure *measure = an_geometry_dimension(&head->specimen.geometry, field->name, &expected);
@@ -154,8 +162,8 @@ static an_status set_field(an_head *head, const an_layout_field *field, an_cell 
         return an_head_number(head->layout, key, value, unit, field->unit, expected, &measure->value, err);
     char text[160];
     if (value.n >= sizeof text)
-        return an_fail(err, AN_E_LIMIT, NULL, "'%.*s': the value is longer than %zu bytes", shown(key.n), key.text,
-                       sizeof text - 1);
+        return an_fail(err, AN_E_LIMIT, NULL, "'%.*s': the value is longer than %zu bytes", shown(key.n),
+                       key.text, sizeof text - 1);
     snprintf(text, sizeof text, "%.*s", (int)value.n, value.text);
     if (strcmp(field->name, "geometry") == 0)
         return set_geometry(head, field, text, err);
@@ -164,8 +172,8 @@ static an_status set_field(an_head *head, const an_layout_field *field, an_cell 
     size_t size;
     char *label = an_specimen_label(&head->specimen, field->name, &size);
     if (value.n >= size)
-        return an_fail(err, AN_E_LIMIT, NULL, "'%.*s': the value is longer than %zu bytes", shown(key.n), key.text,
-                       size - 1);
+        return an_fail(err, AN_E_LIMIT, NULL, "'%.*s': the value is longer than %zu bytes", shown(key.n),
+                       key.text, size - 1);
     memcpy(label, text, value.n + 1);
     return AN_OK;
 }
@@ -179,7 +187,8 @@ static void note_unmapped(an_head *head, an_cell key, long line)
              shown(key.n), key.text, line);
 }
 
-an_status an_head_add(an_head *head, an_cell key, an_cell value, an_cell unit, long line, bool comment, an_error *err)
+an_status an_head_add(an_head *head, an_cell key, an_cell value, an_cell unit, long line, bool comment,
+                      an_error *err)
 {
     const an_layout *layout = head->layout;
     for (int i = 0; i < layout->n_field; i++)
@@ -193,7 +202,8 @@ an_status an_head_add(an_head *head, an_cell key, an_cell value, an_cell unit, l
     return AN_OK;
 }
 
-/* Key, value and unit where another mark than the separator stands behind the key: "Free length: 15.02; mm". */
+/* Key, value and unit where another mark than the separator stands behind the key: "Free length: 15.02; mm".
+ */
 static int split_at_mark(const an_text_form *form, char mark, const char *text, size_t n, an_cell *cells)
 {
     const char *at = memchr(text, mark, n);
@@ -220,7 +230,8 @@ an_status an_head_add_line(an_head *head, const char *text, size_t n, long line,
         return an_fail(err, AN_E_LIMIT, NULL, "more than %d fields", AN_CELLS_MOST);
     if (n_cells < 1 || cells[0].n == 0)
         return AN_OK;
-    return an_head_add(head, cells[0], n_cells > 1 ? cells[1] : none, n_cells > 2 ? cells[2] : none, line, comment, err);
+    return an_head_add(head, cells[0], n_cells > 1 ? cells[1] : none, n_cells > 2 ? cells[2] : none, line,
+                       comment, err);
 }
 
 an_status an_head_finish(const an_head *head, const char *path, an_error *err)
@@ -229,6 +240,6 @@ an_status an_head_finish(const an_head *head, const char *path, an_error *err)
     if (head->n_unmapped == 0)
         return AN_OK;
     snprintf(place, sizeof place, "%.480s:%ld", path, head->first_line);
-    return an_fail(err, AN_E_FORMAT, place, "the layout maps no key %s; map it in <head>, or list it as ignored",
-                   head->unmapped);
+    return an_fail(err, AN_E_FORMAT, place,
+                   "the layout maps no key %s; map it in <head>, or list it as ignored", head->unmapped);
 }

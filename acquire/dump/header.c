@@ -1,5 +1,5 @@
-/* Header rows are found by their content, so that a preamble may be of any length. Every column must be mapped to a role or
- * listed as ignored: a column that nobody knew is a misunderstanding, not a detail.
+/* Header rows are found by their content, so that a preamble may be of any length. Every column must be
+ * mapped to a role or listed as ignored: a column that nobody knew is a misunderstanding, not a detail.
  */
 #include "acquire/dump/header.h"
 
@@ -62,8 +62,10 @@ static an_status check_mapping(const an_header *header, const char *unmapped, an
                        unmapped[0] ? "" : "; check the separator");
     }
     if (unmapped[0])
-        return an_fail(err, AN_E_FORMAT, NULL,
-                       "columns that are not mapped: %s; give each a role in the layout, or list it as ignored", unmapped);
+        return an_fail(
+            err, AN_E_FORMAT, NULL,
+            "columns that are not mapped: %s; give each a role in the layout, or list it as ignored",
+            unmapped);
     return AN_OK;
 }
 
@@ -125,7 +127,8 @@ bool an_header_is_units(const an_header *header, const an_cell *cells, int n_cel
     return has_unit;
 }
 
-an_status an_header_bind(const an_header *header, const an_cell *units, int n_units, an_rows *rows, an_error *err)
+an_status an_header_bind(const an_header *header, const an_cell *units, int n_units, an_rows *rows,
+                         an_error *err)
 {
     for (int i = 0; i < header->n; i++) {
         const char *unit = units && i < n_units ? units[i].text : NULL;

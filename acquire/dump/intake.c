@@ -1,5 +1,6 @@
-/* Intake: what the dump's own head says is merged with the written documents, the run gets its name, and bursts are written as
- * they come, so that memory is bounded by the largest. The output appears whole or not at all.
+/* Intake: what the dump's own head says is merged with the written documents, the run gets its name, and
+ * bursts are written as they come, so that memory is bounded by the largest. The output appears whole or not
+ * at all.
  */
 #include "anelast/intake.h"
 
@@ -13,17 +14,18 @@
 typedef struct intake_state {
     const an_intake *intake;
     an_layout layout;
-    an_specimen specimen;     /* the written one */
+    an_specimen specimen; /* the written one */
     an_run run;
     an_output *output;
     an_xml_writer *writer;
     int n_skip;
-    char sidecar[4096];       /* path; "" where there is none */
+    char sidecar[4096]; /* path; "" where there is none */
 } intake_state;
 
 static int is_safe(char c)
 {
-    return (c >= 'a' && c <= 'z') || (c >= 'A' && c <= 'Z') || (c >= '0' && c <= '9') || c == '.' || c == '_' || c == '-';
+    return (c >= 'a' && c <= 'z') || (c >= 'A' && c <= 'Z') || (c >= '0' && c <= '9') || c == '.' ||
+           c == '_' || c == '-';
 }
 
 void an_run_id_make(const char *specimen, const char *started, const char *dump, char *id, size_t n_id)
@@ -80,7 +82,8 @@ static an_status read_inputs(intake_state *state, an_error *err)
         AN_TRY(an_made_add_input(made, "apparatus", intake->apparatus, sha256, err));
     }
     AN_TRY(an_procedure_record(intake->procedure, "intake", made, err));
-    return an_made_add_number(made, "missing_skip", an_procedure_number(intake->procedure, "missing_skip"), "1", err);
+    return an_made_add_number(made, "missing_skip", an_procedure_number(intake->procedure, "missing_skip"),
+                              "1", err);
 }
 
 /* What the instrument has corrected already is not corrected again. */
@@ -92,13 +95,15 @@ static an_status settle_corrections(intake_state *state, an_error *err)
                                   "no apparatus document is given; the bench was taken as ideal"));
     if (state->layout.compliance_corrected && apparatus->n_compliance > 0) {
         apparatus->n_compliance = 0;
-        AN_TRY(an_remark_list_add_as(&state->run.remarks, "corrected-before", AN_NOTE, 0, err,
-                                     "the layout says that the dump is corrected for compliance; it is not corrected again"));
+        AN_TRY(an_remark_list_add_as(
+            &state->run.remarks, "corrected-before", AN_NOTE, 0, err,
+            "the layout says that the dump is corrected for compliance; it is not corrected again"));
     }
     if (state->layout.inertia_corrected && apparatus->moving_mass.value != 0) {
         apparatus->moving_mass = (an_measure){.value = 0, .u = 0};
-        AN_TRY(an_remark_list_add_as(&state->run.remarks, "corrected-before", AN_NOTE, 0, err,
-                                     "the layout says that the dump is corrected for inertia; it is not corrected again"));
+        AN_TRY(an_remark_list_add_as(
+            &state->run.remarks, "corrected-before", AN_NOTE, 0, err,
+            "the layout says that the dump is corrected for inertia; it is not corrected again"));
     }
     return AN_OK;
 }

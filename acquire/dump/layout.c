@@ -1,5 +1,6 @@
-/* The layout document read into its struct. The schema has checked words and structure; what it cannot see is checked
- * here: that each role stands once, that what the bursts need is there, that units have the dimension of their role.
+/* The layout document read into its struct. The schema has checked words and structure; what it cannot see is
+ * checked here: that each role stands once, that what the bursts need is there, that units have the dimension
+ * of their role.
  */
 #include "anelast/layout.h"
 
@@ -63,7 +64,8 @@ const an_layout_value *an_layout_value_of(const an_layout *layout, const char *k
 /* Texts of all children of one name. */
 static an_status read_names(const an_xml_node *node, const char *child_name, an_names *names, an_error *err)
 {
-    for (const an_xml_node *child = an_xml_child(node, child_name); child; child = an_xml_next(child, child_name)) {
+    for (const an_xml_node *child = an_xml_child(node, child_name); child;
+         child = an_xml_next(child, child_name)) {
         if (names->n == AN_NAMES_MOST)
             return an_xml_fail(child, err, AN_E_LIMIT, "more than %d alternatives", AN_NAMES_MOST);
         names->text[names->n++] = child->text;
@@ -113,7 +115,7 @@ static an_status read_quote(const an_xml_node *node, an_text_form *form, an_erro
 
 static an_status read_text_form(const an_xml_node *node, an_text_form *form, an_error *err)
 {
-    static const char *const encodings[] = {"UTF-8",     "UTF-16",     "UTF-16LE",     "UTF-16BE",
+    static const char *const encodings[] = {"UTF-8",      "UTF-16",       "UTF-16LE", "UTF-16BE",
                                             "ISO-8859-1", "Windows-1252", NULL};
     static const char *const separators[] = {"tab", "semicolon", "comma", "blanks", "bar", NULL};
     static const char *const decimal_marks[] = {".", ",", NULL};
@@ -133,7 +135,8 @@ static an_status read_text_form(const an_xml_node *node, an_text_form *form, an_
     AN_TRY(read_yes(node, "header", &form->header, err));
     AN_TRY(read_quote(node, form, err));
     if (form->separator == form->decimal_mark)
-        return an_xml_fail(node, err, AN_E_VALUE, "separator and decimal mark are both '%c'", form->decimal_mark);
+        return an_xml_fail(node, err, AN_E_VALUE, "separator and decimal mark are both '%c'",
+                           form->decimal_mark);
     return read_marks(node, form, err);
 }
 
@@ -178,7 +181,8 @@ static an_status read_field(const an_xml_node *node, an_layout_field *field, an_
     if (an_geometry_dimension(&probe.geometry, field->name, &unit)) {
         an_conversion conversion;
         if (field->unit && an_unit_convert(field->unit, unit, &conversion, err) < 0)
-            return an_xml_fail(node, err, AN_E_UNIT, "unit '%s' of %s is no [%s]", field->unit, field->name, unit);
+            return an_xml_fail(node, err, AN_E_UNIT, "unit '%s' of %s is no [%s]", field->unit, field->name,
+                               unit);
     } else if (strcmp(field->name, "geometry") != 0 && !an_specimen_label(&probe, field->name, &size)) {
         return an_xml_fail(node, err, AN_E_VALUE, "a specimen has no '%s'", field->name);
     }
@@ -260,7 +264,8 @@ static an_status add_channel(const an_xml_node *node, an_layout *layout, an_erro
     AN_TRY(read_channel(node, channel, err));
     for (int i = 0; i < layout->n_channel; i++)
         if (layout->channels[i].role == channel->role)
-            return an_xml_fail(node, err, AN_E_DOCUMENT, "a second channel with role %s", an_role_name(channel->role));
+            return an_xml_fail(node, err, AN_E_DOCUMENT, "a second channel with role %s",
+                               an_role_name(channel->role));
     layout->n_channel++;
     return AN_OK;
 }
@@ -337,9 +342,12 @@ static an_status check_roles(const an_layout *layout, an_error *err)
         return an_xml_fail(root, err, AN_E_DOCUMENT, "nothing gives time: no channel, no rate, no interval");
     if (layout->bursts_from == AN_BURSTS_STEP && !has_channel(layout, AN_ROLE_STEP) &&
         !has_channel(layout, AN_ROLE_SET_FREQUENCY) && !has_channel(layout, AN_ROLE_SET_TEMPERATURE))
-        return an_xml_fail(root, err, AN_E_DOCUMENT, "bursts from a step column, but no channel has the role step");
-    if (layout->counts.present && (layout->bursts_from == AN_BURSTS_STEP || layout->bursts_from == AN_BURSTS_BLOCKS))
-        return an_xml_fail(root, err, AN_E_DOCUMENT, "a binary dump has bursts from a table, from signals, or is one");
+        return an_xml_fail(root, err, AN_E_DOCUMENT,
+                           "bursts from a step column, but no channel has the role step");
+    if (layout->counts.present &&
+        (layout->bursts_from == AN_BURSTS_STEP || layout->bursts_from == AN_BURSTS_BLOCKS))
+        return an_xml_fail(root, err, AN_E_DOCUMENT,
+                           "a binary dump has bursts from a table, from signals, or is one");
     if (layout->bursts_from == AN_BURSTS_TABLE && !layout->counts.burst_key)
         return an_xml_fail(root, err, AN_E_DOCUMENT, "bursts from a table need the sidecar's burst_key");
     return AN_OK;

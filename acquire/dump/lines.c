@@ -1,6 +1,6 @@
-/* Text dumps, line by line. Raw bytes come in blocks; UTF-8 is used where it lies and only checked where a byte above 127
- * stands in it, ISO-8859-1 and Windows-1252 are widened by a table, UTF-16 goes through iconv. Memory: two blocks and
- * the longest line.
+/* Text dumps, line by line. Raw bytes come in blocks; UTF-8 is used where it lies and only checked where a
+ * byte above 127 stands in it, ISO-8859-1 and Windows-1252 are widened by a table, UTF-16 goes through iconv.
+ * Memory: two blocks and the longest line.
  */
 #include "anelast/lines.h"
 
@@ -17,25 +17,28 @@ struct an_lines {
     FILE *stream;
     char *path;
     an_encoding encoding;
-    const char *mark;     /* see an_lines_mark */
-    iconv_t converter;    /* (iconv_t)-1 where none is needed */
-    char *raw;            /* [BLOCK] undecoded bytes */
-    size_t n_raw;         /* bytes of raw that wait for the next block */
-    char *text;           /* [room] decoded */
-    size_t begin, end;    /* of what is not handed out yet */
+    const char *mark;  /* see an_lines_mark */
+    iconv_t converter; /* (iconv_t)-1 where none is needed */
+    char *raw;         /* [BLOCK] undecoded bytes */
+    size_t n_raw;      /* bytes of raw that wait for the next block */
+    char *text;        /* [room] decoded */
+    size_t begin, end; /* of what is not handed out yet */
     size_t room;
-    bool wide;            /* a byte above 127 stands in text: lines are checked */
-    bool at_end;          /* the file is read to its end */
-    long number;          /* of the last line handed out */
+    bool wide;   /* a byte above 127 stands in text: lines are checked */
+    bool at_end; /* the file is read to its end */
+    long number; /* of the last line handed out */
 };
 
-/* Windows-1252 where it differs from ISO-8859-1, bytes 0x80..0x9f; 0: not assigned. From the Unicode consortium's table. */
+/* Windows-1252 where it differs from ISO-8859-1, bytes 0x80..0x9f; 0: not assigned. From the Unicode
+ * consortium's table. */
 static const uint16_t cp1252[32] = {
-    0x20ac, 0,      0x201a, 0x0192, 0x201e, 0x2026, 0x2020, 0x2021, 0x02c6, 0x2030, 0x0160, 0x2039, 0x0152, 0, 0x017d, 0,
-    0,      0x2018, 0x2019, 0x201c, 0x201d, 0x2022, 0x2013, 0x2014, 0x02dc, 0x2122, 0x0161, 0x203a, 0x0153, 0, 0x017e, 0x0178,
+    0x20ac, 0,      0x201a, 0x0192, 0x201e, 0x2026, 0x2020, 0x2021, 0x02c6, 0x2030, 0x0160,
+    0x2039, 0x0152, 0,      0x017d, 0,      0,      0x2018, 0x2019, 0x201c, 0x201d, 0x2022,
+    0x2013, 0x2014, 0x02dc, 0x2122, 0x0161, 0x203a, 0x0153, 0,      0x017e, 0x0178,
 };
 
-static an_status fail_at(const an_lines *lines, long number, an_error *err, an_status status, const char *text)
+static an_status fail_at(const an_lines *lines, long number, an_error *err, an_status status,
+                         const char *text)
 {
     char place[512];
     snprintf(place, sizeof place, "%.480s:%ld", lines->path, number);
@@ -103,7 +106,8 @@ static bool is_utf8(const char *text, size_t n)
     return true;
 }
 
-/* One character of a single-byte encoding, as UTF-8. Returns bytes written, 0 where the byte is not assigned. */
+/* One character of a single-byte encoding, as UTF-8. Returns bytes written, 0 where the byte is not assigned.
+ */
 static size_t widen(an_encoding encoding, unsigned char byte, char *out)
 {
     unsigned code = byte;
@@ -165,9 +169,11 @@ static an_status decode_utf16(an_lines *lines, size_t n, an_error *err)
     lines->end = (size_t)(out - lines->text);
     lines->wide = false; /* what iconv makes is UTF-8 */
     if (result == (size_t)-1 && why != EINVAL)
-        return fail_at(lines, line_at(lines, out), err, AN_E_FORMAT, "bytes that are no UTF-16; check the encoding");
+        return fail_at(lines, line_at(lines, out), err, AN_E_FORMAT,
+                       "bytes that are no UTF-16; check the encoding");
     if (n_in > 0 && lines->at_end)
-        return fail_at(lines, line_at(lines, out), err, AN_E_FORMAT, "the file ends within a character of UTF-16");
+        return fail_at(lines, line_at(lines, out), err, AN_E_FORMAT,
+                       "the file ends within a character of UTF-16");
     memmove(lines->raw, in, n_in);
     lines->n_raw = n_in;
     return AN_OK;
@@ -195,9 +201,11 @@ static an_status fill(an_lines *lines, an_error *err)
     return AN_OK;
 }
 
-static an_status choose_utf16(an_lines *lines, const unsigned char *mark, size_t n, size_t *skip, an_error *err)
+static an_status choose_utf16(an_lines *lines, const unsigned char *mark, size_t n, size_t *skip,
+                              an_error *err)
 {
-    bool little = n >= 2 && mark[0] == 0xff && mark[1] == 0xfe, big = n >= 2 && mark[0] == 0xfe && mark[1] == 0xff;
+    bool little = n >= 2 && mark[0] == 0xff && mark[1] == 0xfe,
+         big = n >= 2 && mark[0] == 0xfe && mark[1] == 0xff;
     if (little || big) {
         *skip = 2;
         lines->mark = little ? "UTF-16LE" : "UTF-16BE";
@@ -222,7 +230,8 @@ static an_status read_mark(an_lines *lines, an_error *err)
     if (lines->encoding >= AN_ENCODING_UTF16 && lines->encoding <= AN_ENCODING_UTF16BE)
         AN_TRY(choose_utf16(lines, mark, n, &skip, err));
     else if (utf16)
-        return an_fail(err, AN_E_FORMAT, lines->path, "a mark of UTF-16 stands at its beginning; check the encoding");
+        return an_fail(err, AN_E_FORMAT, lines->path,
+                       "a mark of UTF-16 stands at its beginning; check the encoding");
     else if (n == 3 && memcmp(mark, "\xef\xbb\xbf", 3) == 0 && lines->encoding == AN_ENCODING_UTF8) {
         skip = 3;
         lines->mark = "UTF-8";
@@ -289,7 +298,8 @@ an_status an_lines_next(an_lines *lines, an_line *line, an_error *err)
         if (end)
             return hand_out(lines, (size_t)(end - lines->text) - lines->begin, true, line, err);
         if (waiting > AN_LINE_MOST)
-            return fail_at(lines, lines->number + 1, err, AN_E_LIMIT, "a line of more than 1 MiB: is this text?");
+            return fail_at(lines, lines->number + 1, err, AN_E_LIMIT,
+                           "a line of more than 1 MiB: is this text?");
         if (lines->at_end)
             break;
         scanned = waiting;

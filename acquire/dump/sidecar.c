@@ -1,7 +1,7 @@
-/* The text beside a binary dump. A row is a run of key=value, a value reaching to the blank before the next key, so that
- * "material=hull laminate resin" needs no quotes. Rows that the burst key opens are the burst table; rows whose key has a
- * channel's number in it describe that channel; the rest is the dump's head, or facts about the counts, which must agree with
- * the layout.
+/* The text beside a binary dump. A row is a run of key=value, a value reaching to the blank before the next
+ * key, so that "material=hull laminate resin" needs no quotes. Rows that the burst key opens are the burst
+ * table; rows whose key has a channel's number in it describe that channel; the rest is the dump's head, or
+ * facts about the counts, which must agree with the layout.
  */
 #include "acquire/dump/sidecar.h"
 
@@ -21,7 +21,8 @@ typedef struct pair {
 
 enum { PAIRS_MOST = 64 };
 
-/* Cut a row into pairs. Returns how many, or -1 where a word stands before the first key, or there are too many. */
+/* Cut a row into pairs. Returns how many, or -1 where a word stands before the first key, or there are too
+ * many. */
 static int split_pairs(const char *text, size_t n, pair *pairs)
 {
     an_cell words[AN_CELLS_MOST + 1];
@@ -63,7 +64,8 @@ static int channel_number(const an_counts_form *form, an_cell key)
 }
 
 /* "force N 2e-05": the last word is the size of a count, the one before the unit, the rest the name. */
-static an_status read_channel(an_sidecar *sidecar, int number, an_cell value, char decimal_mark, an_error *err)
+static an_status read_channel(an_sidecar *sidecar, int number, an_cell value, char decimal_mark,
+                              an_error *err)
 {
     an_cell words[AN_CELLS_MOST + 1];
     int n = an_cells_split(value.text, value.n, ' ', '\0', words);
@@ -71,7 +73,8 @@ static an_status read_channel(an_sidecar *sidecar, int number, an_cell value, ch
     channel->size = NAN;
     if (n > AN_CELLS_MOST || n < 2 ||
         (n >= 3 && !an_number_parse(words[n - 1].text, words[n - 1].n, decimal_mark, &channel->size)))
-        return an_fail(err, AN_E_FORMAT, NULL, "channel %d: '%.*s' is not a name, a unit and the size of a count", number,
+        return an_fail(err, AN_E_FORMAT, NULL,
+                       "channel %d: '%.*s' is not a name, a unit and the size of a count", number,
                        (int)(value.n % 100), value.text);
     int i_unit = n >= 3 ? n - 2 : 1;
     size_t n_name = (size_t)(words[i_unit - 1].text + words[i_unit - 1].n - words[0].text);
@@ -128,8 +131,8 @@ static an_status add_burst(an_sidecar *sidecar, an_burst_facts **facts, an_error
 }
 
 /* One pair that is no channel: a value with a role, or a key of the head. */
-static an_status read_pair(an_sidecar *sidecar, const an_layout *layout, const pair *row, an_burst_facts *facts,
-                           long line, an_error *err)
+static an_status read_pair(an_sidecar *sidecar, const an_layout *layout, const pair *row,
+                           an_burst_facts *facts, long line, an_error *err)
 {
     an_cell none = {"", 0};
     const an_layout_value *value = an_layout_value_of(layout, row->key.text, row->key.n);
@@ -144,8 +147,8 @@ static an_status read_row(an_sidecar *sidecar, const an_layout *layout, const an
     an_burst_facts *facts = &sidecar->common;
     int n = split_pairs(line->text, line->n, pairs);
     if (n < 0)
-        return an_fail(err, AN_E_FORMAT, NULL, "not a row of key=value: '%.*s'", line->n < 60 ? (int)line->n : 60,
-                       line->text);
+        return an_fail(err, AN_E_FORMAT, NULL, "not a row of key=value: '%.*s'",
+                       line->n < 60 ? (int)line->n : 60, line->text);
     const char *burst_key = layout->counts.burst_key;
     bool burst = n > 0 && burst_key && an_cell_is(pairs[0].key, burst_key);
     if (burst)

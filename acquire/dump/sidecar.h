@@ -15,19 +15,20 @@ typedef struct an_sidecar_channel {
 
 /* What it says. */
 typedef struct an_sidecar {
-    an_head head;                 /* of the specimen */
-    an_counts_form form;          /* the layout's, checked against the text */
-    int n_channel;                /* rows of channels seen; highest number */
+    an_head head;                                  /* of the specimen */
+    an_counts_form form;                           /* the layout's, checked against the text */
+    int n_channel;                                 /* rows of channels seen; highest number */
     an_sidecar_channel channels[AN_CHANNELS_MOST]; /* by number, from 1 at index 0 */
-    double n_declared;            /* [1] channels that the text declares; NAN */
+    double n_declared;                             /* [1] channels that the text declares; NAN */
     size_t n_burst, room;
-    an_burst_facts *bursts;       /* [n_burst] */
-    an_burst_facts common;        /* values outside the burst table: a rate for all */
+    an_burst_facts *bursts; /* [n_burst] */
+    an_burst_facts common;  /* values outside the burst table: a rate for all */
 } an_sidecar;
 
 /* an_sidecar_read: read the text.
  *   sidecar [out] release with an_sidecar_release, also after a refusal
- * Returns AN_OK, AN_E_IO, AN_E_FORMAT, AN_E_UNIT, AN_E_VALUE, AN_E_LIMIT or AN_E_MEMORY with file and line. */
+ * Returns AN_OK, AN_E_IO, AN_E_FORMAT, AN_E_UNIT, AN_E_VALUE, AN_E_LIMIT or AN_E_MEMORY with file and line.
+ */
 an_status an_sidecar_read(const char *path, const an_layout *layout, an_sidecar *sidecar, an_error *err);
 
 void an_sidecar_release(an_sidecar *sidecar);

@@ -1,6 +1,7 @@
-/* Text dumps: preamble, header row, unit row, rows of samples, small headers between bursts, comments, a footer, each known by
- * its content. One pass, line by line; memory is bounded by the largest burst. A row that the end of the file cuts is left
- * out and said; anything else that is not as the layout says is refused with line, step and column.
+/* Text dumps: preamble, header row, unit row, rows of samples, small headers between bursts, comments, a
+ * footer, each known by its content. One pass, line by line; memory is bounded by the largest burst. A row
+ * that the end of the file cuts is left out and said; anything else that is not as the layout says is refused
+ * with line, step and column.
  */
 #include "acquire/dump/text.h"
 
@@ -29,12 +30,12 @@ typedef struct text_reader {
     an_head head;
     an_rows rows;
     place_in_dump where;
-    bool head_handed;    /* the visitor has had the head */
-    long line;           /* number of the present line */
-    double overrange;    /* [as in the dump] */
-    char step[96];       /* text of the step of the burst that is being read */
-    char last_cell[48];  /* last field of the row before, to know a number that was cut */
-    bool cut;            /* the file ends within a row */
+    bool head_handed;   /* the visitor has had the head */
+    long line;          /* number of the present line */
+    double overrange;   /* [as in the dump] */
+    char step[96];      /* text of the step of the burst that is being read */
+    char last_cell[48]; /* last field of the row before, to know a number that was cut */
+    bool cut;           /* the file ends within a row */
 } text_reader;
 
 static an_status place_error(const text_reader *reader, an_error *err)
@@ -106,17 +107,19 @@ static an_status read_block_row(text_reader *reader, const an_line *line, const 
     if (!value) {
         int known = reader->head.n_unmapped;
         AN_TRY(an_head_add_line(&reader->head, line->text, line->n, line->number, false, err));
-        return reader->head.n_unmapped > known ? an_head_finish(&reader->head, reader->source->path, err) : AN_OK;
+        return reader->head.n_unmapped > known ? an_head_finish(&reader->head, reader->source->path, err)
+                                               : AN_OK;
     }
-    AN_TRY(an_head_number(reader->layout, cells[0], n_cells > 1 ? cells[1] : none, n_cells > 2 ? cells[2] : none,
-                          value->unit, an_role_unit(value->role), &si, err));
+    AN_TRY(an_head_number(reader->layout, cells[0], n_cells > 1 ? cells[1] : none,
+                          n_cells > 2 ? cells[2] : none, value->unit, an_role_unit(value->role), &si, err));
     an_burst_facts_set(&reader->rows.facts, value->role, si);
     return AN_OK;
 }
 
 static bool is_mark_of_nothing(const text_reader *reader, an_cell cell)
 {
-    static const char *const always[] = {"nan", "-nan", "+nan", "inf", "-inf", "+inf", "infinity", "1.#qnan", "1.#inf"};
+    static const char *const always[] = {"nan",  "-nan",     "+nan",    "inf",   "-inf",
+                                         "+inf", "infinity", "1.#qnan", "1.#inf"};
     if (cell.n == 0 || an_names_has(&reader->layout->text.missing, cell.text, cell.n))
         return true;
     for (size_t i = 0; i < sizeof always / sizeof *always; i++)
@@ -125,7 +128,8 @@ static bool is_mark_of_nothing(const text_reader *reader, an_cell cell)
     return false;
 }
 
-static an_status refuse_number(const text_reader *reader, const an_channel_in *in, an_cell cell, an_error *err)
+static an_status refuse_number(const text_reader *reader, const an_channel_in *in, an_cell cell,
+                               an_error *err)
 {
     const char *hint = "";
     char other = reader->layout->text.decimal_mark == '.' ? ',' : '.', place[512], step[128] = "";
@@ -138,15 +142,16 @@ static an_status refuse_number(const text_reader *reader, const an_channel_in *i
     else if (reader->rows.facts.step)
         snprintf(step, sizeof step, "step %ld: ", reader->rows.facts.step);
     return an_fail(err, AN_E_VALUE, place, "%s%s '%.*s' is not a number (column %d '%s')%s", step,
-                   an_role_name(in->channel->role), cell.n < 60 ? (int)cell.n : 60, cell.text, in->position + 1,
-                   an_header_name(&reader->header, in->position), hint);
+                   an_role_name(in->channel->role), cell.n < 60 ? (int)cell.n : 60, cell.text,
+                   in->position + 1, an_header_name(&reader->header, in->position), hint);
 }
 
 static an_status add_cell(text_reader *reader, an_channel_in *in, an_cell cell, an_error *err)
 {
     an_column *column = &in->column;
     double value, *wanted = reader->overrange < 1e18 ? &value : NULL;
-    an_status status = an_column_add_text(column, cell.text, cell.n, reader->layout->text.decimal_mark, wanted, err);
+    an_status status =
+        an_column_add_text(column, cell.text, cell.n, reader->layout->text.decimal_mark, wanted, err);
     if (status == AN_E_VALUE)
         return is_mark_of_nothing(reader, cell) ? an_rows_mark_missing(&reader->rows, in, err)
                                                 : refuse_number(reader, in, cell, err);
@@ -188,8 +193,8 @@ static an_status look_for_step(text_reader *reader, const an_cell *cells, an_err
     return AN_OK;
 }
 
-/* Is a row that nothing ends, at the end of the file, whole? Its last number has as many digits behind the mark, or, where
- * there is none, as many in all, as the one above it. */
+/* Is a row that nothing ends, at the end of the file, whole? Its last number has as many digits behind the
+ * mark, or, where there is none, as many in all, as the one above it. */
 static bool is_cut(const text_reader *reader, an_cell last)
 {
     char mark = reader->layout->text.decimal_mark;
@@ -201,7 +206,8 @@ static bool is_cut(const text_reader *reader, an_cell last)
     return !here || last.n - (size_t)(here - last.text) < decimals_before;
 }
 
-static an_status read_row(text_reader *reader, const an_line *line, const an_cell *cells, int n_cells, an_error *err)
+static an_status read_row(text_reader *reader, const an_line *line, const an_cell *cells, int n_cells,
+                          an_error *err)
 {
     const an_header *header = &reader->header;
     bool spare = n_cells == header->n + 1 && cells[header->n].n == 0; /* a separator behind the last field */
@@ -210,7 +216,8 @@ static an_status read_row(text_reader *reader, const an_line *line, const an_cel
         return AN_OK;
     }
     if (n_cells != header->n && !spare)
-        return an_fail(err, AN_E_FORMAT, NULL, "%d fields where the header row names %d columns", n_cells, header->n);
+        return an_fail(err, AN_E_FORMAT, NULL, "%d fields where the header row names %d columns", n_cells,
+                       header->n);
     AN_TRY(hand_head(reader, err));
     if (reader->layout->bursts_from == AN_BURSTS_STEP)
         AN_TRY(look_for_step(reader, cells, err));
@@ -233,8 +240,8 @@ static an_status read_header(text_reader *reader, const an_cell *cells, int n_ce
 }
 
 /* The row below the header: units, or already samples. */
-static an_status read_below_header(text_reader *reader, const an_line *line, const an_cell *cells, int n_cells,
-                                   an_error *err)
+static an_status read_below_header(text_reader *reader, const an_line *line, const an_cell *cells,
+                                   int n_cells, an_error *err)
 {
     an_unit_row_rule rule = reader->layout->text.unit_row;
     bool units = rule == AN_UNIT_ROW_YES ||
@@ -250,8 +257,9 @@ static an_status read_in_head(text_reader *reader, const an_line *line, const an
     if (!reader->layout->text.header) {
         double number;
         const an_layout_channel *first = &reader->layout->channels[0];
-        if (n_cells < first->position || !an_number_parse(cells[first->position - 1].text, cells[first->position - 1].n,
-                                                          reader->layout->text.decimal_mark, &number))
+        if (n_cells < first->position ||
+            !an_number_parse(cells[first->position - 1].text, cells[first->position - 1].n,
+                             reader->layout->text.decimal_mark, &number))
             return an_head_add_line(&reader->head, line->text, line->n, line->number, false, err);
         AN_TRY(an_header_without(&reader->header, n_cells, err));
         AN_TRY(an_header_bind(&reader->header, NULL, 0, &reader->rows, err));
@@ -291,7 +299,8 @@ static an_status read_content(text_reader *reader, const an_line *line, an_error
     default:
         break;
     }
-    bool repeated = cells[0].n && (cells[0].text[0] & 0x80 || strchr("+-.,0123456789", cells[0].text[0]) == NULL) &&
+    bool repeated = cells[0].n &&
+                    (cells[0].text[0] & 0x80 || strchr("+-.,0123456789", cells[0].text[0]) == NULL) &&
                     form->header && an_header_is(&reader->header, cells, n_cells);
     return repeated ? read_header(reader, cells, n_cells, err) : read_row(reader, line, cells, n_cells, err);
 }
@@ -342,10 +351,11 @@ static an_status end_dump(text_reader *reader, an_error *err)
         return an_fail(err, AN_E_FORMAT, reader->source->path, "no row of samples");
     if (!cut)
         return AN_OK;
-    return an_remark_list_add(rows->remarks, "truncated", 0, err,
-                              "the dump ends %s at line %ld, %zu samples into burst %d; %d bursts are complete",
-                              reader->cut ? "within a row" : "too early", reader->line, n,
-                              n ? rows->n_burst : rows->n_burst + 1, rows->n_complete);
+    return an_remark_list_add(
+        rows->remarks, "truncated", 0, err,
+        "the dump ends %s at line %ld, %zu samples into burst %d; %d bursts are complete",
+        reader->cut ? "within a row" : "too early", reader->line, n, n ? rows->n_burst : rows->n_burst + 1,
+        rows->n_complete);
 }
 
 static an_status read_all(text_reader *reader, an_error *err)
@@ -359,8 +369,8 @@ static an_status read_all(text_reader *reader, an_error *err)
     }
 }
 
-an_status an_text_dump_read(const an_dump_source *source, const an_dump_visitor *visitor, an_remark_list *remarks,
-                            an_error *err)
+an_status an_text_dump_read(const an_dump_source *source, const an_dump_visitor *visitor,
+                            an_remark_list *remarks, an_error *err)
 {
     text_reader *reader = calloc(1, sizeof *reader);
     if (!reader)
@@ -368,14 +378,16 @@ an_status an_text_dump_read(const an_dump_source *source, const an_dump_visitor 
     reader->source = source;
     reader->layout = source->layout;
     reader->header.layout = source->layout;
-    reader->overrange = isnan(source->layout->text.overrange) ? overrange_default : source->layout->text.overrange;
+    reader->overrange =
+        isnan(source->layout->text.overrange) ? overrange_default : source->layout->text.overrange;
     an_head_init(&reader->head, source->layout);
     an_rows_init(&reader->rows, source, visitor, remarks);
     an_status status = an_lines_open(source->path, source->layout->text.encoding, &reader->lines, err);
     if (status >= 0)
         status = read_all(reader, err);
     if (status >= 0 && an_lines_mark(reader->lines))
-        status = an_remark_list_add(remarks, "encoding-decoded", 0, err, "decoded as %s, as the mark at its beginning says",
+        status = an_remark_list_add(remarks, "encoding-decoded", 0, err,
+                                    "decoded as %s, as the mark at its beginning says",
                                     an_lines_mark(reader->lines));
     an_lines_free(&reader->lines);
     an_rows_release(&reader->rows);

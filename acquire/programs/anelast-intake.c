@@ -5,21 +5,27 @@
 static const an_option options[] = {
     {"layout", 'l', "FILE", NULL, NULL, NULL, "How the dump is laid out; needed"},
     {"specimen", 's', "FILE", NULL, NULL, "what the dump says", "What was tested, and its geometry"},
-    {"apparatus", 'a', "FILE", NULL, NULL, "an ideal bench", "What stands between the specimen and the numbers"},
-    {"sidecar", 0, "FILE", NULL, NULL, "the dump's name with the layout's extension", "The text beside a binary dump"},
+    {"apparatus", 'a', "FILE", NULL, NULL, "an ideal bench",
+     "What stands between the specimen and the numbers"},
+    {"sidecar", 0, "FILE", NULL, NULL, "the dump's name with the layout's extension",
+     "The text beside a binary dump"},
     {"run-id", 0, "NAME", NULL, "safe as the name of a file", "specimen and start", "Name of the run"},
 };
 
 static const char *const about[] = {
-    "Reads a dump as its layout says, finds its bursts, and writes a run document in which units are known and nothing is "
+    "Reads a dump as its layout says, finds its bursts, and writes a run document in which units are known "
+    "and nothing is "
     "lost: counts stay counts, fixed decimals stay integers with a scale.",
-    "What the dump's own head says about the specimen is merged with the specimen document, which stands above it. Every column "
-    "and key must be mapped or listed as ignored. A dump that is cut off gives its complete bursts, and is held.",
+    "What the dump's own head says about the specimen is merged with the specimen document, which stands "
+    "above it. Every column "
+    "and key must be mapped or listed as ignored. A dump that is cut off gives its complete bursts, and is "
+    "held.",
     NULL,
 };
 
 static const char *const examples[] = {
-    "anelast-intake pad-0412.txt --layout pad-bench.xml --specimen pad-0412.xml --apparatus bench-3.xml -o run.xml",
+    "anelast-intake pad-0412.txt --layout pad-bench.xml --specimen pad-0412.xml --apparatus bench-3.xml -o "
+    "run.xml",
     NULL,
 };
 
@@ -49,7 +55,8 @@ static an_status work(const an_arguments *arguments, an_intake_result *result, a
         .procedure = &arguments->procedure,
     };
     if (!intake.layout)
-        return an_fail(err, AN_E_USAGE, NULL, "--layout is needed: without one nobody knows what the columns mean");
+        return an_fail(err, AN_E_USAGE, NULL,
+                       "--layout is needed: without one nobody knows what the columns mean");
     return an_intake_take(&intake, result, err);
 }
 

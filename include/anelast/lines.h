@@ -1,5 +1,5 @@
-/* anelast/lines.h: a text dump line by line in UTF-8, whatever its encoding, in bounded memory. Undecodable bytes are
- * refused with their line, never replaced.
+/* anelast/lines.h: a text dump line by line in UTF-8, whatever its encoding, in bounded memory. Undecodable
+ * bytes are refused with their line, never replaced.
  */
 #ifndef ANELAST_LINES_H
 #define ANELAST_LINES_H
@@ -29,11 +29,12 @@ typedef struct an_lines an_lines;
 an_status an_lines_open(const char *path, an_encoding encoding, an_lines **lines, an_error *err);
 
 /* an_lines_next: the next line.
- * Returns AN_OK (line->text NULL behind the last), AN_E_FORMAT (bytes that the encoding does not allow, a zero byte),
- * AN_E_LIMIT (a line longer than AN_LINE_MOST), AN_E_IO or AN_E_MEMORY. */
+ * Returns AN_OK (line->text NULL behind the last), AN_E_FORMAT (bytes that the encoding does not allow, a
+ * zero byte), AN_E_LIMIT (a line longer than AN_LINE_MOST), AN_E_IO or AN_E_MEMORY. */
 an_status an_lines_next(an_lines *lines, an_line *line, an_error *err);
 
-/* an_lines_mark: the encoding that a mark at the beginning named ("UTF-16LE"), or NULL where none stood there. */
+/* an_lines_mark: the encoding that a mark at the beginning named ("UTF-16LE"), or NULL where none stood
+ * there. */
 const char *an_lines_mark(const an_lines *lines);
 
 /* an_lines_free: close and release; *lines becomes NULL. */

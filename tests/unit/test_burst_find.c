@@ -1,5 +1,6 @@
-/* Bursts found in continuous records whose bursts are known: pauses, other intervals, times that begin anew, other frequencies and
- * amplitudes at one interval; and none found where there is only one burst: noise, drift, lost samples, jitter. */
+/* Bursts found in continuous records whose bursts are known: pauses, other intervals, times that begin anew,
+ * other frequencies and amplitudes at one interval; and none found where there is only one burst: noise,
+ * drift, lost samples, jitter. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -16,8 +17,8 @@ enum { ROWS = 40000, BOUNDARIES = 64 };
 typedef struct record {
     double time[ROWS], value[ROWS];
     size_t n;
-    double t;                   /* of the next sample */
-    size_t begins[BOUNDARIES];  /* where bursts were found to begin, but the first */
+    double t;                  /* of the next sample */
+    size_t begins[BOUNDARIES]; /* where bursts were found to begin, but the first */
     int n_begin;
 } record;
 
@@ -29,7 +30,8 @@ static double noise(void)
     return sum - 6;
 }
 
-static size_t add_burst(record *made, double frequency, double interval, int n, double amplitude, double sigma)
+static size_t add_burst(record *made, double frequency, double interval, int n, double amplitude,
+                        double sigma)
 {
     size_t first = made->n;
     for (int i = 0; i < n; i++, made->n++) {

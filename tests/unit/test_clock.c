@@ -1,5 +1,5 @@
-/* The clock behind printed times: made by rounding known clocks, found again within half a last digit everywhere; refused
- * where no clock has the times. */
+/* The clock behind printed times: made by rounding known clocks, found again within half a last digit
+ * everywhere; refused where no clock has the times. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -14,13 +14,15 @@
 enum { N = 2048 };
 
 /* Print start + i interval with a format, as dumps do, and read it back. */
-static void print_times(double start, double interval, const char *format, int significant, double *time, double *tolerance)
+static void print_times(double start, double interval, const char *format, int significant, double *time,
+                        double *tolerance)
 {
     for (int i = 0; i < N; i++) {
         char text[64];
         snprintf(text, sizeof text, format, start + i * interval);
         time[i] = strtod(text, NULL);
-        double place = significant ? pow(10, (time[i] > 0 ? floor(log10(time[i])) : 0) + 1 - significant) : 1e-5;
+        double place =
+            significant ? pow(10, (time[i] > 0 ? floor(log10(time[i])) : 0) + 1 - significant) : 1e-5;
         tolerance[i] = 0.5 * place;
     }
 }
@@ -35,7 +37,8 @@ static void check_found(double start, double interval, const char *format, int s
         double model = found_start + i * found_interval;
         assert_close(model, time[i], tolerance[i] * 1.001);
     }
-    /* half a digit over the whole record bounds the error of the interval; the fit must do far better than that */
+    /* half a digit over the whole record bounds the error of the interval; the fit must do far better than
+     * that */
     assert_close(found_interval, interval, 2 * tolerance[N - 1] / (N - 1));
 }
 

@@ -45,7 +45,8 @@ static void decimals_stay_integers(void **state)
     assert_int_equal(signal.coding, AN_CODING_INT32);
     assert_int_equal(((int32_t *)signal.data)[3], -164209);
     an_signal_decode(&signal, si);
-    for (size_t i = 0; i < N; i++) /* two roundings: divisor 1e11 holds exactly, the quotient is rounded once */
+    for (size_t i = 0; i < N;
+         i++) /* two roundings: divisor 1e11 holds exactly, the quotient is rounded once */
         assert_relative(si[i], strtod(texts[i], NULL) / 1e6, 3e-16);
     an_signal_clear(&signal);
     an_column_release(&column);
@@ -60,8 +61,8 @@ static void small_integers_take_two_bytes(void **state)
     an_column_init(&column, false);
     add(&column, "-30.13");
     add(&column, "327.67");
-    assert_int_equal(an_column_signal(&column, AN_SIGNAL_TEMPERATURE, &(an_conversion){.factor = 1, .divisor = 1}, 1,
-                                      &signal, &err),
+    assert_int_equal(an_column_signal(&column, AN_SIGNAL_TEMPERATURE,
+                                      &(an_conversion){.factor = 1, .divisor = 1}, 1, &signal, &err),
                      AN_OK);
     assert_int_equal(signal.coding, AN_CODING_INT16);
     an_signal_clear(&signal);
@@ -71,7 +72,8 @@ static void small_integers_take_two_bytes(void **state)
 static void exponents_become_doubles(void **state)
 {
     (void)state;
-    static const char *const texts[] = {"0.1", "12.345678", "3.235776273e-05", "-2.5", "1e300", "0.30000000000000004"};
+    static const char *const texts[] = {"0.1",  "12.345678", "3.235776273e-05",
+                                        "-2.5", "1e300",     "0.30000000000000004"};
     enum { N = sizeof texts / sizeof *texts };
     an_column column;
     an_column_init(&column, false);
@@ -118,7 +120,8 @@ static void texts_are_no_numbers(void **state)
     an_error err = {0};
     an_column_init(&column, false);
     for (size_t i = 0; i < sizeof texts / sizeof *texts; i++)
-        assert_int_equal(an_column_add_text(&column, texts[i], strlen(texts[i]), '.', NULL, &err), AN_E_VALUE);
+        assert_int_equal(an_column_add_text(&column, texts[i], strlen(texts[i]), '.', NULL, &err),
+                         AN_E_VALUE);
     assert_int_equal(column.n, 0);
     an_column_release(&column);
 }
@@ -147,9 +150,9 @@ static void tails_and_gaps(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(decimals_stay_integers), cmocka_unit_test(small_integers_take_two_bytes),
+        cmocka_unit_test(decimals_stay_integers),   cmocka_unit_test(small_integers_take_two_bytes),
         cmocka_unit_test(exponents_become_doubles), cmocka_unit_test(every_last_bit),
-        cmocka_unit_test(texts_are_no_numbers), cmocka_unit_test(tails_and_gaps),
+        cmocka_unit_test(texts_are_no_numbers),     cmocka_unit_test(tails_and_gaps),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -10,7 +10,7 @@
 #include "../check.h"
 #include "scratch.h"
 
-#define HEAD "<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n"
+#define HEAD       "<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n"
 #define OPEN(root) HEAD "<" root " xmlns=\"urn:x-anelast:documents:1\" version=\"1.0\""
 
 static void fill_signal(an_signal *signal, an_signal_quantity quantity, size_t n)
@@ -170,7 +170,8 @@ static void run_that_is_not_whole(void **state)
         {"AAAKABQAHgA", "AAAKABQAHwA", AN_E_DOCUMENT, ""},
         {"interval=\"0.25\"", "interval=\"-1\"", AN_E_DOCUMENT, ""},
         {"</run>", "", AN_E_DOCUMENT, ""},
-        {"quantity=\"force\" unit=\"N\"", "quantity=\"displacement\" unit=\"m\"", AN_E_DOCUMENT, "a second signal"},
+        {"quantity=\"force\" unit=\"N\"", "quantity=\"displacement\" unit=\"m\"", AN_E_DOCUMENT,
+         "a second signal"},
     };
     write_run("run.xml");
     char *text = scratch_read("run.xml");
@@ -188,8 +189,9 @@ static void specimen_with_uncertainty_alone(void **state)
     an_error err = {0};
     an_specimen own, written;
     an_remark_list remarks = {0};
-    scratch_write("specimen.xml", OPEN("specimen") " lot=\"L2\"><geometry kind=\"tension\"><length unit=\"mm\" u=\"0.05\"/>"
-                                  "<width value=\"5.1\" unit=\"mm\" u=\"0.02\"/></geometry></specimen>");
+    scratch_write("specimen.xml",
+                  OPEN("specimen") " lot=\"L2\"><geometry kind=\"tension\"><length unit=\"mm\" u=\"0.05\"/>"
+                                   "<width value=\"5.1\" unit=\"mm\" u=\"0.02\"/></geometry></specimen>");
     assert_int_equal(an_specimen_load("specimen.xml", &written, NULL, &err), AN_OK);
     an_specimen_init(&own);
     strcpy(own.id, "RP-1");
@@ -220,11 +222,14 @@ static void compliance_between_rows(void **state)
     double storage, loss, u;
     scratch_write("apparatus.xml",
                   OPEN("apparatus") "><compliance value=\"1e-7\" unit=\"m/N\" u=\"1e-9\" loss_factor=\"0.1\">"
-                                    "<frequency value=\"1\" unit=\"Hz\"/><temperature value=\"300\" unit=\"K\"/></compliance>"
+                                    "<frequency value=\"1\" unit=\"Hz\"/><temperature value=\"300\" "
+                                    "unit=\"K\"/></compliance>"
                                     "<compliance value=\"3e-7\" unit=\"m/N\" u=\"3e-9\">"
-                                    "<frequency value=\"100\" unit=\"Hz\"/><temperature value=\"300\" unit=\"K\"/></compliance>"
+                                    "<frequency value=\"100\" unit=\"Hz\"/><temperature value=\"300\" "
+                                    "unit=\"K\"/></compliance>"
                                     "<compliance value=\"5e-7\" unit=\"m/N\" u=\"5e-9\">"
-                                    "<frequency value=\"1\" unit=\"Hz\"/><temperature value=\"400\" unit=\"K\"/></compliance>"
+                                    "<frequency value=\"1\" unit=\"Hz\"/><temperature value=\"400\" "
+                                    "unit=\"K\"/></compliance>"
                                     "</apparatus>");
     assert_int_equal(an_apparatus_load("apparatus.xml", &apparatus, NULL, &err), AN_OK);
     an_apparatus_compliance(&apparatus, 10, 300, &storage, &loss, &u); /* halfway in log f */
@@ -248,10 +253,8 @@ static void apparatus_refused(void **state)
 {
     (void)state;
     static const char *const parts[] = {
-        "<compliance value=\"-1e-7\" unit=\"m/N\"/>",
-        "<compliance value=\"1e-7\" unit=\"N/m\"/>",
-        "<force><gain value=\"0\"/></force>",
-        "<temperature_bias value=\"0\" unit=\"degC\"/>",
+        "<compliance value=\"-1e-7\" unit=\"m/N\"/>", "<compliance value=\"1e-7\" unit=\"N/m\"/>",
+        "<force><gain value=\"0\"/></force>",         "<temperature_bias value=\"0\" unit=\"degC\"/>",
         "<moving_mass value=\"20\" unit=\"mm\"/>",
     };
     for (size_t i = 0; i < sizeof parts / sizeof *parts; i++) {
@@ -269,7 +272,7 @@ static void apparatus_refused(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(run_there_and_back),   cmocka_unit_test(run_that_is_not_whole),
+        cmocka_unit_test(run_there_and_back),      cmocka_unit_test(run_that_is_not_whole),
         cmocka_unit_test(compliance_between_rows), cmocka_unit_test(specimen_with_uncertainty_alone),
         cmocka_unit_test(apparatus_refused),
     };
