@@ -216,6 +216,7 @@ cleanup:
 an_status an_maxwell_to_retardation(const an_maxwell *model, an_retardation *spectrum, an_error *err)
 {
     secular form;
+    an_retardation_clear(spectrum);
     AN_TRY(an_maxwell_check(model, err));
     AN_TRY(secular_alloc(&form, model->n_mode, err));
     for (size_t i = 0; i < model->n_mode; i++) {
@@ -225,10 +226,11 @@ an_status an_maxwell_to_retardation(const an_maxwell *model, an_retardation *spe
         }
     }
     form.constant = model->equilibrium_Pa;
-    an_retardation_clear(spectrum);
     an_status status = form.n > 0 ? retardation_modes(&form, spectrum, err) : AN_OK;
-    spectrum->instantaneous_per_Pa = 1 / an_maxwell_instantaneous(model);
-    spectrum->fluidity_per_Pa_s = 1 / an_maxwell_viscosity(model);
+    if (status >= 0) {
+        spectrum->instantaneous_per_Pa = 1 / an_maxwell_instantaneous(model);
+        spectrum->fluidity_per_Pa_s = 1 / an_maxwell_viscosity(model);
+    }
     secular_clear(&form);
     return status;
 }
@@ -278,6 +280,7 @@ cleanup:
 an_status an_retardation_to_maxwell(const an_retardation *spectrum, an_maxwell *model, an_error *err)
 {
     secular form;
+    an_maxwell_clear(model);
     AN_TRY(check_retardation(spectrum, err));
     AN_TRY(secular_alloc(&form, spectrum->n_mode + 1, err));
     double total = spectrum->instantaneous_per_Pa;
@@ -291,7 +294,8 @@ an_status an_retardation_to_maxwell(const an_retardation *spectrum, an_maxwell *
     }
     form.constant = spectrum->fluidity_per_Pa_s;
     an_status status = relaxation_modes(&form, model, err);
-    model->equilibrium_Pa = form.constant > 0 ? 0 : 1 / total;
+    if (status >= 0)
+        model->equilibrium_Pa = form.constant > 0 ? 0 : 1 / total;
     secular_clear(&form);
     return status;
 }

@@ -31,12 +31,12 @@ void an_retardation_clear(an_retardation *spectrum);
 /* an_maxwell_to_retardation: the retardation spectrum of a Maxwell model, exactly. Modes of zero strength are
  * left out.
  *   model     [in]  must pass an_maxwell_check
- *   spectrum  [out] initialised; as many modes as the model has non-zero ones, one fewer for a liquid
+ *   spectrum  [out] initialised; as many modes as the model has non-zero ones, one fewer for a liquid; empty when refused
  * Returns AN_OK, AN_E_VALUE, AN_E_MEMORY, AN_E_NUMERIC. */
 an_status an_maxwell_to_retardation(const an_maxwell *model, an_retardation *spectrum, an_error *err);
 
 /* an_retardation_to_maxwell: the way back, by the same method. Needs D_g > 0.
- *   model  [out] initialised; as many modes as the spectrum, one more for a liquid
+ *   model  [out] initialised; as many modes as the spectrum, one more for a liquid; empty when refused
  * Returns AN_OK, AN_E_VALUE, AN_E_MEMORY, AN_E_NUMERIC. */
 an_status an_retardation_to_maxwell(const an_retardation *spectrum, an_maxwell *model, an_error *err);
 
