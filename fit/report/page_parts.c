@@ -112,15 +112,14 @@ const char *page_no_material(const an_report *report)
 {
     if (report->has_material)
         return NULL;
-    if (report->missing[AN_REPORT_MATERIAL][0])
-        return report->missing[AN_REPORT_MATERIAL];
-    if (!report->has_master)
-        return "No spectrum was made: the isotherms were not joined to a master curve.";
-    if (report->master.simplicity == AN_COMPLEX)
+    if (report->has_master && report->master.simplicity == AN_COMPLEX)
         return "No spectrum was handed over: the isotherms do not superpose, so that one spectrum with one "
-               "shift would not "
-               "describe this material outside the measured temperatures and frequencies.";
-    return "No material document was given to this page.";
+               "shift "
+               "would not describe this material outside the measured temperatures and frequencies";
+    return page_why(report, AN_REPORT_MATERIAL,
+                    report->has_master
+                        ? "No material document was given to this page"
+                        : "No spectrum was made: the isotherms were not joined to a master curve");
 }
 
 const an_reading *page_reading(const an_grid *grid, an_reading_kind kind)

@@ -171,7 +171,7 @@ void section_spectrum(page *p)
     char label[80] = "";
     fputs("<section>\n<h2>Spectrum</h2>\n", p->out);
     if (!r->has_material)
-        page_absent(p, "No material.", page_no_material(r));
+        page_absent(p, "No material.", page_why(r, AN_REPORT_MATERIAL, page_no_material(r)));
     else
         write_summary(p, &r->material);
     fputs("<div class=\"figures\">\n", p->out);
