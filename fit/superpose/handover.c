@@ -77,12 +77,17 @@ static an_status judge(const an_master *master, const an_procedure *procedure, c
                               "the verdict complex was overridden: %s", material->override_reason);
 }
 
-static an_status copy_remarks(const an_master *master, an_material *material, an_error *err)
+/* What the master noticed. Where the procedure says what the data leave open, the remark says that too. */
+static an_status copy_remarks(const an_master *master, const an_procedure *procedure, an_material *material,
+                              an_error *err)
 {
+    bool said = !an_procedure_is(procedure, "long_term", "auto");
     for (size_t i = 0; i < master->remarks.n; i++) {
         const an_remark *remark = &master->remarks.rows[i];
+        bool answered = said && strcmp(remark->kind->code, "end-undetermined") == 0;
         AN_TRY(an_remark_list_add_as(&material->remarks, remark->kind->code, remark->severity, remark->burst,
-                                     err, "%s", remark->text));
+                                     err, "%s%s%s", remark->text, answered ? "; the procedure says: " : "",
+                                     answered ? an_procedure_word(procedure, "long_term") : ""));
     }
     return AN_OK;
 }
@@ -293,7 +298,7 @@ an_status an_handover_make(const an_master *master, const an_procedure *procedur
     material->is_shear = an_geometry_is_shear(master->specimen.geometry.kind);
     material->reference_temperature_K = master->reference_temperature_K;
     material->strain_limit = master->strain_most;
-    AN_CLEAN(copy_remarks(master, material, err));
+    AN_CLEAN(copy_remarks(master, procedure, material, err));
     AN_CLEAN(judge(master, procedure, override_reason, material, err));
     AN_CLEAN(gather(master, &all, err));
     take_options(master, procedure, &options);

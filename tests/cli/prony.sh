@@ -84,6 +84,15 @@ XML
 expect_code 0 "override by procedure" "$bin/anelast-prony" complex/master.xml --procedure yes.xml
 grep -q 'override="override_complex in procedure yes.xml"' out.txt || fail "the procedure's override is not in the document"
 
+# ---- the long end as the procedure says ----
+cat >liquid.xml <<'XML'
+<?xml version="1.0" encoding="UTF-8"?>
+<procedure xmlns="urn:x-anelast:documents:1" version="1.0"><choice name="long_term" value="liquid"/></procedure>
+XML
+expect_code 0 "liquid" "$bin/anelast-prony" simple/master.xml --procedure liquid.xml --output simple/liquid.xml
+grep -q 'end_state="liquid"' simple/liquid.xml || fail "the procedure's liquid is not one"
+grep -q '<long_term_modulus value="0" unit="Pa"/>' simple/liquid.xml || fail "a liquid with a long-term modulus"
+
 # ---- what cannot be ----
 expect_code 3 "no file" "$bin/anelast-prony" absent.xml --output made.xml
 expect_words "no file" "absent.xml"
