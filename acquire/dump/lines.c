@@ -241,21 +241,27 @@ static an_status read_mark(an_lines *lines, an_error *err)
     return AN_OK;
 }
 
-an_status an_lines_open(const char *path, an_encoding encoding, an_lines **lines, an_error *err)
+/* A reader of a stream, which it closes; a stream that is not there is refused with the reason in errno. */
+static an_status open_stream(FILE *stream, const char *name, an_encoding encoding, an_lines **lines,
+                             an_error *err)
 {
+    int why = errno;
     an_lines *made = calloc(1, sizeof *made);
-    if (!made)
+    if (!made) {
+        if (stream)
+            fclose(stream);
         return an_fail_memory(err, "a reader of lines");
+    }
     made->converter = (iconv_t)-1;
     made->encoding = encoding;
-    made->path = strdup(path);
+    made->path = strdup(name);
     made->raw = malloc(BLOCK);
-    made->stream = fopen(path, "rb");
-    an_status status = AN_OK;
+    made->stream = stream;
+    an_status status;
     if (!made->path || !made->raw)
         status = an_fail_memory(err, "a reader of lines");
-    else if (!made->stream)
-        status = an_fail(err, AN_E_IO, path, "cannot be opened: %s", strerror(errno));
+    else if (!stream)
+        status = an_fail(err, AN_E_IO, name, "cannot be opened: %s", strerror(why));
     else
         status = read_mark(made, err);
     if (status < 0) {
@@ -264,6 +270,18 @@ an_status an_lines_open(const char *path, an_encoding encoding, an_lines **lines
     }
     *lines = made;
     return AN_OK;
+}
+
+an_status an_lines_open(const char *path, an_encoding encoding, an_lines **lines, an_error *err)
+{
+    return open_stream(fopen(path, "rb"), path, encoding, lines, err);
+}
+
+an_status an_lines_open_text(const char *text, size_t n, const char *name, an_lines **lines, an_error *err)
+{
+    if (n == 0)
+        return an_fail(err, AN_E_FORMAT, name, "an empty text");
+    return open_stream(fmemopen((void *)(uintptr_t)text, n, "rb"), name, AN_ENCODING_UTF8, lines, err);
 }
 
 static an_status check_line(const an_lines *lines, const an_line *line, an_error *err)

@@ -382,7 +382,10 @@ an_status an_text_dump_read(const an_dump_source *source, const an_dump_visitor 
         isnan(source->layout->text.overrange) ? overrange_default : source->layout->text.overrange;
     an_head_init(&reader->head, source->layout);
     an_rows_init(&reader->rows, source, visitor, remarks);
-    an_status status = an_lines_open(source->path, source->layout->text.encoding, &reader->lines, err);
+    an_status status =
+        source->excerpt
+            ? an_lines_open_text(source->excerpt, strlen(source->excerpt), source->path, &reader->lines, err)
+            : an_lines_open(source->path, source->layout->text.encoding, &reader->lines, err);
     if (status >= 0)
         status = read_all(reader, err);
     if (status >= 0 && an_lines_mark(reader->lines))

@@ -1,9 +1,13 @@
 /* anelast-intake: a dump, its layout, specimen and apparatus to a run document. */
 #include "acquire/programs/shape.h"
 #include "anelast/intake.h"
+#include "anelast/self_test.h"
+
+#include <stdio.h>
 
 static const an_option options[] = {
     {"layout", 'l', "FILE", NULL, NULL, NULL, "How the dump is laid out; needed"},
+    {"check-layout", 0, "FILE", NULL, NULL, NULL, "Run the self-test of a layout, and end; no dump is read"},
     {"specimen", 's', "FILE", NULL, NULL, "what the dump says", "What was tested, and its geometry"},
     {"apparatus", 'a', "FILE", NULL, NULL, "an ideal bench",
      "What stands between the specimen and the numbers"},
@@ -38,9 +42,22 @@ static const an_program program = {
     .options = options,
     .n_options = sizeof options / sizeof *options,
     .takes = AN_TAKES_OUTPUT | AN_TAKES_PROCEDURE | AN_TAKES_QUIET,
-    .files_least = 1,
+    .files_least = 0,
     .files_most = 1,
 };
+
+static an_status check_layout(const char *path, an_error *err)
+{
+    an_layout layout;
+    an_self_test_result result;
+    an_status status = an_layout_load(path, &layout, err);
+    if (status >= 0)
+        status = an_self_test_run(&layout, path, &result, err);
+    if (status >= 0)
+        printf("%s: %d bursts in the excerpt, %d expectations met\n", path, result.n_burst, result.n_expect);
+    an_layout_clear(&layout);
+    return status;
+}
 
 static an_status work(const an_arguments *arguments, an_intake_result *result, an_error *err)
 {
@@ -54,6 +71,8 @@ static an_status work(const an_arguments *arguments, an_intake_result *result, a
         .output = arguments->output,
         .procedure = &arguments->procedure,
     };
+    if (arguments->n_files == 0)
+        return an_fail(err, AN_E_USAGE, NULL, "no dump is named");
     if (!intake.layout)
         return an_fail(err, AN_E_USAGE, NULL,
                        "--layout is needed: without one nobody knows what the columns mean");
@@ -67,6 +86,9 @@ int main(int argc, char **argv)
     if (!an_program_begin(&program, argc, argv, &arguments))
         return arguments.exit_code;
     an_error err = {0};
+    const char *checked = an_argument(&arguments, "check-layout");
+    if (checked)
+        return check_layout(checked, &err) < 0 ? an_program_refuse(&program, &err) : an_program_end(&program);
     if (work(&arguments, &result, &err) < 0)
         return an_program_refuse(&program, &err);
     if (!arguments.quiet && result.is_held)

@@ -14,6 +14,7 @@
 typedef struct an_dump_source {
     const char *path;    /* of the dump */
     const char *sidecar; /* of the text beside a binary dump; NULL: none, or not needed */
+    const char *excerpt; /* a text that stands in the place of the file, in UTF-8; NULL: the file is read */
     const an_layout *layout;
     double missing_most; /* [1] greatest part of a burst's rows that may lack a value; above it the burst is
                             skipped */

@@ -28,6 +28,12 @@ typedef struct an_lines an_lines;
  * Returns AN_OK, AN_E_IO naming the file, or AN_E_MEMORY. */
 an_status an_lines_open(const char *path, an_encoding encoding, an_lines **lines, an_error *err);
 
+/* an_lines_open_text: the same for a text in memory, in UTF-8.
+ *   text [in] [n], lives until the lines are freed
+ *   name [in] for messages
+ * Returns AN_OK, AN_E_IO or AN_E_MEMORY. */
+an_status an_lines_open_text(const char *text, size_t n, const char *name, an_lines **lines, an_error *err);
+
 /* an_lines_next: the next line.
  * Returns AN_OK (line->text NULL behind the last), AN_E_FORMAT (bytes that the encoding does not allow, a
  * zero byte), AN_E_LIMIT (a line longer than AN_LINE_MOST), AN_E_IO or AN_E_MEMORY. */

@@ -86,9 +86,11 @@ same order.csv 's/<\/channels>/<ignored><column>Mark<\/column><\/ignored><\/chan
 # columns by position, without a header row
 sed '12,13d' plain.csv >headless.csv
 position() {
-    sed -e 's/decimal_mark="."/decimal_mark="." header="no"/' -e 's/role="step"/& position="1"/; s/role="time"/& position="2"/' \
-        -e 's/role="displacement"/& position="3"/; s/role="force"/& position="4"/; s/role="temperature"/& position="5"/' \
-        -e 's/role="set_frequency"/& position="6"/' -e 's/<column>[^<]*<\/column>//' "$pads/layout.xml" >layout.xml
+    sed -e 's/decimal_mark="."/decimal_mark="." header="no"/' -e 's/<column>[^<]*<\/column>//' \
+        -e 's/channel role="step"/& position="1"/; s/channel role="time"/& position="2"/' \
+        -e 's/channel role="displacement"/& position="3"/; s/channel role="force"/& position="4"/' \
+        -e 's/channel role="temperature"/& position="5"/; s/channel role="set_frequency"/& position="6"/' \
+        "$pads/layout.xml" >layout.xml
 }
 position
 take headless.csv layout.xml || fail "headless.csv: $(cat err.txt)"
