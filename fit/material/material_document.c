@@ -102,6 +102,8 @@ void an_material_write(an_xml_writer *writer, const an_material *material)
     an_remark_list_write(writer, &material->remarks, -1);
     write_spectrum(writer, material);
     an_law_write(writer, &material->law);
+    if (material->u_temperature_bias_K > 0)
+        put_number(writer, "temperature_uncertainty", material->u_temperature_bias_K, "K");
     write_scaling(writer, material);
     write_valid(writer, material);
     an_xml_start(writer, "superposition");
@@ -234,6 +236,7 @@ static an_status read_valid(const an_xml_node *node, an_material *material, an_e
 static an_status read_root(const an_xml_node *root, an_material *material, an_error *err)
 {
     const an_xml_node *child;
+    an_measure bias;
     int i_word;
     AN_TRY(read_text(root, "id", material->id, sizeof material->id, err));
     if (an_xml_child(root, "made"))
@@ -244,6 +247,8 @@ static an_status read_root(const an_xml_node *root, an_material *material, an_er
     AN_TRY(an_xml_need(root, "spectrum", &child, err));
     AN_TRY(read_spectrum(child, material, err));
     AN_TRY(an_law_read(an_xml_child(root, "law"), &material->law, err));
+    AN_TRY(an_xml_measure_optional(root, "temperature_uncertainty", "K", &bias, err));
+    material->u_temperature_bias_K = isnan(bias.value) ? 0 : bias.value;
     AN_TRY(an_xml_need(root, "elastic_scaling", &child, err));
     AN_TRY(read_scaling(child, material, err));
     AN_TRY(an_xml_need(root, "valid", &child, err));

@@ -298,6 +298,7 @@ an_status an_handover_make(const an_master *master, const an_procedure *procedur
     material->is_shear = an_geometry_is_shear(master->specimen.geometry.kind);
     material->reference_temperature_K = master->reference_temperature_K;
     material->strain_limit = master->strain_most;
+    material->u_temperature_bias_K = master->u_temperature_bias_K;
     AN_CLEAN(copy_remarks(master, procedure, material, err));
     AN_CLEAN(judge(master, procedure, override_reason, material, err));
     AN_CLEAN(gather(master, &all, err));

@@ -256,6 +256,7 @@ static an_status carry_head(const an_grid *grid, an_master *master, an_error *er
     master->specimen = grid->specimen;
     master->assessment = grid->assessment;
     master->strain_most = grid->strain_most;
+    master->u_temperature_bias_K = fmax(grid->apparatus.temperature_bias.u, 0); /* NAN: none stated */
     for (size_t i = 0; i < grid->remarks.n; i++) {
         const an_remark *remark = &grid->remarks.rows[i];
         AN_TRY(an_remark_list_add_as(&master->remarks, remark->kind->code, remark->severity, remark->burst, err, "%s",

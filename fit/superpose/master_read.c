@@ -237,7 +237,7 @@ static an_status read_spectrum(const an_xml_node *node, an_master *master, an_er
 static an_status read_root(const an_xml_node *root, an_master *master, an_error *err)
 {
     const an_xml_node *child;
-    an_measure strain;
+    an_measure strain, bias;
     AN_TRY(copy_text(root, "id", master->id, sizeof master->id, err));
     AN_TRY(an_made_read(root, &master->made, err));
     AN_TRY(an_xml_need(root, "specimen", &child, err));
@@ -246,6 +246,8 @@ static an_status read_root(const an_xml_node *root, an_master *master, an_error 
     AN_TRY(an_assessment_read(root, &master->assessment, err));
     AN_TRY(an_xml_measure_optional(root, "strain_most", "1", &strain, err));
     master->strain_most = strain.value;
+    AN_TRY(an_xml_measure_optional(root, "temperature_uncertainty", "K", &bias, err));
+    master->u_temperature_bias_K = isnan(bias.value) ? 0 : bias.value;
     AN_TRY(an_xml_need(root, "superposition", &child, err));
     AN_TRY(read_verdict(child, master, err));
     AN_TRY(an_xml_need(root, "shifts", &child, err));

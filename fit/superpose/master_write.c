@@ -146,6 +146,8 @@ void an_master_write(an_xml_writer *writer, const an_master *master)
     an_remark_list_write(writer, &master->remarks, -1);
     an_assessment_write(writer, &master->assessment);
     put_number(writer, "strain_most", master->strain_most, "1");
+    if (master->u_temperature_bias_K > 0)
+        put_number(writer, "temperature_uncertainty", master->u_temperature_bias_K, "K");
     put_verdict(writer, master);
     put_shifts(writer, master);
     put_trials(writer, master);

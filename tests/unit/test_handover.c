@@ -108,6 +108,7 @@ static void make_master(const an_maxwell *truth, an_master *master)
     assert_int_equal(an_maxwell_copy(&master->spectrum, truth, NULL), AN_OK);
     master->end_state = truth->equilibrium_Pa > 0 ? AN_SOLID : AN_LIQUID;
     master->strain_most = 0.0021;
+    master->u_temperature_bias_K = 0.3;
     master->window_s[0] = 1e-6;
     master->window_s[1] = 1e3;
     strcpy(master->simplicity_reason, "reduced chi-square 470, isotherms 9 degrees apart");
@@ -148,6 +149,7 @@ static void a_solid_is_handed_over(void **state)
     assert_true(material.modes.n_mode < N_TRUTH / 2);
     assert_relative(material.u_common_relative, 0.01, 1e-6);
     assert_close(material.strain_limit, 0.0021, 0);
+    assert_close(material.u_temperature_bias_K, 0.3, 0);
     assert_true(material.fit_error < 0.006);
     assert_int_equal(material.law.kind, AN_LAW_WLF);
     assert_close(material.window_temperature_K[1], 326.15, 1e-9);
@@ -258,6 +260,7 @@ static void same_master(const an_master *a, const an_master *b)
     assert_string_equal(a->simplicity_reason, b->simplicity_reason);
     assert_int_equal(a->simplicity, b->simplicity);
     assert_close(a->strain_most, b->strain_most, 0);
+    assert_close(a->u_temperature_bias_K, b->u_temperature_bias_K, 0);
     assert_int_equal(a->spectrum.n_mode, b->spectrum.n_mode);
     assert_memory_equal(a->spectrum.modulus_Pa, b->spectrum.modulus_Pa, a->spectrum.n_mode * sizeof(double));
 }

@@ -52,6 +52,7 @@ static void fill_rest(an_material *material)
     material->fit_error = 0.004;
     material->fit_error_worst = 0.009;
     material->u_common_relative = 0.012;
+    material->u_temperature_bias_K = 0.3;
     strcpy(material->end_state, "solid");
     strcpy(material->vertical, "free");
     strcpy(material->simplicity, "simple");
@@ -125,6 +126,7 @@ static void it_comes_back_without_loss(void **state)
     assert_close(again.law.valid_to_K, 313.2, 0);
     assert_close(again.window_time_s[1], 1.0 / 3, 0);
     assert_close(again.u_common_relative, 0.012, 0);
+    assert_close(again.u_temperature_bias_K, 0.3, 0);
     assert_true(isnan(again.strain_limit));
     assert_int_equal(again.n_scaling, 2);
     assert_close(again.scaling_log10_bT[1], -0.013, 0);
