@@ -11,6 +11,8 @@ import re
 import sys
 from decimal import Decimal
 
+KINDS = {"tension": "tension", "three-point bending": "bending, three-point", "single cantilever": "cantilever, guided end",
+         "dual cantilever": "cantilever, dual"}
 PER_SI = {"mm": 1000, "m": 1, "g": 1000, "kg": 1, "us": 1000000, "s": 1, "m/N": 1}
 
 
@@ -54,6 +56,8 @@ def fit(text, truth):
         if key in meta:
             text = re.sub(rf'(<specimen [^>]*\b{attribute}=")[^"]*(")', lambda found: found.group(1) + meta[key] + found.group(2),
                           text, count=1)
+    if meta.get("geometry") in KINDS:
+        text = re.sub(r'(<geometry kind=")[^"]*(")', lambda found: found.group(1) + KINDS[meta["geometry"]] + found.group(2), text)
     return text
 
 

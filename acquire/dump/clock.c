@@ -14,6 +14,9 @@ enum { HALVINGS = 64 };
 /* Part of the tightest band that rounding errors of the arithmetic here may take. */
 static const double slack = 1e-4;
 
+/* Part of the tightest band by which the line's end may still move when the search ends; below the slack. */
+static const double settled = 1e-5;
+
 /* The intercepts that a slope allows. */
 typedef struct allowed {
     double least, most; /* [time] */
@@ -52,7 +55,7 @@ bool an_clock_fit(const double *time, const double *tolerance, const size_t *ind
     double across = (tolerance[0] + tolerance[n - 1]) / steps, middle = (time[n - 1] - time[0]) / steps;
     double low = middle - across, high = middle + across;
     allowed best = look(time, tolerance, index, n, middle);
-    for (int i = 0; i < HALVINGS && best.leaning != 0; i++) {
+    for (int i = 0; i < HALVINGS && best.leaning != 0 && (high - low) * steps > settled * tightest; i++) {
         *(best.leaning > 0 ? &low : &high) = middle;
         middle = 0.5 * (low + high);
         best = look(time, tolerance, index, n, middle);

@@ -104,6 +104,71 @@ content out.xml >found.txt
 content out.xml | sed '/<set_frequency/d' | cmp -s - <(sed '/<set_frequency/d; s/ step="[0-9]*"//' plain.txt) ||
     fail "continuous.csv: other bursts: $(diff <(sed '/<set_frequency/d; s/ step="[0-9]*"//' plain.txt) found.txt | cut -c1-200 | head -4)"
 
+# a small header before each burst; values with their units in the dump, or in the layout
+awk -F, -v OFS=, 'NR < 12 { print; next } NR == 12 || NR == 13 { next }
+    $1 != step { step = $1; print ""; print "<<" step ">>"; print "drive", $6 * 1000, "mHz"; print "rows", 128
+                 print "Time,Position,Load,Oven"; print "s,um,N,degC" }
+    { print $2, $3, $4, $5 }' plain.csv >blocks.csv
+sed -e '/role="step"/d; /role="set_frequency"/d; /<self_test/,/<\/self_test>/d' \
+    -e 's|<bursts from="step"/>|<bursts from="blocks" mark="\&lt;\&lt;{n}>>"><value role="set_frequency"><key>drive</key></value><value role="samples"><key>rows</key></value></bursts>|' \
+    "$pads/layout.xml" >layout.xml
+take blocks.csv layout.xml || fail "blocks.csv: $(cat err.txt)"
+content out.xml | cmp -s - plain.txt || fail "blocks.csv: $(content out.xml | diff - plain.txt | cut -c1-200 | head -4)"
+sed '400d' blocks.csv >fewer.csv
+take fewer.csv layout.xml || fail "fewer.csv: $(cat err.txt)"
+grep -q '128 samples declared, 127 found' out.xml || fail "fewer.csv: the lost sample is not remarked upon"
+head -n 700 blocks.csv >ends.csv
+take ends.csv layout.xml || fail "ends.csv: $(cat err.txt)"
+grep -q 'code="truncated" severity="hold"' out.xml || fail "ends.csv: not held"
+
+# binary dumps: every type, byte order and arrangement gives the counts back
+laminates=$ANELAST_SOURCE/fixtures/lower_quay/hull_laminate
+take_counts() {
+    "$ANELAST_BIN/anelast-intake" "$1" -l "$2" -s "$laminates/specimen.xml" -a "$laminates/apparatus.xml" \
+        --sidecar "$3" -o out.xml 2>err.txt || fail "$1: $(cat err.txt)"
+}
+take_counts "$laminates/HL-0140.bin" "$laminates/layout.xml" "$laminates/HL-0140.txt"
+content out.xml >counts.txt
+for form in int24:little:interleaved int32:big:interleaved int32:little:planar int16:little:interleaved \
+    float32:little:planar float64:big:interleaved; do
+    IFS=: read -r type order arrangement <<<"$form"
+    python3 - "$laminates/HL-0140.bin" "$type" "$order" "$arrangement" >dump.bin <<'X'
+import struct
+import sys
+counts = struct.iter_unpack(">h", open(sys.argv[1], "rb").read())
+counts = [value for (value,) in counts]
+n = len(counts) // 3
+if sys.argv[4] == "interleaved":
+    counts = [counts[k * n + i] for i in range(n) for k in range(3)]
+mark = "<" if sys.argv[3] == "little" else ">"
+code = {"int16": "h", "int32": "i", "float32": "f", "float64": "d"}.get(sys.argv[2])
+sys.stdout.buffer.write(b"header of 17 byte")
+for value in counts:
+    sys.stdout.buffer.write(struct.pack(mark + code, value) if code else value.to_bytes(3, sys.argv[3], signed=True))
+X
+    sed "s/type=int16 order=big layout=planar/type=$type order=$order layout=$arrangement/" "$laminates/HL-0140.txt" >dump.txt
+    sed "s/type=\"int16\" byte_order=\"big\" arrangement=\"planar\"/type=\"$type\" byte_order=\"$order\" arrangement=\"$arrangement\" offset=\"17\"/" \
+        "$laminates/layout.xml" >layout.xml
+    take_counts dump.bin layout.xml dump.txt
+    content out.xml >got.txt
+    if [ "${type#float}" = "$type" ]; then
+        cmp -s got.txt counts.txt || fail "$form: other content"
+    else
+        python3 - got.txt counts.txt <<'X' || fail "$form: other values"
+import base64
+import re
+import struct
+import sys
+def values(path):
+    for coding, part in re.findall(r'coding="(\w+)".*?<part sha256="\w+">([^<]*)<', open(path, encoding="utf-8").read(), re.S):
+        raw = base64.b64decode(part)
+        yield [v for (v,) in struct.iter_unpack({"int16": "<h", "float64": "<d"}[coding], raw)]
+got, expected = list(values(sys.argv[1])), list(values(sys.argv[2]))
+sys.exit(0 if got == expected and len(got) == 165 else 1)
+X
+    fi
+done
+
 # what the instrument has corrected is not corrected again
 sed 's/corrections compliance="no"/corrections compliance="yes"/' "$pads/layout.xml" >layout.xml
 take plain.csv layout.xml || fail "corrected: $(cat err.txt)"
