@@ -6,24 +6,30 @@
 #include <math.h>
 #include <string.h>
 
+/* Four doubles at any address. The compiler maps them on what the machine has; the order of the sums is the same on all. */
+typedef double lanes __attribute__((vector_size(32), aligned(8), may_alias));
+
 double an_dot(const double *x, const double *y, size_t n)
 {
-    double s0 = 0, s1 = 0, s2 = 0, s3 = 0;
+    lanes even = {0}, odd = {0};
     size_t i = 0;
-    for (; i + 4 <= n; i += 4) {
-        s0 += x[i] * y[i];
-        s1 += x[i + 1] * y[i + 1];
-        s2 += x[i + 2] * y[i + 2];
-        s3 += x[i + 3] * y[i + 3];
+    for (; i + 8 <= n; i += 8) {
+        even += *(const lanes *)(x + i) * *(const lanes *)(y + i);
+        odd += *(const lanes *)(x + i + 4) * *(const lanes *)(y + i + 4);
     }
+    even += odd;
+    double sum = (even[0] + even[1]) + (even[2] + even[3]);
     for (; i < n; i++)
-        s0 += x[i] * y[i];
-    return (s0 + s1) + (s2 + s3);
+        sum += x[i] * y[i];
+    return sum;
 }
 
 void an_axpy(double factor, const double *x, double *y, size_t n)
 {
-    for (size_t i = 0; i < n; i++)
+    size_t i = 0;
+    for (; i + 4 <= n; i += 4)
+        *(lanes *)(y + i) += factor * *(const lanes *)(x + i);
+    for (; i < n; i++)
         y[i] += factor * x[i];
 }
 

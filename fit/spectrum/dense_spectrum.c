@@ -58,29 +58,36 @@ static an_status check_observation(const an_observation *o, size_t i, an_error *
     return AN_OK;
 }
 
-an_status an_observation_rows(const an_observation *observation, size_t n_observation, const an_maxwell *times,
-                              int equilibrium, an_columns *rows, an_error *err)
+/* Fill the i-th row of all columns from the response row of its observation. */
+static void whiten_row(const an_observation *o, size_t i, const double *row, an_columns *rows)
 {
-    size_t n_mode = times->n_mode, n = n_mode + (equilibrium ? 1 : 0);
+    double r = o->correlation, scale = 1 / (o->u * sqrt(1 - r * r));
+    /* Pairs: the first of two correlated rows keeps its own scale, the second has the first's share taken out. */
+    double before = r / sqrt(1 - r * r);
+    size_t n = rows->n_column - 1;
+    for (size_t j = 0; j <= n; j++) {
+        double *cell = an_column(rows, j) + i;
+        *cell = (j < n ? row[j] : o->value) * scale;
+        if (i > 0)
+            *cell -= before * cell[-1];
+    }
+}
+
+an_status an_observation_rows(const an_observation_set *set, an_columns *rows, an_error *err)
+{
+    size_t n_mode = set->times->n_mode;
     double *row = calloc(n_mode + 1, sizeof *row);
     if (!row)
         return an_fail_memory(err, "a row of observations");
-    rows->n_row = n_observation;
-    rows->n_column = n + 1;
+    rows->n_row = set->n;
+    rows->n_column = n_mode + 1 + (set->equilibrium ? 1 : 0);
     an_status status = AN_OK;
-    for (size_t i = 0; i < n_observation && status == AN_OK; i++) {
-        const an_observation *o = &observation[i];
-        status = check_observation(o, i, err);
+    for (size_t i = 0; i < set->n && status == AN_OK; i++) {
+        status = check_observation(&set->observation[i], i, err);
         if (status < 0)
             break;
-        an_response_row(o, times->time_s, n_mode, row, NULL);
-        double r = o->correlation, scale = 1 / (o->u * sqrt(1 - r * r));
-        /* Pairs: the first of two correlated rows keeps its own scale, the second has the first's share taken out. */
-        double before = i > 0 && r != 0 ? r / sqrt(1 - r * r) : 0;
-        for (size_t j = 0; j <= n; j++) {
-            double *cell = an_column(rows, j) + i;
-            *cell = (j < n ? row[j] : o->value) * scale - (before != 0 ? before * cell[-1] : 0);
-        }
+        an_response_row(&set->observation[i], set->times->time_s, n_mode, row, NULL);
+        whiten_row(&set->observation[i], i, row, rows);
     }
     free(row);
     return status;
@@ -132,7 +139,7 @@ static an_status solve(an_smooth *smooth, an_strength_rule rule, double per_deca
 {
     enum { turns = 3 };
     size_t n_mode = rows->n_column - 1 - (equilibrium ? 1 : 0);
-    double strength, modulus = modulus_of(rows, n_mode);
+    double strength = 0, modulus = modulus_of(rows, n_mode);
     an_smooth_load(smooth, rows, n_mode, equilibrium);
     an_smooth_flat(smooth, modulus / (double)n_mode);
     for (int turn = 0; turn < turns; turn++) {
@@ -173,7 +180,8 @@ typedef struct job {
 
 static an_status solve_with(job *j, an_spectrum *spectrum, int equilibrium, an_error *err)
 {
-    AN_TRY(an_observation_rows(j->observation, j->n_observation, &spectrum->model, equilibrium, &j->rows, err));
+    an_observation_set set = {j->observation, j->n_observation, &spectrum->model, equilibrium};
+    AN_TRY(an_observation_rows(&set, &j->rows, err));
     an_status status = solve(&j->smooth, j->options->rule, spectrum->modes_per_decade, &j->rows, equilibrium);
     if (status < 0)
         return an_fail(err, status, NULL, "the spectrum did not settle");
@@ -205,7 +213,7 @@ static an_status decide_end(job *j, an_spectrum *spectrum, an_error *err)
 
 static void cross_check(an_smooth *smooth, an_spectrum *spectrum)
 {
-    double strength;
+    double strength = 0;
     if (an_smooth_choose(smooth, AN_STRENGTH_CROSS_VALIDATION, 0, &strength) < 0)
         strength = NAN;
     spectrum->strength_cross = strength;

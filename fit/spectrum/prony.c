@@ -280,12 +280,13 @@ an_status an_prony_fit(const an_maxwell *dense, const double omega_range[2], con
 an_status an_prony_uncertainty(const an_observation *observation, size_t n_observation, an_prony *prony, an_error *err)
 {
     size_t n_mode = prony->model.n_mode, n = n_mode + (prony->model.equilibrium_Pa > 0 ? 1 : 0);
+    an_observation_set set = {observation, n_observation, &prony->model, n > n_mode};
     an_columns rows = {.stride = n_observation};
     rows.value = calloc(n_observation * (n + 1), sizeof *rows.value);
     double *u = calloc(n_mode + 1, sizeof *u), *x = calloc(n, sizeof *x);
     an_status status = rows.value && u && x ? AN_OK : an_fail_memory(err, "the uncertainty of the modes");
     if (status == AN_OK)
-        status = an_observation_rows(observation, n_observation, &prony->model, n > n_mode, &rows, err);
+        status = an_observation_rows(&set, &rows, err);
     if (status == AN_OK) {
         an_householder_reduce(&rows, n);
         for (size_t j = 0; j < n; j++) { /* var x_j = |R^-T e_j|^2 */

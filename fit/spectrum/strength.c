@@ -67,9 +67,14 @@ an_status an_smooth_choose(an_smooth *smooth, an_strength_rule rule, size_t n_ou
 {
     if (rule == AN_STRENGTH_DISCREPANCY)
         return choose_discrepancy(smooth, n_outer, strength);
+    int first = 0, last = per_decade * decades, best = 0;
+    if (*strength > 0) {
+        int near = (int)lround(log10(*strength / weakest) * per_decade);
+        first = near - per_decade > first ? near - per_decade : first;
+        last = near + per_decade < last ? near + per_decade : last;
+    }
     double least = INFINITY;
-    int best = 0;
-    for (int i = per_decade * decades; i >= 0; i -= per_decade / 2) {
+    for (int i = last; i >= first; i -= per_decade / 2) {
         AN_TRY(an_smooth_solve(smooth, strength_at(i)));
         double figure = figure_of(smooth, rule);
         if (figure < least) {

@@ -121,7 +121,8 @@ static an_status find_covariance(const curve *all, an_material *material, an_err
     double *information = pool + n_row * (n + 1);
     double *inverse = information + n * n;
     double *work = inverse + n * n;
-    AN_CLEAN(an_observation_rows(all->observation, all->n, &material->modes, solid, &rows, err));
+    an_observation_set set = {all->observation, all->n, &material->modes, solid};
+    AN_CLEAN(an_observation_rows(&set, &rows, err));
     for (size_t i = 0; i < n; i++)
         for (size_t j = 0; j < n; j++)
             information[i * n + j] = an_dot(an_column(&rows, i), an_column(&rows, j), n_row);

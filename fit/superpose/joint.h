@@ -70,8 +70,8 @@ void an_joint_load(an_joint *joint, const an_joint_state *state);
 /* Whitened model and slope of `now`; call after its rows were built. */
 void an_joint_model(an_joint *joint);
 
-/* Iterate to the end at the strengths that `rule` chooses. */
-an_status an_joint_fit(an_joint *joint, an_strength_rule rule, an_error *err);
+/* Iterate to the end at the strengths that `rule` chooses. coarse: a finished fit on a coarser grid to begin with, or NULL. */
+an_status an_joint_fit(an_joint *joint, an_strength_rule rule, const an_joint *coarse, an_error *err);
 
 /* Covariances of the shifts of `now` into the result; also determined flags. */
 an_status an_joint_covariance(an_joint *joint, const an_superpose_options *options, an_superposition *result, an_error *err);

@@ -9,7 +9,7 @@
 
 static const double ln10 = 2.302585092994046;
 
-enum { rounds = 4, most_iterations = 60, most_trials = 8 };
+enum { rounds_from_flat = 4, rounds_from_coarse = 2, most_iterations = 60, most_trials = 8 };
 
 static void swap_states(an_joint *joint)
 {
@@ -131,8 +131,9 @@ static an_status improve(an_joint *joint, double *damping, double *gain)
     return AN_OK;
 }
 
-/* To the bottom at a fixed strength. The rows and the small problem are those of `now` in the end. */
-static an_status descend(an_joint *joint, an_error *err)
+/* To the bottom at a fixed strength, until a step gains less than `enough`. The rows and the small problem are those of `now`
+ * in the end. */
+static an_status descend(an_joint *joint, double enough, an_error *err)
 {
     double damping = 1e-3, gain = 0;
     if (evaluate(joint, &joint->now) < 0)
@@ -140,7 +141,7 @@ static an_status descend(an_joint *joint, an_error *err)
     for (int i = 0; i < most_iterations; i++) {
         if (improve(joint, &damping, &gain) < 0)
             return an_fail(err, AN_E_NUMERIC, NULL, "the spectrum of the joint fit did not settle");
-        if (gain < 1e-4 + 1e-9 * joint->now.cost)
+        if (gain < enough)
             break;
     }
     if (evaluate(joint, &joint->now) < 0)
@@ -148,23 +149,44 @@ static an_status descend(an_joint *joint, an_error *err)
     return AN_OK;
 }
 
-/* A new grid under the same curve: carry level (and with it the start) over by interpolation in log time. */
-static void regrid(an_joint *joint)
+/* Level on a grid of `joint` from another grid's: linear in log time, times the ratio of the spacings. */
+static void carry_level(an_joint *joint, const double *level, size_t n, double first, double per_decade)
 {
-    size_t n_old = joint->n_mode;
-    double first = log10(joint->time_s[0]);
-    memcpy(joint->scratch, joint->smooth.level_Pa, n_old * sizeof *joint->scratch);
-    if (!an_joint_grid(joint))
-        return;
     for (size_t i = 0; i < joint->n_mode; i++) {
-        double at = (log10(joint->time_s[i]) - first) * joint->per_decade;
-        at = fmin(fmax(at, 0), (double)(n_old - 1));
-        size_t below = (size_t)at < n_old - 1 ? (size_t)at : n_old - 2;
+        double at = (log10(joint->time_s[i]) - first) * per_decade;
+        at = fmin(fmax(at, 0), (double)(n - 1));
+        size_t below = (size_t)at < n - 1 ? (size_t)at : n - 2;
         double part = at - (double)below;
-        joint->smooth.level_Pa[i] = (1 - part) * joint->scratch[below] + part * joint->scratch[below + 1];
+        joint->smooth.level_Pa[i] = ((1 - part) * level[below] + part * level[below + 1]) * per_decade / joint->per_decade;
     }
     memset(joint->now.x_Pa, 0, (joint->n_mode + 1) * sizeof *joint->now.x_Pa);
     joint->smooth.n_mode = joint->n_mode;
+}
+
+/* A new grid under the same curve, where the shifts have moved so far that it is needed. */
+static void regrid(an_joint *joint)
+{
+    size_t n = joint->n_mode;
+    double first = log10(joint->time_s[0]);
+    memcpy(joint->scratch, joint->smooth.level_Pa, n * sizeof *joint->scratch);
+    if (an_joint_grid(joint))
+        carry_level(joint, joint->scratch, n, first, joint->per_decade);
+}
+
+/* Level to begin with: that of a coarser fit, or the same for all modes. */
+static void begin(an_joint *joint, const an_joint *coarse)
+{
+    double highest = 0;
+    an_joint_grid(joint);
+    an_joint_load(joint, &joint->now);
+    for (size_t p = 0; p < joint->n_point; p++)
+        highest = fmax(highest, joint->input->point[p].storage_Pa);
+    if (coarse)
+        carry_level(joint, coarse->smooth.level_Pa, coarse->n_mode, log10(coarse->time_s[0]), coarse->per_decade);
+    else
+        an_smooth_flat(&joint->smooth, highest / (double)joint->n_mode);
+    memset(joint->now.x_Pa, 0, (joint->n_mode + 1) * sizeof *joint->now.x_Pa);
+    joint->strength = 0;
 }
 
 static an_status choose_strength(an_joint *joint, an_strength_rule rule, an_error *err)
@@ -177,19 +199,16 @@ static an_status choose_strength(an_joint *joint, an_strength_rule rule, an_erro
     return AN_OK;
 }
 
-an_status an_joint_fit(an_joint *joint, an_strength_rule rule, an_error *err)
+an_status an_joint_fit(an_joint *joint, an_strength_rule rule, const an_joint *coarse, an_error *err)
 {
-    double highest = 0;
-    for (size_t p = 0; p < joint->n_point; p++)
-        highest = fmax(highest, joint->input->point[p].storage_Pa);
-    an_joint_grid(joint);
-    an_joint_load(joint, &joint->now);
-    an_smooth_flat(&joint->smooth, highest / (double)joint->n_mode);
-    memset(joint->now.x_Pa, 0, (joint->n_mode + 1) * sizeof *joint->now.x_Pa);
+    int rounds = coarse ? rounds_from_coarse : rounds_from_flat;
+    begin(joint, coarse);
     for (int round = 0; round < rounds; round++) {
         AN_TRY(choose_strength(joint, rule, err));
-        AN_TRY(descend(joint, err));
-        if (round + 1 < rounds) {
+        int last = round + 1 == rounds;
+        double enough = last ? 1e-4 + 1e-9 * joint->smooth.chi_square : 0.05 + 1e-3 * joint->smooth.chi_square;
+        AN_TRY(descend(joint, enough, err));
+        if (!last) {
             an_smooth_follow(&joint->smooth, joint->per_decade);
             regrid(joint);
         }

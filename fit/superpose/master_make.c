@@ -75,7 +75,8 @@ static an_status go_to_reference(making *m, an_master *master, an_error *err)
     double wanted_K = an_procedure_number(m->procedure, "reference_temperature");
     if (!isfinite(wanted_K) || fabs(wanted_K - m->result.reference_temperature_K) <= same_K)
         return AN_OK;
-    return an_superposition_move(&m->selection.input, wanted_K, &m->result, master->trial, (size_t)master->n_trial, err);
+    an_move move = {wanted_K, master->trial, (size_t)master->n_trial};
+    return an_superposition_move(&m->selection.input, &move, &m->result, err);
 }
 
 /* Solid, liquid or undetermined, from the points at their shifts. */

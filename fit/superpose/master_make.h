@@ -21,11 +21,17 @@ typedef struct an_selection {
 an_status an_selection_make(const an_grid *grid, an_selection *selection, an_remark_list *remarks, an_error *err);
 void an_selection_clear(an_selection *selection);
 
+/* Where a superposition is to be referred, and the laws tried on it. */
+typedef struct an_move {
+    double temperature_K; /* K, inside the isotherms */
+    an_law_trial *trial;  /* [n_trial] moved along */
+    size_t n_trial;
+} an_move;
+
 /* an_superposition_move: refer a superposition and the laws tried on it to another temperature, by the law chosen. The
  * variance of the law there is added to all shifts.
- *   temperature_K [in] K, inside the isotherms
- * Returns AN_OK, AN_E_SCIENCE where it is outside, or no law stands. */
-an_status an_superposition_move(const an_superpose_input *input, double temperature_K, an_superposition *result,
-                                an_law_trial *trial, size_t n_trial, an_error *err);
+ * Returns AN_OK, AN_E_SCIENCE where the temperature is outside, or no law stands. */
+an_status an_superposition_move(const an_superpose_input *input, const an_move *move, an_superposition *result,
+                                an_error *err);
 
 #endif

@@ -59,10 +59,26 @@ static void move_spectrum(an_superposition *result, double log10_a, double log10
     result->omega_range[1] /= a;
 }
 
-an_status an_superposition_move(const an_superpose_input *input, double temperature_K, an_superposition *result,
-                                an_law_trial *trial, size_t n_trial, an_error *err)
+/* The laws at the new reference; one that diverges there is refused from now on. */
+static void move_laws(const an_move *move)
 {
-    const an_law_trial *chosen = chosen_of(trial, n_trial);
+    for (size_t i = 0; i < move->n_trial; i++) {
+        an_law_trial *trial = &move->trial[i];
+        an_law moved;
+        if (trial->reason[0])
+            continue;
+        if (an_law_change_reference(&trial->law, move->temperature_K, &moved, NULL) >= 0)
+            trial->law = moved;
+        else
+            snprintf(trial->reason, sizeof trial->reason, "it diverges at the reference temperature");
+    }
+}
+
+an_status an_superposition_move(const an_superpose_input *input, const an_move *move, an_superposition *result,
+                                an_error *err)
+{
+    const an_law_trial *chosen = chosen_of(move->trial, move->n_trial);
+    double temperature_K = move->temperature_K;
     double low_K = input->isotherm[0].temperature_K, high_K = input->isotherm[input->n_isotherm - 1].temperature_K;
     double by[2], variance[2];
     if (temperature_K < low_K || temperature_K > high_K)
@@ -77,15 +93,7 @@ an_status an_superposition_move(const an_superpose_input *input, double temperat
     by[1] = scale_at(input, result, temperature_K, &variance[1]);
     move_shifts(result, by, variance);
     move_spectrum(result, by[0], by[1]);
-    for (size_t i = 0; i < n_trial; i++) {
-        an_law moved;
-        if (trial[i].reason[0])
-            continue;
-        if (an_law_change_reference(&trial[i].law, temperature_K, &moved, NULL) >= 0)
-            trial[i].law = moved;
-        else
-            snprintf(trial[i].reason, sizeof trial[i].reason, "it diverges at the reference temperature");
-    }
+    move_laws(move);
     result->reference_temperature_K = temperature_K;
     return AN_OK;
 }

@@ -159,7 +159,7 @@ static an_status fit_refined(const an_superpose_input *input, an_joint_plan *pla
 {
     static const double good = 1.3, worthwhile = 0.7;
     AN_TRY(an_joint_alloc(joint, input, plan, err));
-    AN_TRY(an_joint_fit(joint, plan->options->rule, err));
+    AN_TRY(an_joint_fit(joint, plan->options->rule, NULL, err));
     while (reduced_of(joint) > good && 2 * joint->per_decade <= plan->options->most_modes_per_decade) {
         an_joint finer;
         an_joint_init(&finer);
@@ -169,7 +169,7 @@ static an_status fit_refined(const an_superpose_input *input, an_joint_plan *pla
         next.log10_b = joint->now.log10_b;
         an_status status = an_joint_alloc(&finer, input, &next, err);
         if (status >= 0)
-            status = an_joint_fit(&finer, plan->options->rule, err);
+            status = an_joint_fit(&finer, plan->options->rule, joint, err);
         int better = status >= 0 && reduced_of(&finer) < worthwhile * reduced_of(joint);
         an_joint *worse = better ? joint : &finer;
         an_joint_clear(worse);

@@ -23,7 +23,7 @@ static inline double *an_column(const an_columns *a, size_t j)
     return a->value + j * a->stride;
 }
 
-/* an_dot: sum x_i y_i over n, in a fixed order of four interleaved partial sums. */
+/* an_dot: sum x_i y_i over n, in a fixed order of eight interleaved partial sums. */
 double an_dot(const double *x, const double *y, size_t n);
 
 /* an_axpy: y += factor x over n. */

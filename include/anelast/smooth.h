@@ -65,7 +65,7 @@ void an_smooth_count(an_smooth *smooth);
 /* an_smooth_choose: the strength by a rule, out of half decades 0.01 .. 1000 (quarter decades for the discrepancy), and the
  * solution there.
  *   n_outer   [in]  parameters fitted besides the spectrum, taken off the number of data
- *   strength  [out] dimensionless
+ *   strength  [in,out] dimensionless; in: above 0, look within a decade of it only; 0: everywhere
  * Returns AN_OK or AN_E_NUMERIC. */
 an_status an_smooth_choose(an_smooth *smooth, an_strength_rule rule, size_t n_outer, double *strength);
 

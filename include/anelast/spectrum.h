@@ -87,10 +87,16 @@ an_status an_prony_uncertainty(const an_observation *observation, size_t n_obser
 
 /* an_observation_rows: whitened rows of observations: row i divided by its uncertainty, the correlation with the observation
  * before it taken out.
- *   rows  [out] [n_observation x (n_mode + 1 + 1)] modes, equilibrium, data; stride and value set by the caller, n_row and
+ *   set   [in]
+ *   rows  [out] [set->n x (n_mode + 1 + 1)] modes, equilibrium, data; stride and value set by the caller, n_row and
  *               n_column filled; without equilibrium its column is left out
  * Returns AN_OK or AN_E_VALUE naming the observation. */
-an_status an_observation_rows(const an_observation *observation, size_t n_observation, const an_maxwell *times,
-                              int equilibrium, an_columns *rows, an_error *err);
+typedef struct an_observation_set {
+    const an_observation *observation; /* [n] */
+    size_t n;
+    const an_maxwell *times;           /* whose times_s are the modes; its strengths are not used */
+    int equilibrium;                   /* nonzero: a column for the equilibrium modulus */
+} an_observation_set;
+an_status an_observation_rows(const an_observation_set *set, an_columns *rows, an_error *err);
 
 #endif
