@@ -1,5 +1,6 @@
-/* tests/synthetic.h: made isotherms with known truth for tests of superposition and spectra: a Maxwell model, a law of a_T, and
- * Gaussian noise from a fixed seed. The response is written out here, apart from the product's own. */
+/* tests/synthetic.h: made isotherms with known truth for tests of superposition and spectra: a Maxwell model,
+ * a law of a_T, and Gaussian noise from a fixed seed. The response is written out here, apart from the
+ * product's own. */
 #ifndef ANELAST_TESTS_SYNTHETIC_H
 #define ANELAST_TESTS_SYNTHETIC_H
 
@@ -38,7 +39,8 @@ typedef struct synthetic_sweep {
     double noise; /* relative to |E*| */
 } synthetic_sweep;
 
-static inline void synthetic_point(synthetic *s, const an_maxwell *model, const synthetic_sweep *sweep, double omega)
+static inline void synthetic_point(synthetic *s, const an_maxwell *model, const synthetic_sweep *sweep,
+                                   double omega)
 {
     double storage = model->equilibrium_Pa, loss = 0;
     for (size_t i = 0; i < model->n_mode; i++) {
@@ -65,13 +67,15 @@ static inline void synthetic_add(synthetic *s, const an_maxwell *model, const sy
     s->log10_aT[s->n_isotherm++] = sweep->log10_aT;
     for (int i = 0; i < sweep->n_frequency; i++) {
         double part = sweep->n_frequency > 1 ? (double)i / (sweep->n_frequency - 1) : 0;
-        synthetic_point(s, model, sweep, 6.283185307179586 * sweep->low_Hz * pow(sweep->high_Hz / sweep->low_Hz, part));
+        synthetic_point(s, model, sweep,
+                        6.283185307179586 * sweep->low_Hz * pow(sweep->high_Hz / sweep->low_Hz, part));
     }
 }
 
 static inline an_superpose_input synthetic_input(const synthetic *s)
 {
-    return (an_superpose_input){.n_isotherm = s->n_isotherm, .isotherm = s->isotherm, .n_point = s->n_point, .point = s->point};
+    return (an_superpose_input){
+        .n_isotherm = s->n_isotherm, .isotherm = s->isotherm, .n_point = s->n_point, .point = s->point};
 }
 
 /* rms of log10 a_T against the truth, and rms of error over stated noise uncertainty. */

@@ -6,13 +6,16 @@
 #include <gsl/gsl_errno.h>
 
 static const char *const about[] = {
-    "Shifts all isotherms of a grid together with one non-negative Maxwell spectrum, so that E*(omega, T) = b_T E*(omega a_T, "
+    "Shifts all isotherms of a grid together with one non-negative Maxwell spectrum, so that E*(omega, T) = "
+    "b_T E*(omega a_T, "
     "T0), and gives every shift factor with its uncertainty, noise and common parts apart.",
-    "Says whether one shift a temperature brings the isotherms together at all (simple, doubtful, complex), with the numbers "
+    "Says whether one shift a temperature brings the isotherms together at all (simple, doubtful, complex), "
+    "with the numbers "
     "that say so, fits laws to the shift factors and chooses one by an information criterion.",
     NULL};
-static const char *const examples[] = {"anelast-shift grid.xml --output master.xml",
-                                       "anelast-phase run.xml | anelast-grid | anelast-shift | anelast-prony > material.xml", NULL};
+static const char *const examples[] = {
+    "anelast-shift grid.xml --output master.xml",
+    "anelast-phase run.xml | anelast-grid | anelast-shift | anelast-prony > material.xml", NULL};
 static const an_program program = {
     .name = "anelast-shift",
     .summary = "grid document to shift factors, verdict on superposition, law and master curve",
@@ -57,7 +60,8 @@ static an_status make_master(const an_arguments *arguments, an_grid *grid, an_ma
 static void tell(const an_master *master)
 {
     if (master->simplicity != AN_SIMPLE)
-        an_program_say(&program, NULL, "%s: %s", an_simplicity_word(master->simplicity), master->simplicity_reason);
+        an_program_say(&program, NULL, "%s: %s", an_simplicity_word(master->simplicity),
+                       master->simplicity_reason);
 }
 
 int main(int argc, char **argv)

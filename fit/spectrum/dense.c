@@ -1,12 +1,13 @@
-/* Small dense linear algebra of the fits: Householder reduction, triangles, Cholesky. Ground of spectrum and superpose.
- * Methods of [GV13]; written out because they are the hot loops of every fit. Range: well-scaled doubles; a column of
- * zeros is left alone, a matrix that is not positive definite is refused. */
+/* Small dense linear algebra of the fits: Householder reduction, triangles, Cholesky. Ground of spectrum and
+ * superpose. Methods of [GV13]; written out because they are the hot loops of every fit. Range: well-scaled
+ * doubles; a column of zeros is left alone, a matrix that is not positive definite is refused. */
 #include "anelast/dense.h"
 
 #include <math.h>
 #include <string.h>
 
-/* Four doubles at any address. The compiler maps them on what the machine has; the order of the sums is the same on all. */
+/* Four doubles at any address. The compiler maps them on what the machine has; the order of the sums is the
+ * same on all. */
 typedef double lanes __attribute__((vector_size(32), aligned(8), may_alias));
 
 double an_dot(const double *x, const double *y, size_t n)

@@ -1,15 +1,18 @@
-/* The dense regularised spectrum from observations of any kind, its window, and whether the long end is solid or liquid. Stage:
- * spectrum. Method: rows of the response engine, whitened, on a logarithmic grid of times; strength by the rule in force
- * with generalised cross-validation beside it. Range: one observation or more of positive uncertainty. */
+/* The dense regularised spectrum from observations of any kind, its window, and whether the long end is solid
+ * or liquid. Stage: spectrum. Method: rows of the response engine, whitened, on a logarithmic grid of times;
+ * strength by the rule in force with generalised cross-validation beside it. Range: one observation or more
+ * of positive uncertainty. */
 #include "anelast/spectrum.h"
 
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
-/* A liquid is ruled out where leaving out the equilibrium modulus costs this much chi-square (five standard deviations). */
+/* A liquid is ruled out where leaving out the equilibrium modulus costs this much chi-square (five standard
+ * deviations). */
 static const double against_liquid = 25;
-/* A liquid's storage and loss run as omega^2 and omega at the slow end; nine tenths of the way there counts [FE80, ch. 3]. */
+/* A liquid's storage and loss run as omega^2 and omega at the slow end; nine tenths of the way there counts
+ * [FE80, ch. 3]. */
 static const double liquid_storage_slope = 1.8, liquid_loss_slope = 0.9;
 
 void an_spectrum_defaults(an_spectrum_options *options)
@@ -50,11 +53,15 @@ void an_spectrum_window(const double omega_range[2], double window_s[2])
 
 static an_status check_observation(const an_observation *o, size_t i, an_error *err)
 {
-    if (!(o->at > 0 && isfinite(o->at) && isfinite(o->value) && isfinite(o->log10_aT) && isfinite(o->log10_bT)))
-        return an_fail(err, AN_E_VALUE, NULL, "observation %zu: frequency, time, shift or value is not finite and positive", i + 1);
+    if (!(o->at > 0 && isfinite(o->at) && isfinite(o->value) && isfinite(o->log10_aT) &&
+          isfinite(o->log10_bT)))
+        return an_fail(err, AN_E_VALUE, NULL,
+                       "observation %zu: frequency, time, shift or value is not finite and positive", i + 1);
     if (!(o->u > 0 && isfinite(o->u) && fabs(o->correlation) < 1) || (i == 0 && o->correlation != 0))
-        return an_fail(err, AN_E_VALUE, NULL, "observation %zu: uncertainty %g and correlation %g, where above 0 and inside "
-                       "-1 .. 1 are allowed", i + 1, o->u, o->correlation);
+        return an_fail(err, AN_E_VALUE, NULL,
+                       "observation %zu: uncertainty %g and correlation %g, where above 0 and inside "
+                       "-1 .. 1 are allowed",
+                       i + 1, o->u, o->correlation);
     return AN_OK;
 }
 
@@ -62,7 +69,8 @@ static an_status check_observation(const an_observation *o, size_t i, an_error *
 static void whiten_row(const an_observation *o, size_t i, const double *row, an_columns *rows)
 {
     double r = o->correlation, scale = 1 / (o->u * sqrt(1 - r * r));
-    /* Pairs: the first of two correlated rows keeps its own scale, the second has the first's share taken out. */
+    /* Pairs: the first of two correlated rows keeps its own scale, the second has the first's share taken
+     * out. */
     double before = r / sqrt(1 - r * r);
     size_t n = rows->n_column - 1;
     for (size_t j = 0; j <= n; j++) {
@@ -119,7 +127,8 @@ static an_status lay_grid(an_spectrum *spectrum, double extend_decades, an_error
     return AN_OK;
 }
 
-/* A modulus of the data's size, whatever their kind: the largest datum in terms of the mode that serves it best. */
+/* A modulus of the data's size, whatever their kind: the largest datum in terms of the mode that serves it
+ * best. */
 static double modulus_of(const an_columns *rows, size_t n_mode)
 {
     double highest = 0;
@@ -135,7 +144,8 @@ static double modulus_of(const an_columns *rows, size_t n_mode)
 }
 
 /* Load the problem with or without equilibrium modulus and solve it: level and strength renewed in turns. */
-static an_status solve(an_smooth *smooth, an_strength_rule rule, double per_decade, an_columns *rows, int equilibrium)
+static an_status solve(an_smooth *smooth, an_strength_rule rule, double per_decade, an_columns *rows,
+                       int equilibrium)
 {
     enum { turns = 3 };
     size_t n_mode = rows->n_column - 1 - (equilibrium ? 1 : 0);
@@ -155,7 +165,8 @@ static an_status solve(an_smooth *smooth, an_strength_rule rule, double per_deca
 static int runs_as_liquid(const an_maxwell *model, double omega)
 {
     static const double step = 1.1;
-    double storage = log(an_maxwell_storage(model, omega * step) / an_maxwell_storage(model, omega)) / log(step);
+    double storage =
+        log(an_maxwell_storage(model, omega * step) / an_maxwell_storage(model, omega)) / log(step);
     double loss = log(an_maxwell_loss(model, omega * step) / an_maxwell_loss(model, omega)) / log(step);
     return storage >= liquid_storage_slope && loss >= liquid_loss_slope;
 }
@@ -204,7 +215,9 @@ static an_status decide_end(job *j, an_spectrum *spectrum, an_error *err)
     double reduced = fmax(j->smooth.chi_square / freedom, 1);
     spectrum->evidence_against_liquid = (liquid_chi_square - j->smooth.chi_square) / reduced;
     int against = spectrum->evidence_against_liquid > against_liquid;
-    spectrum->end_state = j->options->end_state == AN_SOLID || against ? AN_SOLID : liquid_slopes ? AN_LIQUID : AN_UNDETERMINED;
+    spectrum->end_state = j->options->end_state == AN_SOLID || against ? AN_SOLID
+                          : liquid_slopes                              ? AN_LIQUID
+                                                                       : AN_UNDETERMINED;
     if (spectrum->end_state == AN_LIQUID)
         AN_TRY(solve_with(j, spectrum, 0, err));
     take_solution(&j->smooth, spectrum->end_state != AN_LIQUID, spectrum);
@@ -238,13 +251,14 @@ static an_status solve_on_grid(job *j, an_spectrum *spectrum, an_error *err)
     return status;
 }
 
-/* A spectrum of few sharp modes wants a finer grid than a smooth one: double it while chi-square is above its expectation and
- * falls by three tenths. */
+/* A spectrum of few sharp modes wants a finer grid than a smooth one: double it while chi-square is above its
+ * expectation and falls by three tenths. */
 static an_status refine(job *j, an_spectrum *spectrum, an_error *err)
 {
     static const double good = 1.3, worthwhile = 0.7;
     double n = (double)j->n_observation;
-    while (spectrum->chi_square > good * n && 2 * spectrum->modes_per_decade <= j->options->most_modes_per_decade) {
+    while (spectrum->chi_square > good * n &&
+           2 * spectrum->modes_per_decade <= j->options->most_modes_per_decade) {
         an_spectrum finer = *spectrum;
         an_maxwell_init(&finer.model);
         finer.modes_per_decade *= 2;
@@ -258,12 +272,13 @@ static an_status refine(job *j, an_spectrum *spectrum, an_error *err)
     return AN_OK;
 }
 
-an_status an_spectrum_dense(const an_observation *observation, size_t n_observation, const an_spectrum_options *options,
-                            an_spectrum *spectrum, an_error *err)
+an_status an_spectrum_dense(const an_observation *observation, size_t n_observation,
+                            const an_spectrum_options *options, an_spectrum *spectrum, an_error *err)
 {
     an_spectrum_options standard;
     an_spectrum_defaults(&standard);
-    job j = {.observation = observation, .n_observation = n_observation, .options = options ? options : &standard};
+    job j = {
+        .observation = observation, .n_observation = n_observation, .options = options ? options : &standard};
     an_smooth_init(&j.smooth);
     if (n_observation == 0)
         return an_fail(err, AN_E_VALUE, NULL, "no observations");

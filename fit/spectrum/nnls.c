@@ -1,13 +1,14 @@
-/* Non-negative least squares by an active set. Stage: the inner problem of every spectrum. Method: Lawson & Hanson [LH74,
- * ch. 23] on one transformed copy of the matrix: a column enters by a Householder reflection, leaves by Givens rotations.
- * Range: up to some hundred columns; no allocation while solving. */
+/* Non-negative least squares by an active set. Stage: the inner problem of every spectrum. Method: Lawson &
+ * Hanson [LH74, ch. 23] on one transformed copy of the matrix: a column enters by a Householder reflection,
+ * leaves by Givens rotations. Range: up to some hundred columns; no allocation while solving. */
 #include "anelast/nnls.h"
 
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
-/* A column whose part outside the passive span is below this share of its length counts as dependent on it. */
+/* A column whose part outside the passive span is below this share of its length counts as dependent on it.
+ */
 static const double dependent_below = 1e-13;
 /* A dual below this share of |b| is rounding: it could lower the sum of squares by its 1e-22nd part. */
 static const double dual_above = 1e-11;
@@ -40,7 +41,8 @@ an_status an_nnls_alloc(an_nnls *nnls, size_t most_rows, size_t most_columns, an
     nnls->norm = calloc(columns, sizeof *nnls->norm);
     nnls->order = calloc(columns, sizeof *nnls->order);
     nnls->barred = calloc(columns, sizeof *nnls->barred);
-    if (!nnls->work.value || !nnls->rhs || !nnls->z || !nnls->x || !nnls->norm || !nnls->order || !nnls->barred) {
+    if (!nnls->work.value || !nnls->rhs || !nnls->z || !nnls->x || !nnls->norm || !nnls->order ||
+        !nnls->barred) {
         an_nnls_clear(nnls);
         return an_fail_memory(err, "a non-negative least-squares problem");
     }
@@ -74,7 +76,8 @@ static int load_problem(an_nnls *nnls, const an_columns *a, const double *b, con
     return isfinite(sum) && isfinite(an_dot(b, b, a->n_row));
 }
 
-/* Take the column at position p >= n_passive of the order into the passive set. Returns 0 where it depends on the set. */
+/* Take the column at position p >= n_passive of the order into the passive set. Returns 0 where it depends on
+ * the set. */
 static int enter(an_nnls *nnls, size_t p)
 {
     size_t k = nnls->n_passive, j = nnls->order[p];
@@ -141,7 +144,8 @@ static void solve_passive(an_nnls *nnls)
     }
 }
 
-/* The passive position that meets zero first on the way from x to z, and the share of the way; n_passive, 1 where none. */
+/* The passive position that meets zero first on the way from x to z, and the share of the way; n_passive, 1
+ * where none. */
 static size_t first_to_leave(const an_nnls *nnls, double *share)
 {
     size_t first = nnls->n_passive;
@@ -159,7 +163,8 @@ static size_t first_to_leave(const an_nnls *nnls, double *share)
     return first;
 }
 
-/* Walk from x towards z until an entry meets zero; put out those that do. Returns their number, 0 where z was reached. */
+/* Walk from x towards z until an entry meets zero; put out those that do. Returns their number, 0 where z was
+ * reached. */
 static size_t step_back(an_nnls *nnls)
 {
     double share;

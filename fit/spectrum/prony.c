@@ -1,7 +1,7 @@
-/* The few modes handed over. Stage: spectrum. Method: for each number of modes, times by variable projection [GP73, KA75] and
- * strengths by non-negative least squares, against the dense spectrum's E* over the data's frequencies and its E(t) over the
- * trusted window, all as relative errors; the number grows until the worst error is inside half the stated one. Range: data
- * that span a decade or more. */
+/* The few modes handed over. Stage: spectrum. Method: for each number of modes, times by variable projection
+ * [GP73, KA75] and strengths by non-negative least squares, against the dense spectrum's E* over the data's
+ * frequencies and its E(t) over the trusted window, all as relative errors; the number grows until the worst
+ * error is inside half the stated one. Range: data that span a decade or more. */
 #include "anelast/spectrum.h"
 
 #include <math.h>
@@ -29,15 +29,15 @@ void an_prony_clear(an_prony *prony)
 typedef struct chase {
     size_t n_target, most, n_mode;
     int equilibrium;
-    double log_low, log_high;     /* allowed ln times */
-    an_observation *target;       /* [n_target] value and u = |E*| or E(t): errors are relative */
-    double *log_time, *trial;     /* [most] ln s */
-    double *x;                    /* [most + 1] Pa */
-    an_columns rows, slope;       /* [n_target x (most + 1)] */
-    double *y, *residual;         /* [n_target] */
-    double *half;                 /* [most][most + 1] */
+    double log_low, log_high; /* allowed ln times */
+    an_observation *target;   /* [n_target] value and u = |E*| or E(t): errors are relative */
+    double *log_time, *trial; /* [most] ln s */
+    double *x;                /* [most + 1] Pa */
+    an_columns rows, slope;   /* [n_target x (most + 1)] */
+    double *y, *residual;     /* [n_target] */
+    double *half;             /* [most][most + 1] */
     double *normal, *damped, *gradient, *step, *times, *row, *row_slope;
-    double cost, worst;           /* sum of squares and greatest |error|, relative */
+    double cost, worst; /* sum of squares and greatest |error|, relative */
     an_nnls nnls;
     double *pool;
 } chase;
@@ -105,13 +105,15 @@ static an_status sample(chase *c, const an_maxwell *dense, const double omega_ra
     }
     for (size_t i = 0; i < n_time; i++)
         c->target[c->n_target++] =
-            target_at(dense, AN_RESPONSE_RELAXATION, window[0] * pow(10, time_decades * (double)i / (double)(n_time - 1)));
+            target_at(dense, AN_RESPONSE_RELAXATION,
+                      window[0] * pow(10, time_decades * (double)i / (double)(n_time - 1)));
     c->log_low = -log(omega_range[1]) - beyond * log(10);
     c->log_high = -log(omega_range[0]) + beyond * log(10);
     return AN_OK;
 }
 
-static an_status chase_alloc(chase *c, const an_maxwell *dense, const double omega_range[2], size_t most, an_error *err)
+static an_status chase_alloc(chase *c, const an_maxwell *dense, const double omega_range[2], size_t most,
+                             an_error *err)
 {
     AN_TRY(sample(c, dense, omega_range, err));
     c->most = most;
@@ -165,7 +167,8 @@ static void linearise(chase *c)
     }
     for (size_t i = 0; i < n; i++)
         for (size_t j = 0; j <= i; j++) {
-            double full = c->x[i] * c->x[j] * an_dot(an_column(&c->slope, i), an_column(&c->slope, j), c->n_target);
+            double full =
+                c->x[i] * c->x[j] * an_dot(an_column(&c->slope, i), an_column(&c->slope, j), c->n_target);
             c->normal[i * n + j] = c->normal[j * n + i] =
                 full - an_dot(c->half + i * stride, c->half + j * stride, c->nnls.n_passive);
         }
@@ -247,8 +250,8 @@ static an_status hand_out(const chase *c, an_prony *prony, an_error *err)
     return AN_OK;
 }
 
-an_status an_prony_fit(const an_maxwell *dense, const double omega_range[2], const an_spectrum_options *options,
-                       an_prony *prony, an_error *err)
+an_status an_prony_fit(const an_maxwell *dense, const double omega_range[2],
+                       const an_spectrum_options *options, an_prony *prony, an_error *err)
 {
     an_spectrum_options standard;
     an_spectrum_defaults(&standard);
@@ -256,7 +259,8 @@ an_status an_prony_fit(const an_maxwell *dense, const double omega_range[2], con
         options = &standard;
     double decades = log10(omega_range[1] / omega_range[0]);
     if (!(omega_range[0] > 0 && decades >= 1 && isfinite(decades)))
-        return an_fail(err, AN_E_SCIENCE, NULL, "reduced frequencies %g to %g rad/s span less than the decade that modes need",
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "reduced frequencies %g to %g rad/s span less than the decade that modes need",
                        omega_range[0], omega_range[1]);
     chase c = {0};
     an_nnls_init(&c.nnls);
@@ -277,7 +281,8 @@ an_status an_prony_fit(const an_maxwell *dense, const double omega_range[2], con
     return status;
 }
 
-an_status an_prony_uncertainty(const an_observation *observation, size_t n_observation, an_prony *prony, an_error *err)
+an_status an_prony_uncertainty(const an_observation *observation, size_t n_observation, an_prony *prony,
+                               an_error *err)
 {
     size_t n_mode = prony->model.n_mode, n = n_mode + (prony->model.equilibrium_Pa > 0 ? 1 : 0);
     an_observation_set set = {observation, n_observation, &prony->model, n > n_mode};

@@ -1,5 +1,6 @@
-/* Rows of the response engine: one observation, all modes. Ground of spectrum and superpose. Method: the closed forms of
- * single modes at the times a_T tau_i, and their derivatives by ln a_T, which are those by ln tau_i. Range: as maxwell.h. */
+/* Rows of the response engine: one observation, all modes. Ground of spectrum and superpose. Method: the
+ * closed forms of single modes at the times a_T tau_i, and their derivatives by ln a_T, which are those by ln
+ * tau_i. Range: as maxwell.h. */
 #include "anelast/response.h"
 #include "anelast/maxwell.h"
 

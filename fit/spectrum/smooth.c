@@ -1,12 +1,14 @@
-/* The regularised spectrum problem: loading, levels, solving at one strength. Stage: spectrum and superpose. Method: the data
- * rows are reduced once to a triangle, so that every strength costs a small problem. Range: as nnls.h. */
+/* The regularised spectrum problem: loading, levels, solving at one strength. Stage: spectrum and superpose.
+ * Method: the data rows are reduced once to a triangle, so that every strength costs a small problem. Range:
+ * as nnls.h. */
 #include "anelast/smooth.h"
 
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
-/* Levels below this share of the highest are raised to it: modes far down are not held flat against their own size. */
+/* Levels below this share of the highest are raised to it: modes far down are not held flat against their own
+ * size. */
 static const double least_level = 1e-6;
 
 void an_smooth_init(an_smooth *smooth)
@@ -38,8 +40,9 @@ an_status an_smooth_alloc(an_smooth *smooth, size_t most_modes, an_error *err)
     smooth->rows.value = calloc(2 * n * n, sizeof(double));
     smooth->rows_rhs = calloc(2 * n, sizeof(double));
     smooth->scratch = calloc(2 * n, sizeof(double));
-    if (!smooth->triangle.value || !smooth->rhs || !smooth->level_Pa || !smooth->x_Pa || !smooth->rows.value ||
-        !smooth->rows_rhs || !smooth->scratch || an_nnls_alloc(&smooth->nnls, 2 * n, n, NULL) < 0) {
+    if (!smooth->triangle.value || !smooth->rhs || !smooth->level_Pa || !smooth->x_Pa ||
+        !smooth->rows.value || !smooth->rows_rhs || !smooth->scratch ||
+        an_nnls_alloc(&smooth->nnls, 2 * n, n, NULL) < 0) {
         an_smooth_clear(smooth);
         return an_fail_memory(err, "a regularised spectrum");
     }
@@ -130,7 +133,8 @@ an_status an_smooth_solve(an_smooth *smooth, double strength)
     for (size_t i = 0; i + 2 < smooth->n_mode; i++) {
         double entry[3];
         an_smooth_penalty_row(smooth, i, entry);
-        double d = strength * (entry[0] * smooth->x_Pa[i] + entry[1] * smooth->x_Pa[i + 1] + entry[2] * smooth->x_Pa[i + 2]);
+        double d = strength * (entry[0] * smooth->x_Pa[i] + entry[1] * smooth->x_Pa[i + 1] +
+                               entry[2] * smooth->x_Pa[i + 2]);
         smooth->penalty += d * d;
     }
     smooth->chi_square = smooth->rest_square + fmax(seen.residual_square - smooth->penalty, 0);

@@ -1,6 +1,7 @@
-/* The strength of the regularisation, by three rules. Stage: spectrum and superpose. Method: a grid of strengths, each one
- * small non-negative problem. Evidence [MK92]: with the penalty read as a Gaussian prior on second differences,
- * -2 ln p(y|s) = chi^2 + penalty + ln det(A^T A + s^2 L^T L) - 2 n_L ln s + const. Range: 0.01 .. 1000; outside, the end. */
+/* The strength of the regularisation, by three rules. Stage: spectrum and superpose. Method: a grid of
+ * strengths, each one small non-negative problem. Evidence [MK92]: with the penalty read as a Gaussian prior
+ * on second differences, -2 ln p(y|s) = chi^2 + penalty + ln det(A^T A + s^2 L^T L) - 2 n_L ln s + const.
+ * Range: 0.01 .. 1000; outside, the end. */
 #include "anelast/smooth.h"
 
 #include <math.h>
@@ -30,7 +31,8 @@ static double log_determinant(an_smooth *smooth)
     double largest = 0;
     for (size_t j = 0; j < smooth->n_column; j++)
         largest = fmax(largest, fabs(an_column(&smooth->rows, j)[j]));
-    for (size_t j = 0; j < smooth->n_column; j++) /* a direction that neither data nor penalty see must not decide */
+    for (size_t j = 0; j < smooth->n_column;
+         j++) /* a direction that neither data nor penalty see must not decide */
         sum += 2 * log(fmax(fabs(an_column(&smooth->rows, j)[j]), 1e-12 * largest));
     return sum;
 }
@@ -40,14 +42,16 @@ static double figure_of(an_smooth *smooth, an_strength_rule rule)
 {
     if (rule == AN_STRENGTH_EVIDENCE) {
         double n_penalty = smooth->n_mode > 2 ? (double)(smooth->n_mode - 2) : 0;
-        return smooth->chi_square + smooth->penalty + log_determinant(smooth) - 2 * n_penalty * log(smooth->strength);
+        return smooth->chi_square + smooth->penalty + log_determinant(smooth) -
+               2 * n_penalty * log(smooth->strength);
     }
     an_smooth_count(smooth);
     double freedom = (double)smooth->n_data - smooth->used;
     return freedom > 0 ? smooth->chi_square / (freedom * freedom) : INFINITY;
 }
 
-/* The strongest whose chi-square is the number of data; where no spectrum gets there, 5 % above the least chi-square. */
+/* The strongest whose chi-square is the number of data; where no spectrum gets there, 5 % above the least
+ * chi-square. */
 static an_status choose_discrepancy(an_smooth *smooth, size_t n_outer, double *strength)
 {
     AN_TRY(an_smooth_solve(smooth, weakest));

@@ -1,6 +1,7 @@
-/* The closed-form start: the area between neighbouring isotherms. Stage: superpose, before the joint fit. Method: [GE11], with
- * the integral of the piecewise-linear segments taken exactly, on the quantity that promises the least uncertainty. Range:
- * segments that overlap in ordinate and run steadily; others are refused by name. */
+/* The closed-form start: the area between neighbouring isotherms. Stage: superpose, before the joint fit.
+ * Method: [GE11], with the integral of the piecewise-linear segments taken exactly, on the quantity that
+ * promises the least uncertainty. Range: segments that overlap in ordinate and run steadily; others are
+ * refused by name. */
 #include "anelast/superpose.h"
 
 #include <math.h>
@@ -9,8 +10,8 @@
 enum { quantities = 3 };
 static const char *const quantity_word[quantities] = {"loss factor", "storage modulus", "loss modulus"};
 static const double most_u = 1; /* decades: a pair known no better has no slope */
-/* A gap up to this share of the smaller segment's range is bridged by the mean slope: the joint fit, whose spectrum is smooth
- * across it, has the last word and its covariance says what the bridge is worth. */
+/* A gap up to this share of the smaller segment's range is bridged by the mean slope: the joint fit, whose
+ * spectrum is smooth across it, has the last word and its covariance says what the bridge is worth. */
 static const double widest_gap = 0.25;
 
 /* log10 of a quantity at a point, and its standard uncertainty. */
@@ -33,10 +34,12 @@ typedef struct segment {
     double u;         /* rms uncertainty of the ordinate */
 } segment;
 
-/* Fill range, sign and uncertainty. Returns 0 where the ordinate turns by more than its noise, or is not positive. */
+/* Fill range, sign and uncertainty. Returns 0 where the ordinate turns by more than its noise, or is not
+ * positive. */
 static int survey(segment *s)
 {
-    double u, first = ordinate(&s->point[0], s->quantity, &u), last = ordinate(&s->point[s->n - 1], s->quantity, &u);
+    double u, first = ordinate(&s->point[0], s->quantity, &u),
+              last = ordinate(&s->point[s->n - 1], s->quantity, &u);
     double before = first, u_before = u, sum = 0;
     if (s->n < 2 || !(first != last))
         return 0;
@@ -56,8 +59,8 @@ static int survey(segment *s)
     return 1;
 }
 
-/* Integral of x = log10 omega over the ordinate from low to high along a segment; where noise turns the curve back, the steps
- * back count negative, as the area demands. *n: points inside the range. */
+/* Integral of x = log10 omega over the ordinate from low to high along a segment; where noise turns the curve
+ * back, the steps back count negative, as the area demands. *n: points inside the range. */
 static double area_under(const segment *s, double low, double high, size_t *n)
 {
     double area = 0, u;
@@ -86,7 +89,8 @@ static double mean_slope(const segment *s)
 /* Shift across a gap between the two ranges, low > high: from end to end, and the gap at the mean slope. */
 static void bridge_gap(const segment *cold, const segment *warm, double gap, an_area_shift *shift)
 {
-    int cold_first = (cold->low > warm->low) == (cold->sign > 0); /* the cold segment continues the warm one */
+    int cold_first =
+        (cold->low > warm->low) == (cold->sign > 0); /* the cold segment continues the warm one */
     double x_cold = log10(cold->point[cold_first ? 0 : cold->n - 1].omega_rad_s);
     double x_warm = log10(warm->point[cold_first ? warm->n - 1 : 0].omega_rad_s);
     double width = 2 * gap / (mean_slope(cold) + mean_slope(warm));
@@ -129,7 +133,8 @@ static double scale_between(const segment *cold, const segment *warm, double log
                 continue;
             double y1 = log10(hypot(cold->point[j].storage_Pa, cold->point[j].loss_Pa));
             double y2 = log10(hypot(cold->point[j + 1].storage_Pa, cold->point[j + 1].loss_Pa));
-            sum += log10(hypot(warm->point[i].storage_Pa, warm->point[i].loss_Pa)) - (y1 + (y2 - y1) * (x - x1) / (x2 - x1));
+            sum += log10(hypot(warm->point[i].storage_Pa, warm->point[i].loss_Pa)) -
+                   (y1 + (y2 - y1) * (x - x1) / (x2 - x1));
             n++;
             break;
         }
@@ -137,8 +142,8 @@ static double scale_between(const segment *cold, const segment *warm, double log
     return n ? sum / (double)n : 0;
 }
 
-an_status an_area_between(const an_superpose_input *input, size_t i_cold, an_vertical vertical, an_area_shift *shift,
-                          an_error *err)
+an_status an_area_between(const an_superpose_input *input, size_t i_cold, an_vertical vertical,
+                          an_area_shift *shift, an_error *err)
 {
     const an_superpose_isotherm *c = &input->isotherm[i_cold], *w = c + 1;
     segment cold = {.point = input->point + c->first_point, .n = c->n_point};
@@ -157,7 +162,8 @@ an_status an_area_between(const an_superpose_input *input, size_t i_cold, an_ver
     }
     if (!found)
         return an_fail(err, AN_E_SCIENCE, NULL,
-                       "isotherms %.2f K and %.2f K cannot be joined: no %s in storage modulus, loss modulus or loss factor",
+                       "isotherms %.2f K and %.2f K cannot be joined: no %s in storage modulus, loss modulus "
+                       "or loss factor",
                        c->temperature_K, w->temperature_K, overlap ? "slope" : "overlap");
     shift->log10_b = scale_between(&cold, &warm, shift->log10_a);
     return AN_OK;

@@ -1,8 +1,9 @@
-/* Covariance of the shifts with the spectrum integrated out. Stage: superpose. Method: at the optimum the positive columns
- * (data and penalty rows) are reduced by reflections that carry the derivative by the shifts along; what is left below the
- * triangle is that derivative with the spectrum's share taken out. The penalty stands for what is held of a smooth spectrum
- * beforehand, with the strength that the data themselves make most probable, so that its bias is inside the covariance
- * [MK92]. Common sources pass through the same linear map; the temperature's bias adds the slope of log10 a_T. */
+/* Covariance of the shifts with the spectrum integrated out. Stage: superpose. Method: at the optimum the
+ * positive columns (data and penalty rows) are reduced by reflections that carry the derivative by the shifts
+ * along; what is left below the triangle is that derivative with the spectrum's share taken out. The penalty
+ * stands for what is held of a smooth spectrum beforehand, with the strength that the data themselves make
+ * most probable, so that its bias is inside the covariance [MK92]. Common sources pass through the same
+ * linear map; the temperature's bias adds the slope of log10 a_T. */
 #include "fit/superpose/joint.h"
 
 #include <math.h>
@@ -13,7 +14,8 @@ static const double ln10 = 2.302585092994046;
 
 typedef struct work {
     size_t n_outer, n_source, n_positive, n_penalty;
-    an_columns columns; /* [n_row + n_penalty] rows: positive columns, n_outer derivatives, n_source changes */
+    an_columns
+        columns; /* [n_row + n_penalty] rows: positive columns, n_outer derivatives, n_source changes */
     double *normal, *inverse, *scratch, *shift; /* scratch: n_outer^2 + 2 n_outer; shift: [n_outer] */
     double *pool;
 } work;
@@ -55,7 +57,8 @@ static void fill_positive(work *w, const an_joint *joint)
 }
 
 /* Copy the rows of one isotherm of a derivative into the column of its unknown. */
-static void fill_derivative(work *w, const an_joint *joint, size_t i_isotherm, size_t slot, const double *derivative)
+static void fill_derivative(work *w, const an_joint *joint, size_t i_isotherm, size_t slot,
+                            const double *derivative)
 {
     if (slot == w->n_outer)
         return;
@@ -90,7 +93,8 @@ static an_status invert_information(work *w, an_error *err)
             w->normal[i * n + j] = w->normal[j * n + i] = an_dot(x, y, below);
             largest = fmax(largest, w->normal[i * n + j]);
         }
-    for (size_t i = 0; i < n; i++) /* a shift that nothing determines: u = 100 decades, not a division by zero */
+    for (size_t i = 0; i < n;
+         i++) /* a shift that nothing determines: u = 100 decades, not a division by zero */
         w->normal[i * n + i] += fmax(1e-4, 1e-14 * largest);
     if (an_spd_invert(w->normal, n, w->inverse, w->scratch) < 0)
         return an_fail(err, AN_E_NUMERIC, NULL, "the covariance of the shifts is singular");
@@ -112,7 +116,8 @@ static void hand_out_noise(const work *w, const an_joint *joint, an_superpositio
         for (size_t j = 0; j < n; j++) {
             size_t si = slot_of(joint, i, &row), sj = slot_of(joint, j, &column);
             if (si < w->n_outer && sj < w->n_outer)
-                result->noise_covariance[row * n + column] = result->inflation * w->inverse[si * w->n_outer + sj];
+                result->noise_covariance[row * n + column] =
+                    result->inflation * w->inverse[si * w->n_outer + sj];
         }
 }
 
@@ -146,7 +151,8 @@ static double shift_slope(const an_joint *joint, size_t i)
 {
     size_t low = i > 0 ? i - 1 : 0, high = i + 1 < joint->n_isotherm ? i + 1 : i;
     const an_superpose_isotherm *isotherm = joint->input->isotherm;
-    return (joint->now.log10_a[high] - joint->now.log10_a[low]) / (isotherm[high].temperature_K - isotherm[low].temperature_K);
+    return (joint->now.log10_a[high] - joint->now.log10_a[low]) /
+           (isotherm[high].temperature_K - isotherm[low].temperature_K);
 }
 
 /* The temperature's common bias: |d log a/dT| u(T) at every isotherm but the reference, fully correlated. */
@@ -166,12 +172,14 @@ static void hand_out_bias(const an_joint *joint, an_superposition *result, doubl
     add_common(change, n, result->common_covariance);
 }
 
-an_status an_joint_covariance(an_joint *joint, const an_superpose_options *options, an_superposition *result, an_error *err)
+an_status an_joint_covariance(an_joint *joint, const an_superpose_options *options, an_superposition *result,
+                              an_error *err)
 {
     work w = {0};
     size_t n = 2 * joint->n_isotherm;
     double *change = calloc(n, sizeof *change);
-    an_status status = change ? work_alloc(&w, joint, err) : an_fail_memory(err, "the covariance of the shifts");
+    an_status status =
+        change ? work_alloc(&w, joint, err) : an_fail_memory(err, "the covariance of the shifts");
     if (status < 0)
         goto cleanup;
     fill_positive(&w, joint);

@@ -1,7 +1,8 @@
-/* The joint fit's iteration. Stage: superpose. Method: variable projection [GP73] with the derivative of [KA75], which for the
- * sum of squares is Gauss-Newton on shifts and positive modes together: with J the derivative by the shifts and B the positive
- * columns (data and penalty rows), the normal matrix of the shifts is J^T J - |R^-T B^T J|^2, R the triangle of B. Damped after
- * Levenberg and Marquardt. The strength of the regularisation and the level of the modes are renewed between rounds. */
+/* The joint fit's iteration. Stage: superpose. Method: variable projection [GP73] with the derivative of
+ * [KA75], which for the sum of squares is Gauss-Newton on shifts and positive modes together: with J the
+ * derivative by the shifts and B the positive columns (data and penalty rows), the normal matrix of the
+ * shifts is J^T J - |R^-T B^T J|^2, R the triangle of B. Damped after Levenberg and Marquardt. The strength
+ * of the regularisation and the level of the modes are renewed between rounds. */
 #include "fit/superpose/joint.h"
 
 #include <math.h>
@@ -47,7 +48,8 @@ static void project_unknown(an_joint *joint, size_t slot, size_t i_isotherm, con
     an_nnls_half(&joint->smooth.nnls, half, joint->scratch);
 }
 
-/* Normal matrix and gradient of the shifts at `now`. In: model and slope; out: also `model` in units of ln 10 for b. */
+/* Normal matrix and gradient of the shifts at `now`. In: model and slope; out: also `model` in units of ln 10
+ * for b. */
 static void linearise(an_joint *joint)
 {
     size_t n = joint->n_outer, stride = joint->most_modes + 1;
@@ -74,7 +76,8 @@ static void linearise(an_joint *joint)
     }
     for (size_t i = 0; i < n; i++)
         for (size_t j = 0; j <= i; j++) {
-            double h = an_dot(joint->half + i * stride, joint->half + j * stride, joint->smooth.nnls.n_passive);
+            double h =
+                an_dot(joint->half + i * stride, joint->half + j * stride, joint->smooth.nnls.n_passive);
             joint->normal[i * n + j] -= h;
             joint->normal[j * n + i] = joint->normal[i * n + j];
         }
@@ -131,8 +134,8 @@ static an_status improve(an_joint *joint, double *damping, double *gain)
     return AN_OK;
 }
 
-/* To the bottom at a fixed strength, until a step gains less than `enough`. The rows and the small problem are those of `now`
- * in the end. */
+/* To the bottom at a fixed strength, until a step gains less than `enough`. The rows and the small problem
+ * are those of `now` in the end. */
 static an_status descend(an_joint *joint, double enough, an_error *err)
 {
     double damping = 1e-3, gain = 0;
@@ -157,7 +160,8 @@ static void carry_level(an_joint *joint, const double *level, size_t n, double f
         at = fmin(fmax(at, 0), (double)(n - 1));
         size_t below = (size_t)at < n - 1 ? (size_t)at : n - 2;
         double part = at - (double)below;
-        joint->smooth.level_Pa[i] = ((1 - part) * level[below] + part * level[below + 1]) * per_decade / joint->per_decade;
+        joint->smooth.level_Pa[i] =
+            ((1 - part) * level[below] + part * level[below + 1]) * per_decade / joint->per_decade;
     }
     memset(joint->now.x_Pa, 0, (joint->n_mode + 1) * sizeof *joint->now.x_Pa);
     joint->smooth.n_mode = joint->n_mode;
@@ -182,7 +186,8 @@ static void begin(an_joint *joint, const an_joint *coarse)
     for (size_t p = 0; p < joint->n_point; p++)
         highest = fmax(highest, joint->input->point[p].storage_Pa);
     if (coarse)
-        carry_level(joint, coarse->smooth.level_Pa, coarse->n_mode, log10(coarse->time_s[0]), coarse->per_decade);
+        carry_level(joint, coarse->smooth.level_Pa, coarse->n_mode, log10(coarse->time_s[0]),
+                    coarse->per_decade);
     else
         an_smooth_flat(&joint->smooth, highest / (double)joint->n_mode);
     memset(joint->now.x_Pa, 0, (joint->n_mode + 1) * sizeof *joint->now.x_Pa);
@@ -206,7 +211,8 @@ an_status an_joint_fit(an_joint *joint, an_strength_rule rule, const an_joint *c
     for (int round = 0; round < rounds; round++) {
         AN_TRY(choose_strength(joint, rule, err));
         int last = round + 1 == rounds;
-        double enough = last ? 1e-4 + 1e-9 * joint->smooth.chi_square : 0.05 + 1e-3 * joint->smooth.chi_square;
+        double enough =
+            last ? 1e-4 + 1e-9 * joint->smooth.chi_square : 0.05 + 1e-3 * joint->smooth.chi_square;
         AN_TRY(descend(joint, enough, err));
         if (!last) {
             an_smooth_follow(&joint->smooth, joint->per_decade);

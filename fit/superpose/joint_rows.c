@@ -1,6 +1,6 @@
-/* The joint fit's workspace and rows: whitening, the grid of modes, rows, model and slope. Stage: superpose. Method: every row
- * is linear in the spectrum once the shifts are given (anelast/response.h); written out here because it is the hot loop of
- * the whole line. Range: as anelast/superpose.h. */
+/* The joint fit's workspace and rows: whitening, the grid of modes, rows, model and slope. Stage: superpose.
+ * Method: every row is linear in the spectrum once the shifts are given (anelast/response.h); written out
+ * here because it is the hot loop of the whole line. Range: as anelast/superpose.h. */
 #include "fit/superpose/joint.h"
 
 #include <math.h>
@@ -114,7 +114,8 @@ static an_status make_pool(an_joint *joint, const double *log10_a, an_error *err
     return an_smooth_alloc(&joint->smooth, joint->most_modes, err);
 }
 
-an_status an_joint_alloc(an_joint *joint, const an_superpose_input *input, const an_joint_plan *plan, an_error *err)
+an_status an_joint_alloc(an_joint *joint, const an_superpose_input *input, const an_joint_plan *plan,
+                         an_error *err)
 {
     size_t k = input->n_isotherm;
     joint->input = input;
@@ -138,9 +139,10 @@ an_status an_joint_alloc(an_joint *joint, const an_superpose_input *input, const
     double reference_K = input->isotherm[plan->i_reference].temperature_K;
     for (size_t i = 0; i < k; i++) {
         joint->now.log10_a[i] = plan->log10_a[i] - plan->log10_a[plan->i_reference];
-        joint->now.log10_b[i] = plan->vertical == AN_VERTICAL_FREE ? plan->log10_b[i] - plan->log10_b[plan->i_reference]
-                                : plan->vertical == AN_VERTICAL_NONE ? 0
-                                                                     : log10(input->isotherm[i].temperature_K / reference_K);
+        joint->now.log10_b[i] =
+            plan->vertical == AN_VERTICAL_FREE   ? plan->log10_b[i] - plan->log10_b[plan->i_reference]
+            : plan->vertical == AN_VERTICAL_NONE ? 0
+                                                 : log10(input->isotherm[i].temperature_K / reference_K);
     }
     return AN_OK;
 }

@@ -1,5 +1,5 @@
-/* From a grid to a master document: selection, joint fit, law, reference temperature, the long end, remarks. Stage: superpose.
- * Methods stand in the files that this one calls. */
+/* From a grid to a master document: selection, joint fit, law, reference temperature, the long end, remarks.
+ * Stage: superpose. Methods stand in the files that this one calls. */
 #include "fit/superpose/master_make.h"
 
 #include <math.h>
@@ -18,7 +18,8 @@ typedef struct making {
 
 static void options_from(const an_procedure *procedure, an_superpose_options *options)
 {
-    static const an_vertical verticals[] = {AN_VERTICAL_NONE, AN_VERTICAL_DENSITY_TEMPERATURE, AN_VERTICAL_FREE};
+    static const an_vertical verticals[] = {AN_VERTICAL_NONE, AN_VERTICAL_DENSITY_TEMPERATURE,
+                                            AN_VERTICAL_FREE};
     an_superpose_defaults(options);
     options->reference_temperature_K = an_procedure_number(procedure, "reference_temperature");
     options->vertical_chosen = 1;
@@ -59,7 +60,8 @@ static an_status fit_laws(const making *m, an_master *master, an_error *err)
         temperature_K[i] = m->selection.input.isotherm[i].temperature_K;
         memcpy(buffer + i * n, m->result.noise_covariance + i * 2 * n, n * sizeof *buffer);
     }
-    an_law_data data = {n, temperature_K, m->result.log10_aT, buffer, temperature_noise(m), m->result.reference_temperature_K};
+    an_law_data data = {n,      temperature_K,        m->result.log10_aT,
+                        buffer, temperature_noise(m), m->result.reference_temperature_K};
     an_law_kind wanted = AN_LAW_NONE;
     an_law_kind_from_name(an_procedure_word(m->procedure, "law"), &wanted);
     an_status status = an_law_fit_choose(&data, wanted, master->trial, &n_trial, err);
@@ -143,7 +145,8 @@ static an_status fill_shifts(const making *m, an_master *master, an_error *err)
 }
 
 /* Residual of a cell against the spectrum of the joint fit, over its own noise. */
-static void fill_residual(const an_superposition *r, size_t i_shift, const an_cell *cell, an_master_point *point)
+static void fill_residual(const an_superposition *r, size_t i_shift, const an_cell *cell,
+                          an_master_point *point)
 {
     double b = pow(10, r->log10_bT[i_shift]);
     double complex fitted = b * an_maxwell_complex(&r->spectrum, point->reduced_omega);
@@ -186,7 +189,8 @@ static an_status fill_points(const making *m, an_master *master, an_error *err)
             const an_cell *cell = &m->grid->cell[i_cell];
             int fitted = p < m->selection.input.n_point && m->selection.cell_of[p] == i_cell;
             p += (size_t)fitted;
-            if (!(isfinite(cell->storage_Pa) && isfinite(cell->loss_Pa) && cell->noise[0] > 0 && cell->noise[2] > 0))
+            if (!(isfinite(cell->storage_Pa) && isfinite(cell->loss_Pa) && cell->noise[0] > 0 &&
+                  cell->noise[2] > 0))
                 continue;
             an_master_point *point = &master->point[master->n_point++];
             fill_point(m, i, cell, point);
@@ -219,12 +223,13 @@ static an_status remark_shifts(const making *m, an_master *master, an_error *err
         const an_shift *s = &master->shift[i];
         if (!s->determined)
             AN_TRY(an_remark_list_add(&master->remarks, "shift-undetermined", 0, err,
-                                      "the shift at %.2f K is uncertain by %.2g decades (noise part)", s->temperature_K,
-                                      s->u_noise_log10_aT));
+                                      "the shift at %.2f K is uncertain by %.2g decades (noise part)",
+                                      s->temperature_K, s->u_noise_log10_aT));
         most = fmax(most, fabs(pow(10, s->log10_bT) - 1));
     }
     if (master->vertical == AN_VERTICAL_FREE && most > limit)
-        AN_TRY(an_remark_list_add(&master->remarks, "vertical-large", 0, err, "vertical shifts reach %.3g %%", 100 * most));
+        AN_TRY(an_remark_list_add(&master->remarks, "vertical-large", 0, err, "vertical shifts reach %.3g %%",
+                                  100 * most));
     return AN_OK;
 }
 
@@ -260,8 +265,8 @@ static an_status carry_head(const an_grid *grid, an_master *master, an_error *er
     master->u_temperature_bias_K = fmax(grid->apparatus.temperature_bias.u, 0); /* NAN: none stated */
     for (size_t i = 0; i < grid->remarks.n; i++) {
         const an_remark *remark = &grid->remarks.rows[i];
-        AN_TRY(an_remark_list_add_as(&master->remarks, remark->kind->code, remark->severity, remark->burst, err, "%s",
-                                     remark->text));
+        AN_TRY(an_remark_list_add_as(&master->remarks, remark->kind->code, remark->severity, remark->burst,
+                                     err, "%s", remark->text));
     }
     return AN_OK;
 }

@@ -1,6 +1,6 @@
-/* Another reference temperature for a finished superposition. Stage: superpose. Method: exact algebra on shifts and times, with
- * log10 a_T and log10 b_T at the new reference from the law chosen, from T/T0, or from neighbours for free vertical
- * shifts. Range: inside the isotherms. */
+/* Another reference temperature for a finished superposition. Stage: superpose. Method: exact algebra on
+ * shifts and times, with log10 a_T and log10 b_T at the new reference from the law chosen, from T/T0, or from
+ * neighbours for free vertical shifts. Range: inside the isotherms. */
 #include "fit/superpose/master_make.h"
 
 #include <math.h>
@@ -74,18 +74,21 @@ static void move_laws(const an_move *move)
     }
 }
 
-an_status an_superposition_move(const an_superpose_input *input, const an_move *move, an_superposition *result,
-                                an_error *err)
+an_status an_superposition_move(const an_superpose_input *input, const an_move *move,
+                                an_superposition *result, an_error *err)
 {
     const an_law_trial *chosen = chosen_of(move->trial, move->n_trial);
     double temperature_K = move->temperature_K;
-    double low_K = input->isotherm[0].temperature_K, high_K = input->isotherm[input->n_isotherm - 1].temperature_K;
+    double low_K = input->isotherm[0].temperature_K,
+           high_K = input->isotherm[input->n_isotherm - 1].temperature_K;
     double by[2], variance[2];
     if (temperature_K < low_K || temperature_K > high_K)
-        return an_fail(err, AN_E_SCIENCE, NULL, "reference temperature %.2f K, where %.2f to %.2f K is measured", temperature_K,
-                       low_K, high_K);
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "reference temperature %.2f K, where %.2f to %.2f K is measured", temperature_K, low_K,
+                       high_K);
     if (!chosen)
-        return an_fail(err, AN_E_SCIENCE, NULL, "reference temperature %.2f K is no isotherm's, and no law leads there",
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "reference temperature %.2f K is no isotherm's, and no law leads there",
                        temperature_K);
     AN_TRY(an_law_log10_aT(&chosen->law, temperature_K, AN_RANGE_MARK, &by[0], err));
     double u = an_law_u_log10_aT(&chosen->law, temperature_K);

@@ -1,5 +1,6 @@
-/* Which isotherms and cells of a grid take part in the superposition. Stage: superpose, between the grid document and the
- * numerics. Method: none but choosing; nothing is interpolated into cells that are missing. */
+/* Which isotherms and cells of a grid take part in the superposition. Stage: superpose, between the grid
+ * document and the numerics. Method: none but choosing; nothing is interpolated into cells that are missing.
+ */
 #include "fit/superpose/master_make.h"
 
 #include <math.h>
@@ -49,7 +50,8 @@ static void add_cell(an_selection *s, const an_cell *cell, int i_cell)
                                        {cell->noise[0], cell->noise[1], cell->noise[2]}};
     for (size_t k = 0; k < AN_SOURCE_COUNT; k++)
         for (size_t c = 0; c < 2; c++)
-            s->common[2 * (p * AN_SOURCE_COUNT + k) + c] = isfinite(cell->common[k][c]) ? cell->common[k][c] : 0;
+            s->common[2 * (p * AN_SOURCE_COUNT + k) + c] =
+                isfinite(cell->common[k][c]) ? cell->common[k][c] : 0;
 }
 
 static void add_isotherm(an_selection *s, const an_grid *grid, int i_isotherm)
@@ -76,7 +78,8 @@ static an_status make_room(an_selection *s, const an_grid *grid, an_error *err)
     return AN_OK;
 }
 
-an_status an_selection_make(const an_grid *grid, an_selection *selection, an_remark_list *remarks, an_error *err)
+an_status an_selection_make(const an_grid *grid, an_selection *selection, an_remark_list *remarks,
+                            an_error *err)
 {
     AN_TRY(make_room(selection, grid, err));
     int cooling = cooling_prevails(grid);
@@ -86,8 +89,8 @@ an_status an_selection_make(const an_grid *grid, an_selection *selection, an_rem
         if (!other && !empty)
             add_isotherm(selection, grid, i);
         else
-            AN_TRY(an_remark_list_add(remarks, "isotherm-left-out", 0, err, "the isotherm at %.2f K is left out: %s",
-                                      isotherm->temperature_K,
+            AN_TRY(an_remark_list_add(remarks, "isotherm-left-out", 0, err,
+                                      "the isotherm at %.2f K is left out: %s", isotherm->temperature_K,
                                       empty     ? "no cell of it can be used"
                                       : cooling ? "it was reached by heating, most others by cooling"
                                                 : "it was reached by cooling, most others by heating"));
@@ -99,7 +102,8 @@ an_status an_selection_make(const an_grid *grid, an_selection *selection, an_rem
     double u = grid->apparatus.temperature_bias.u;
     selection->input.u_temperature_K = u > 0 ? u : 0;
     if (selection->input.n_isotherm < 2)
-        return an_fail(err, AN_E_SCIENCE, grid->id, "%zu isotherm with usable cells: superposition wants two or more",
+        return an_fail(err, AN_E_SCIENCE, grid->id,
+                       "%zu isotherm with usable cells: superposition wants two or more",
                        selection->input.n_isotherm);
     return AN_OK;
 }

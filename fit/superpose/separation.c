@@ -1,7 +1,7 @@
-/* Distance of isotherms in the plane of phase angle over |E*|/b_T: free of time, so free of horizontal shifts. Stage: superpose.
- * Method: [VP98] as a number: every point against every other isotherm that brackets its |E*|, linear in ln |E*|, and beside
- * it the distance that the noise of the three points makes. Range: brackets no wider than 0.8 in ln |E*|, so that the
- * chord stays close to the curve. */
+/* Distance of isotherms in the plane of phase angle over |E*|/b_T: free of time, so free of horizontal
+ * shifts. Stage: superpose. Method: [VP98] as a number: every point against every other isotherm that
+ * brackets its |E*|, linear in ln |E*|, and beside it the distance that the noise of the three points makes.
+ * Range: brackets no wider than 0.8 in ln |E*|, so that the chord stays close to the curve. */
 #include "anelast/superpose.h"
 
 #include <math.h>
@@ -10,14 +10,15 @@ static const double ln10 = 2.302585092994046;
 static const double widest_bracket = 0.8;
 
 typedef struct place {
-    double x, y; /* ln |E*|/b, phase angle [rad] */
+    double x, y;       /* ln |E*|/b, phase angle [rad] */
     double xx, xy, yy; /* their covariance */
 } place;
 
 static place place_of(const an_superpose_point *p, double log10_b)
 {
     double m2 = p->storage_Pa * p->storage_Pa + p->loss_Pa * p->loss_Pa;
-    double c = p->storage_Pa / m2, s = p->loss_Pa / m2; /* d ln|E*| = c dE' + s dE'', d delta = -s dE' + c dE'' */
+    double c = p->storage_Pa / m2,
+           s = p->loss_Pa / m2; /* d ln|E*| = c dE' + s dE'', d delta = -s dE' + c dE'' */
     const double *v = p->noise;
     return (place){.x = 0.5 * log(m2) - ln10 * log10_b,
                    .y = atan2(p->loss_Pa, p->storage_Pa),
@@ -33,7 +34,8 @@ static double variance_across(const place *p, double slope)
 }
 
 /* One point against one isotherm: squared distance and its noise. Returns 0 where no bracket serves. */
-static int compare(const place *at, const an_superpose_input *input, size_t i_isotherm, double log10_b, double square[2])
+static int compare(const place *at, const an_superpose_input *input, size_t i_isotherm, double log10_b,
+                   double square[2])
 {
     const an_superpose_isotherm *isotherm = &input->isotherm[i_isotherm];
     for (size_t i = 0; i + 1 < isotherm->n_point; i++) {
@@ -52,8 +54,8 @@ static int compare(const place *at, const an_superpose_input *input, size_t i_is
     return 0;
 }
 
-void an_separation(const an_superpose_input *input, const double *log10_bT, double *rms_rad, double *noise_rad,
-                   size_t *n_pair)
+void an_separation(const an_superpose_input *input, const double *log10_bT, double *rms_rad,
+                   double *noise_rad, size_t *n_pair)
 {
     double sum[2] = {0, 0};
     size_t n = 0;

@@ -1,12 +1,10 @@
-/* Superposition as a whole: checks, reference, start, joint fits with the candidate laws of b_T, refinement of the grid of
- * modes, and the result. Stage: superpose. Methods stand in the files that this one calls. */
+/* Superposition as a whole: checks, reference, start, joint fits with the candidate laws of b_T, refinement
+ * of the grid of modes. Stage: superpose. Methods stand in the files that this one calls. */
 #include "anelast/superpose.h"
 #include "fit/superpose/joint.h"
-#include "fit/superpose/verdict.h"
 
 #include <math.h>
 #include <stdlib.h>
-#include <string.h>
 
 static const double degree = 0.017453292519943295;
 
@@ -17,11 +15,12 @@ void an_superpose_defaults(an_superpose_options *options)
         .vertical_chosen = 1,
         .rule = AN_STRENGTH_EVIDENCE,
         .equilibrium = 1,
-        .modes_per_decade = 4, /* ripple of a smooth spectrum 2e-7: 4 exp(-pi^2/h), h = ln(10)/4 the spacing in ln tau */
+        /* ripple of a smooth spectrum 1e-7: 4 exp(-pi^2/h), h = ln(10)/4 the spacing in ln tau */
+        .modes_per_decade = 4,
         .most_modes_per_decade = 16,
         .extend_decades = 1,
-        .model_floor = 1e-3,        /* a tenth of the 1 % that the trade asks of the modulus */
-        .doubtful_chi_square = 2,   /* proposed defaults of the house: 2 and 5, 1 and 3 degrees */
+        .model_floor = 1e-3,      /* a tenth of the 1 % that the trade asks of the modulus */
+        .doubtful_chi_square = 2, /* proposed defaults of the house: 2 and 5, 1 and 3 degrees */
         .complex_chi_square = 5,
         .doubtful_rad = 1 * degree,
         .complex_rad = 3 * degree,
@@ -29,51 +28,39 @@ void an_superpose_defaults(an_superpose_options *options)
     };
 }
 
-void an_superposition_init(an_superposition *result)
-{
-    *result = (an_superposition){0};
-    an_maxwell_init(&result->spectrum);
-}
-
-void an_superposition_clear(an_superposition *result)
-{
-    free(result->log10_aT);
-    free(result->log10_bT);
-    free(result->noise_covariance);
-    free(result->common_covariance);
-    free(result->determined);
-    free(result->residual);
-    an_maxwell_clear(&result->spectrum);
-    an_superposition_init(result);
-}
-
 static an_status check_point(const an_superpose_point *p, size_t i, an_error *err)
 {
     double det = p->noise[0] * p->noise[2] - p->noise[1] * p->noise[1];
     if (!(p->omega_rad_s > 0 && isfinite(p->omega_rad_s)))
-        return an_fail(err, AN_E_VALUE, NULL, "point %zu: angular frequency %g rad/s, where a finite value above 0 is allowed",
+        return an_fail(err, AN_E_VALUE, NULL,
+                       "point %zu: angular frequency %g rad/s, where a finite value above 0 is allowed",
                        i + 1, p->omega_rad_s);
     if (!(p->storage_Pa > 0 && isfinite(p->storage_Pa) && isfinite(p->loss_Pa)))
-        return an_fail(err, AN_E_VALUE, NULL, "point %zu: modulus %g + i %g Pa, where finite values with a positive storage "
-                       "modulus are allowed", i + 1, p->storage_Pa, p->loss_Pa);
+        return an_fail(err, AN_E_VALUE, NULL,
+                       "point %zu: modulus %g + i %g Pa, where finite values with a positive storage "
+                       "modulus are allowed",
+                       i + 1, p->storage_Pa, p->loss_Pa);
     if (!(p->noise[0] > 0 && p->noise[2] > 0 && det > 0 && isfinite(det)))
-        return an_fail(err, AN_E_VALUE, NULL, "point %zu: the noise covariance is not positive definite", i + 1);
+        return an_fail(err, AN_E_VALUE, NULL, "point %zu: the noise covariance is not positive definite",
+                       i + 1);
     return AN_OK;
 }
 
 static an_status check_input(const an_superpose_input *input, an_error *err)
 {
     if (input->n_isotherm < 2)
-        return an_fail(err, AN_E_SCIENCE, NULL, "%zu isotherm: superposition wants two or more", input->n_isotherm);
+        return an_fail(err, AN_E_SCIENCE, NULL, "%zu isotherm: superposition wants two or more",
+                       input->n_isotherm);
     for (size_t i = 0; i < input->n_point; i++)
         AN_TRY(check_point(&input->point[i], i, err));
     for (size_t i = 0; i < input->n_isotherm; i++) {
         const an_superpose_isotherm *k = &input->isotherm[i];
         if (!(k->temperature_K > 0) || k->n_point < 1 || k->first_point + k->n_point > input->n_point)
-            return an_fail(err, AN_E_VALUE, NULL, "isotherm %zu at %g K has no points of its own", i + 1, k->temperature_K);
+            return an_fail(err, AN_E_VALUE, NULL, "isotherm %zu at %g K has no points of its own", i + 1,
+                           k->temperature_K);
         if (i > 0 && !(k->temperature_K > k[-1].temperature_K))
-            return an_fail(err, AN_E_VALUE, NULL, "isotherm %zu at %g K is not above %g K", i + 1, k->temperature_K,
-                           k[-1].temperature_K);
+            return an_fail(err, AN_E_VALUE, NULL, "isotherm %zu at %g K is not above %g K", i + 1,
+                           k->temperature_K, k[-1].temperature_K);
     }
     return AN_OK;
 }
@@ -101,11 +88,13 @@ static double overlap_with(const an_superpose_input *input, size_t i, size_t oth
     return width > 0 ? (fmin(own[1], its[1]) - fmax(own[0], its[0])) / width : 0;
 }
 
-/* T0: the isotherm nearest to the one asked for; else the one nearest to the middle that overlaps both neighbours by half its
- * own range in ln |E*|, or, where none of the middle half does, the one that overlaps them most. */
+/* T0: the isotherm nearest to the one asked for; else the one nearest to the middle that overlaps both
+ * neighbours by half its own range in ln |E*|, or, where none of the middle half does, the one that overlaps
+ * them most. */
 static size_t choose_reference(const an_superpose_input *input, double wanted_K)
 {
-    static const double enough = 0.5, nearness = 1e-3; /* a step from the middle weighs less than a part in 1000 of overlap */
+    static const double enough = 0.5;
+    static const double nearness = 1e-3; /* a step from the middle weighs a part in 1000 of overlap */
     size_t n = input->n_isotherm, best = n / 2;
     double best_score = -INFINITY;
     for (size_t i = 0; i < n; i++) {
@@ -128,8 +117,8 @@ static size_t choose_reference(const an_superpose_input *input, double wanted_K)
 }
 
 /* Chain the pairs' areas. log10_a, log10_b: [n_isotherm], relative to the coldest. */
-static an_status start_chain(const an_superpose_input *input, an_vertical vertical, double *log10_a, double *log10_b,
-                             an_error *err)
+static an_status start_chain(const an_superpose_input *input, an_vertical vertical, double *log10_a,
+                             double *log10_b, an_error *err)
 {
     log10_a[0] = log10_b[0] = 0;
     for (size_t i = 0; i + 1 < input->n_isotherm; i++) {
@@ -150,12 +139,15 @@ static double reduced_of(const an_joint *joint)
 /* Schwarz's criterion of a joint fit [SCH78]. */
 static double criterion_of(const an_joint *joint)
 {
-    return joint->smooth.chi_square + log((double)joint->n_row) * ((double)joint->n_outer + joint->smooth.used);
+    return joint->smooth.chi_square +
+           log((double)joint->n_row) * ((double)joint->n_outer + joint->smooth.used);
 }
 
-/* Fit on ever finer grids while chi-square is above its expectation and each doubling takes off three tenths of it: a
- * spectrum of few sharp modes wants a finer grid than a smooth one. joint [in,out]: init'ed; out: the fit kept. */
-static an_status fit_refined(const an_superpose_input *input, an_joint_plan *plan, an_joint *joint, an_error *err)
+/* Fit on ever finer grids while chi-square is above its expectation and each doubling takes off three tenths
+ * of it: a spectrum of few sharp modes wants a finer grid than a smooth one. joint [in,out]: init'ed; out:
+ * the fit kept. */
+static an_status fit_refined(const an_superpose_input *input, an_joint_plan *plan, an_joint *joint,
+                             an_error *err)
 {
     static const double good = 1.3, worthwhile = 0.7;
     AN_TRY(an_joint_alloc(joint, input, plan, err));
@@ -183,7 +175,8 @@ static an_status fit_refined(const an_superpose_input *input, an_joint_plan *pla
 }
 
 /* Start and fit with one law of b_T. */
-static an_status fit_vertical(const an_superpose_input *input, an_joint_plan *plan, an_joint *joint, an_error *err)
+static an_status fit_vertical(const an_superpose_input *input, an_joint_plan *plan, an_joint *joint,
+                              an_error *err)
 {
     double *start = calloc(2 * input->n_isotherm, sizeof *start);
     if (!start)
@@ -198,9 +191,10 @@ static an_status fit_vertical(const an_superpose_input *input, an_joint_plan *pl
     return status;
 }
 
-/* Try all three laws of b_T; keep the best by Schwarz's criterion. Where none describes the data, the one without vertical
- * shifts: freedom must not cover up that the material does not superpose. */
-static an_status fit_chosen(const an_superpose_input *input, an_joint_plan *plan, an_joint *joint, an_error *err)
+/* Try all three laws of b_T; keep the best by Schwarz's criterion. Where none describes the data, the one
+ * without vertical shifts: freedom must not cover up that the material does not superpose. */
+static an_status fit_chosen(const an_superpose_input *input, an_joint_plan *plan, an_joint *joint,
+                            an_error *err)
 {
     static const an_vertical tried[] = {AN_VERTICAL_NONE, AN_VERTICAL_DENSITY_TEMPERATURE, AN_VERTICAL_FREE};
     double floor = plan->options->complex_chi_square, least = INFINITY;
@@ -229,61 +223,8 @@ static an_status fit_chosen(const an_superpose_input *input, an_joint_plan *plan
     return AN_OK;
 }
 
-static an_status result_alloc(an_superposition *result, size_t n_isotherm, size_t n_point, an_error *err)
-{
-    size_t n = 2 * n_isotherm;
-    result->log10_aT = calloc(n_isotherm, sizeof(double));
-    result->log10_bT = calloc(n_isotherm, sizeof(double));
-    result->noise_covariance = calloc(n * n, sizeof(double));
-    result->common_covariance = calloc(n * n, sizeof(double));
-    result->determined = calloc(n_isotherm, sizeof(int));
-    result->residual = calloc(2 * n_point, sizeof(double));
-    if (!result->log10_aT || !result->log10_bT || !result->noise_covariance || !result->common_covariance ||
-        !result->determined || !result->residual)
-        return an_fail_memory(err, "the result of the joint fit");
-    result->n_isotherm = n_isotherm;
-    result->n_point = n_point;
-    return AN_OK;
-}
-
-static an_status hand_out_spectrum(const an_joint *joint, an_superposition *result, an_error *err)
-{
-    AN_TRY(an_maxwell_alloc(&result->spectrum, joint->n_mode, err));
-    memcpy(result->spectrum.time_s, joint->time_s, joint->n_mode * sizeof(double));
-    memcpy(result->spectrum.modulus_Pa, joint->now.x_Pa, joint->n_mode * sizeof(double));
-    result->spectrum.equilibrium_Pa = joint->equilibrium ? joint->now.x_Pa[joint->n_mode] : 0;
-    result->omega_range[0] = INFINITY;
-    for (size_t p = 0; p < joint->n_point; p++) {
-        result->omega_range[0] = fmin(result->omega_range[0], joint->omega[p]);
-        result->omega_range[1] = fmax(result->omega_range[1], joint->omega[p]);
-    }
-    return AN_OK;
-}
-
-static an_status hand_out(an_joint *joint, const an_superpose_options *options, an_superposition *result, an_error *err)
-{
-    AN_TRY(result_alloc(result, joint->n_isotherm, joint->n_point, err));
-    AN_TRY(hand_out_spectrum(joint, result, err));
-    memcpy(result->log10_aT, joint->now.log10_a, joint->n_isotherm * sizeof(double));
-    memcpy(result->log10_bT, joint->now.log10_b, joint->n_isotherm * sizeof(double));
-    result->i_reference = joint->i_reference;
-    result->reference_temperature_K = joint->input->isotherm[joint->i_reference].temperature_K;
-    result->vertical = joint->vertical;
-    result->modes_per_decade = joint->per_decade;
-    result->strength = joint->strength;
-    result->used = joint->smooth.used;
-    result->chi_square = joint->smooth.chi_square;
-    result->degrees_of_freedom = fmax((double)joint->n_row - joint->smooth.used - (double)joint->n_outer, 1);
-    result->reduced_chi_square = result->chi_square / result->degrees_of_freedom;
-    result->inflation = fmax(result->reduced_chi_square, 1);
-    an_joint_model(joint);
-    an_verdict_fill(joint, options, result);
-    AN_TRY(an_joint_covariance(joint, options, result, err));
-    return result->simplicity == AN_SIMPLE ? AN_OK : AN_DUBIOUS;
-}
-
-an_status an_superpose(const an_superpose_input *input, const an_superpose_options *options, an_superposition *result,
-                       an_error *err)
+an_status an_superpose(const an_superpose_input *input, const an_superpose_options *options,
+                       an_superposition *result, an_error *err)
 {
     an_superpose_options standard;
     an_superpose_defaults(&standard);
@@ -299,19 +240,7 @@ an_status an_superpose(const an_superpose_input *input, const an_superpose_optio
     an_status status = options->vertical_chosen ? fit_chosen(input, &plan, &joint, err)
                                                 : fit_vertical(input, &plan, &joint, err);
     if (status >= 0)
-        status = hand_out(&joint, options, result, err);
+        status = an_joint_hand_out(&joint, options, result, err);
     an_joint_clear(&joint);
     return status;
-}
-
-const char *an_simplicity_word(an_simplicity simplicity)
-{
-    static const char *const words[] = {"simple", "doubtful", "complex"};
-    return words[simplicity];
-}
-
-const char *an_vertical_word(an_vertical vertical)
-{
-    static const char *const words[] = {"none", "density-temperature", "free"};
-    return words[vertical];
 }

@@ -1,8 +1,8 @@
-/* Does the material superpose? Stage: superpose, after the joint fit. Method: two numbers. The reduced chi-square of the fit,
- * with a floor added to the noise that stands for what no test of the trade can tell from an exact model (linearity,
- * evenness of temperature, ripple of discrete modes): where the noise is tiny, chi-square alone would condemn every
- * material. And the rms distance of isotherms in phase angle at equal |E*|, which needs no fit [VP98]. Range: the
- * thresholds are the caller's. */
+/* Does the material superpose? Stage: superpose, after the joint fit. Method: two numbers. The reduced
+ * chi-square of the fit, with a floor added to the noise that stands for what no test of the trade can tell
+ * from an exact model (linearity, evenness of temperature, ripple of discrete modes): where the noise is
+ * tiny, chi-square alone would condemn every material. And the rms distance of isotherms in phase angle at
+ * equal |E*|, which needs no fit [VP98]. Range: the thresholds are the caller's. */
 #include "fit/superpose/verdict.h"
 
 #include <math.h>
@@ -47,8 +47,8 @@ static void describe(const an_superpose_options *o, an_superposition *r)
              "%s: reduced chi-square %.3g (%.3g with a model floor of %.2g %%; limits %g, %g), isotherms "
              "%.2f degrees apart in phase angle at equal |E*| (limits %g, %g)",
              lead[r->simplicity], r->reduced_chi_square, r->reduced_with_floor, 100 * o->model_floor,
-             o->doubtful_chi_square, o->complex_chi_square, r->separation_rad / degree, o->doubtful_rad / degree,
-             o->complex_rad / degree);
+             o->doubtful_chi_square, o->complex_chi_square, r->separation_rad / degree,
+             o->doubtful_rad / degree, o->complex_rad / degree);
 }
 
 void an_verdict_fill(const an_joint *joint, const an_superpose_options *options, an_superposition *result)
@@ -56,11 +56,14 @@ void an_verdict_fill(const an_joint *joint, const an_superpose_options *options,
     fill_residuals(joint, options->model_floor, result);
     double rms;
     an_separation(joint->input, result->log10_bT, &rms, &result->separation_noise_rad, &result->n_separation);
-    result->separation_rad = sqrt(fmax(rms * rms - result->separation_noise_rad * result->separation_noise_rad, 0));
+    result->separation_rad =
+        sqrt(fmax(rms * rms - result->separation_noise_rad * result->separation_noise_rad, 0));
     result->simplicity = AN_SIMPLE;
-    if (!(result->reduced_with_floor <= options->doubtful_chi_square) || !(result->separation_rad <= options->doubtful_rad))
+    if (!(result->reduced_with_floor <= options->doubtful_chi_square) ||
+        !(result->separation_rad <= options->doubtful_rad))
         result->simplicity = AN_DOUBTFUL;
-    if (!(result->reduced_with_floor <= options->complex_chi_square) || !(result->separation_rad <= options->complex_rad))
+    if (!(result->reduced_with_floor <= options->complex_chi_square) ||
+        !(result->separation_rad <= options->complex_rad))
         result->simplicity = AN_COMPLEX;
     describe(options, result);
 }

@@ -1,7 +1,8 @@
 /* anelast/dense.h: small dense linear algebra of the fits: Householder reduction, triangles, Cholesky.
  *
- * Matrices are stored by columns, because every hot loop runs down a column; symmetric ones are full and row-major,
- * which is the same. Sums are taken in a fixed order, so that results do not change from run to run.
+ * Matrices are stored by columns, because every hot loop runs down a column; symmetric ones are full and
+ * row-major, which is the same. Sums are taken in a fixed order, so that results do not change from run to
+ * run.
  */
 #ifndef ANELAST_DENSE_H
 #define ANELAST_DENSE_H
@@ -29,15 +30,14 @@ double an_dot(const double *x, const double *y, size_t n);
 /* an_axpy: y += factor x over n. */
 void an_axpy(double factor, const double *x, double *y, size_t n);
 
-/* an_householder_reduce: reduce the first n_pivot columns of a to an upper triangle by Householder reflections [GV13,
- * Alg. 5.2.1] applied to all columns, so that columns beyond n_pivot (right-hand sides) become Q^T times themselves.
- * Below the triangle the pivot columns hold zeros.
- *   a  [in,out] n_row >= 1; n_pivot <= n_column. Where n_pivot > n_row only n_row columns are reduced. */
+/* an_householder_reduce: reduce the first n_pivot columns of a to an upper triangle by Householder
+ * reflections [GV13, Alg. 5.2.1] applied to all columns, so that columns beyond n_pivot (right-hand sides)
+ * become Q^T times themselves. Below the triangle the pivot columns hold zeros. a  [in,out] n_row >= 1;
+ * n_pivot <= n_column. Where n_pivot > n_row only n_row columns are reduced. */
 void an_householder_reduce(an_columns *a, size_t n_pivot);
 
-/* an_triangle_solve: x with R x = x_in, R the leading n x n upper triangle of r; columns whose diagonal is zero get 0.
- * an_triangle_solve_transposed: likewise R^T x = x_in.
- *   x  [in,out] [n] */
+/* an_triangle_solve: x with R x = x_in, R the leading n x n upper triangle of r; columns whose diagonal is
+ * zero get 0. an_triangle_solve_transposed: likewise R^T x = x_in. x  [in,out] [n] */
 void an_triangle_solve(const an_columns *r, double *x, size_t n);
 void an_triangle_solve_transposed(const an_columns *r, double *x, size_t n);
 

@@ -1,6 +1,7 @@
-/* anelast/response.h: rows of the response engine. Storage, loss, relaxation, holds with a finite rise and constant-rate pulls
- * are all linear in the equilibrium modulus and the strengths of the modes once the times and a_T are given, so each kind of
- * observation adds rows to one least-squares problem. Formulas and units as in maxwell.h, where the single modes stand.
+/* anelast/response.h: rows of the response engine. Storage, loss, relaxation, holds with a finite rise and
+ * constant-rate pulls are all linear in the equilibrium modulus and the strengths of the modes once the times
+ * and a_T are given, so each kind of observation adds rows to one least-squares problem. Formulas and units
+ * as in maxwell.h, where the single modes stand.
  */
 #ifndef ANELAST_RESPONSE_H
 #define ANELAST_RESPONSE_H
@@ -11,8 +12,8 @@ typedef enum an_response_kind {
     AN_RESPONSE_STORAGE = 0, /* E'(omega) [Pa] */
     AN_RESPONSE_LOSS,        /* E''(omega) [Pa] */
     AN_RESPONSE_RELAXATION,  /* E(t) [Pa] after an ideal step */
-    AN_RESPONSE_HOLD,        /* stress [Pa] at t since the start of a strain that rises at a rate and is then held */
-    AN_RESPONSE_PULL         /* stress [Pa] at t under a strain that grows at a rate */
+    AN_RESPONSE_HOLD, /* stress [Pa] at t since the start of a strain that rises at a rate and is then held */
+    AN_RESPONSE_PULL  /* stress [Pa] at t under a strain that grows at a rate */
 } an_response_kind;
 
 /* One number measured, and how it was measured. */
@@ -25,14 +26,15 @@ typedef struct an_observation {
     double log10_bT;    /* [1] elastic scaling */
     double value;       /* [Pa] */
     double u;           /* [Pa] standard uncertainty, noise part, > 0 */
-    double correlation; /* [1] with the observation before it in the list (E' with E'' of one burst), |r| < 1; else 0 */
+    double correlation; /* [1] with the observation before it in the list (E' with E'' of one burst), |r| < 1;
+                           else 0 */
 } an_observation;
 
 /* an_response_row: the row of one observation, b_T included: value = sum_i row[i] E_i + row[n_mode] E_e.
  *   time_s  [in]  [n_mode] relaxation times at the reference temperature, s
  *   row     [out] [n_mode + 1] dimensionless, modes then equilibrium
  *   slope   [out] [n_mode + 1] d row / d ln a_T; NULL allowed */
-void an_response_row(const an_observation *observation, const double *time_s, size_t n_mode, double *row, double *slope);
-
+void an_response_row(const an_observation *observation, const double *time_s, size_t n_mode, double *row,
+                     double *slope);
 
 #endif

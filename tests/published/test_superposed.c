@@ -1,10 +1,11 @@
 /* Superposition and spectra of published materials, responses made from their published Prony series.
  *
- * Polyvinyl butyral interlayer: Prony series and WLF constants read in a public input of a laminated-glass analysis; the series is
- * attributed, from memory, to Van Duser, Jagota & Bennison 1999, J. Eng. Mech. 125, 435. Its times lie two to three decades
- * apart, so that the curve has ripples: shifting must not lock on them. Low-density polyethylene melt: Laun 1978, Rheol. Acta
- * 17, 1 (from memory). PMMA: Park & Schapery 1999, Int. J. Solids Struct. 36, 1653 (from memory). Moduli at given times and
- * frequencies are exact for those series. */
+ * Polyvinyl butyral interlayer: Prony series and WLF constants read in a public input of a laminated-glass
+ * analysis; the series is attributed, from memory, to Van Duser, Jagota & Bennison 1999, J. Eng. Mech. 125,
+ * 435. Its times lie two to three decades apart, so that the curve has ripples: shifting must not lock on
+ * them. Low-density polyethylene melt: Laun 1978, Rheol. Acta 17, 1 (from memory). PMMA: Park & Schapery
+ * 1999, Int. J. Solids Struct. 36, 1653 (from memory). Moduli at given times and frequencies are exact for
+ * those series. */
 #include "anelast/spectrum.h"
 #include "anelast/superpose.h"
 
@@ -19,8 +20,10 @@
 #include "check.h"
 #include "synthetic.h"
 
-static double pvb_weight[] = {.1606, .07877, .2912, .071155, .2688, .089568, .030183, .0076056, .0009634, .0004059, .0006143};
-static double pvb_time[] = {3.2557e-11, 4.9491e-9, 7.2427e-8, 9.8635e-6, 2.8059e-3, .16441, 2.2648, 35.364, 9367.5, 6.4141e5, 4.1347e7};
+static double pvb_weight[] = {.1606,   .07877,   .2912,    .071155,  .2688,   .089568,
+                              .030183, .0076056, .0009634, .0004059, .0006143};
+static double pvb_time[] = {3.2557e-11, 4.9491e-9, 7.2427e-8, 9.8635e-6, 2.8059e-3, .16441,
+                            2.2648,     35.364,    9367.5,    6.4141e5,  4.1347e7};
 
 static double pvb_wlf(double temp_degc)
 {
@@ -55,8 +58,9 @@ static void pvb_shifts_under_ripple(void **state)
     assert_int_equal(an_superpose(&input, &options, &r, NULL), AN_OK);
     double rms, spread;
     synthetic_judge(&s, &r, &rms, &spread);
-    assert_true(rms < 0.01);                   /* decades; 0.2 % noise, ten frequencies over three decades */
-    assert_true(spread > 0.3 && spread < 2.0); /* one run, correlated errors: two or three independent values */
+    assert_true(rms < 0.01); /* decades; 0.2 % noise, ten frequencies over three decades */
+    assert_true(spread > 0.3 &&
+                spread < 2.0); /* one run, correlated errors: two or three independent values */
     assert_int_equal(r.simplicity, AN_SIMPLE);
     /* Published shift at 0 degC: 5.822785 (exact from the constants). */
     size_t n = 2 * r.n_isotherm;
@@ -95,9 +99,11 @@ static void polyethylene_melt_is_a_liquid(void **state)
     assert_int_equal(an_spectrum_dense(o, 120, NULL, &spectrum, NULL), AN_OK);
     assert_int_equal(spectrum.end_state, AN_LIQUID);
     assert_true(spectrum.model.equilibrium_Pa == 0);
-    /* Exact: zero-shear viscosity 51063.7 Pa s; half a per cent noise, some thirty points in the terminal zone. */
+    /* Exact: zero-shear viscosity 51063.7 Pa s; half a per cent noise, some thirty points in the terminal
+     * zone. */
     assert_relative(an_maxwell_viscosity(&spectrum.model), 51063.7, 0.02);
-    /* Laun's list at 0.1 rad/s: 1223.9767 and 2269.4721 Pa; twice the noise of one point, which is relative to |E*|. */
+    /* Laun's list at 0.1 rad/s: 1223.9767 and 2269.4721 Pa; twice the noise of one point, which is relative
+     * to |E*|. */
     assert_close(an_maxwell_storage(&spectrum.model, 0.1), 1223.9767, 0.01 * 2578);
     assert_close(an_maxwell_loss(&spectrum.model, 0.1), 2269.4721, 0.01 * 2578);
     an_spectrum_clear(&spectrum);
@@ -107,7 +113,8 @@ static void polyethylene_melt_is_a_liquid(void **state)
 static void pmma_few_modes(void **state)
 {
     (void)state;
-    double times[11], moduli[] = {194e6, 283e6, 554e6, 602e6, 388e6, 156e6, 41e6, 13.8e6, 3.68e6, 0.79e6, 0.96e6};
+    double times[11],
+        moduli[] = {194e6, 283e6, 554e6, 602e6, 388e6, 156e6, 41e6, 13.8e6, 3.68e6, 0.79e6, 0.96e6};
     for (int k = -2; k <= 8; k++)
         times[k + 2] = 2 * pow(10, k);
     an_maxwell pmma = {11, times, moduli, 2.24e6};
@@ -123,7 +130,8 @@ static void pmma_few_modes(void **state)
     assert_true(prony.model.n_mode <= 16); /* the series itself has eleven */
     assert_true(prony.worst_error <= 0.005);
     /* Exact from the series: E(t) at 1, 1e2, 1e4, 1e6, 1e8 s, MPa. */
-    static const double at[] = {1, 1e2, 1e4, 1e6, 1e8}, exact[] = {1515.0197, 450.04036, 46.697046, 6.2716997, 2.8275924};
+    static const double at[] = {1, 1e2, 1e4, 1e6, 1e8},
+                        exact[] = {1515.0197, 450.04036, 46.697046, 6.2716997, 2.8275924};
     for (int i = 0; i < 5; i++)
         assert_relative(an_maxwell_relaxation(&prony.model, at[i]), 1e6 * exact[i], 0.01);
     assert_int_equal(an_prony_uncertainty(o, 160, &prony, NULL), AN_OK);

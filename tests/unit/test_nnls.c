@@ -1,5 +1,5 @@
-/* Non-negative least squares against problems whose optimum is known, and against the Karush-Kuhn-Tucker conditions, which
- * are necessary and sufficient for this convex problem [LH74, ch. 23]. */
+/* Non-negative least squares against problems whose optimum is known, and against the Karush-Kuhn-Tucker
+ * conditions, which are necessary and sufficient for this convex problem [LH74, ch. 23]. */
 #include "anelast/nnls.h"
 
 #include <setjmp.h>
@@ -72,7 +72,8 @@ static void conditions_hold_on_kernels_and_random(void **state)
     uint64_t seed = 7;
     for (int round = 0; round < 30; round++) {
         for (size_t j = 0; j < columns; j++)
-            for (size_t i = 0; i < rows; i++) { /* odd rounds: nearly dependent Maxwell kernels, as in every spectrum */
+            for (size_t i = 0; i < rows;
+                 i++) { /* odd rounds: nearly dependent Maxwell kernels, as in every spectrum */
                 double q = pow(10, -4 + 8.0 * (double)i / rows - (4 - 8.0 * (double)j / columns));
                 a[i + j * rows] = round % 2 ? q / (1 + q * q) : next_random(&seed);
             }
@@ -87,7 +88,8 @@ static void conditions_hold_on_kernels_and_random(void **state)
             warm[j] = j % 3 ? cold[j] : 1;
         assert_int_equal(an_nnls_solve(&nnls, &matrix, b, warm, &second), AN_OK);
         check_kkt(&matrix, b, warm);
-        assert_close(second.residual_square, first.residual_square, 1e-9 * first.residual_square); /* the optimum is unique in |r| */
+        assert_close(second.residual_square, first.residual_square,
+                     1e-9 * first.residual_square); /* the optimum is unique in |r| */
     }
     an_nnls_clear(&nnls);
 }

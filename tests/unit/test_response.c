@@ -1,5 +1,6 @@
-/* Rows of the response engine against the responses of the whole model, and their slopes against central differences
- * (truncation h^2/6 of the third derivative, which is of order one in ln a: 1e-8 at h = 1e-4, with rounding 1e-12). */
+/* Rows of the response engine against the responses of the whole model, and their slopes against central
+ * differences (truncation h^2/6 of the third derivative, which is of order one in ln a: 1e-8 at h = 1e-4,
+ * with rounding 1e-12). */
 #include "anelast/maxwell.h"
 #include "anelast/response.h"
 
@@ -36,7 +37,8 @@ static void rows_are_the_model(void **state)
     assert_relative(predict(&o), b * an_maxwell_loss(&model, 3 * a), 1e-13);
     o.kind = AN_RESPONSE_RELAXATION;
     assert_relative(predict(&o), b * an_maxwell_relaxation(&model, 3 / a), 1e-13);
-    /* At another temperature all times stretch by a_T and the strain rate is that of the test: stress(t) = b a sigma(t/a). */
+    /* At another temperature all times stretch by a_T and the strain rate is that of the test: stress(t) = b
+     * a sigma(t/a). */
     o.kind = AN_RESPONSE_HOLD;
     assert_relative(predict(&o), b * a * an_maxwell_hold(&model, 0.02, 0.5 / a, 3 / a), 1e-12);
     o.kind = AN_RESPONSE_PULL;
@@ -49,7 +51,8 @@ static void slopes_are_derivatives(void **state)
     const double h = 1e-4;
     for (int kind = AN_RESPONSE_STORAGE; kind <= AN_RESPONSE_PULL; kind++) {
         for (double at = 0.01; at < 100; at *= 3) {
-            an_observation o = {.kind = (an_response_kind)kind, .at = at, .rise_s = 0.5, .rate_per_s = 1, .log10_aT = 0.3};
+            an_observation o = {
+                .kind = (an_response_kind)kind, .at = at, .rise_s = 0.5, .rate_per_s = 1, .log10_aT = 0.3};
             an_observation up = o, down = o;
             up.log10_aT += h / log(10);
             down.log10_aT -= h / log(10);
@@ -65,6 +68,7 @@ static void slopes_are_derivatives(void **state)
 
 int main(void)
 {
-    const struct CMUnitTest tests[] = {cmocka_unit_test(rows_are_the_model), cmocka_unit_test(slopes_are_derivatives)};
+    const struct CMUnitTest tests[] = {cmocka_unit_test(rows_are_the_model),
+                                       cmocka_unit_test(slopes_are_derivatives)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

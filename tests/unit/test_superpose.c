@@ -1,6 +1,6 @@
-/* Superposition on made data of known truth. Limits: a shift's error against its own stated uncertainty (a campaign of 25 runs has
- * the ratio's rms within 0.8..1.25: errors within a run are correlated, so a run counts as about two or three independent
- * values), 0.02 decades where the noise is 0.3 %. */
+/* Superposition on made data of known truth. Limits: a shift's error against its own stated uncertainty (a
+ * campaign of 25 runs has the ratio's rms within 0.8..1.25: errors within a run are correlated, so a run
+ * counts as about two or three independent values), 0.02 decades where the noise is 0.3 %. */
 #include "anelast/superpose.h"
 
 #include <setjmp.h>
@@ -62,7 +62,8 @@ static void shifts_and_their_uncertainty(void **state)
         double rms, spread;
         synthetic_judge(&s, &r, &rms, &spread);
         assert_true(rms < 0.02);
-        assert_true(r.reduced_chi_square > 0.6 && r.reduced_chi_square < 1.5); /* 130 degrees of freedom: 1 +- 0.12 */
+        assert_true(r.reduced_chi_square > 0.6 &&
+                    r.reduced_chi_square < 1.5); /* 130 degrees of freedom: 1 +- 0.12 */
         sum += spread * spread;
         an_superposition_clear(&r);
     }
@@ -173,7 +174,8 @@ static void refuses_what_cannot_be_joined(void **state)
     an_superposition_clear(&r);
 }
 
-/* A common scale on all moduli moves no shift; a scale that grows with temperature moves free b by just that. */
+/* A common scale on all moduli moves no shift; a scale that grows with temperature moves free b by just that.
+ */
 static void common_sources_pass_through(void **state)
 {
     (void)state;
@@ -219,7 +221,8 @@ static void area_is_exact_on_straight_lines(void **state)
     an_superpose_point point[10];
     for (int i = 0; i < 10; i++) {
         double x = i % 5 * 0.5, shift = i < 5 ? 0 : -0.8;
-        point[i] = (an_superpose_point){pow(10, x), pow(10, 7 + 0.4 * (x + shift)), pow(10, 6), {1e8, 0, 1e8}};
+        point[i] =
+            (an_superpose_point){pow(10, x), pow(10, 7 + 0.4 * (x + shift)), pow(10, 6), {1e8, 0, 1e8}};
     }
     an_superpose_input input = {2, isotherm, 10, point, 0, NULL, 0};
     an_area_shift shift;
@@ -231,9 +234,12 @@ static void area_is_exact_on_straight_lines(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(shifts_and_their_uncertainty),  cmocka_unit_test(vertical_law_is_found),
-        cmocka_unit_test(free_vertical_shifts),          cmocka_unit_test(two_processes_are_complex),
-        cmocka_unit_test(refuses_what_cannot_be_joined), cmocka_unit_test(common_sources_pass_through),
+        cmocka_unit_test(shifts_and_their_uncertainty),
+        cmocka_unit_test(vertical_law_is_found),
+        cmocka_unit_test(free_vertical_shifts),
+        cmocka_unit_test(two_processes_are_complex),
+        cmocka_unit_test(refuses_what_cannot_be_joined),
+        cmocka_unit_test(common_sources_pass_through),
         cmocka_unit_test(area_is_exact_on_straight_lines),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
