@@ -29,8 +29,7 @@ typedef struct an_material {
     double fit_error;         /* [1] rms relative error of the spectrum against the data */
     double fit_error_worst;   /* [1] */
     double u_common_relative; /* [1] common part: a scale on all moduli */
-    double
-        u_temperature_bias_K; /* [K] common part of all temperatures; times the law's slope it adds to log10 a_T */
+    double u_temperature_bias_K;    /* [K] common to all temperatures; times the slope it adds to log10 a_T */
     double window_time_s[2];        /* [s] trusted times at T0 */
     double window_temperature_K[2]; /* [K] measured temperatures */
     double strain_limit;            /* [1] greatest strain amplitude measured; NAN: not known */
