@@ -191,6 +191,10 @@ static an_status judge(job *one, int i_stage, const an_stage_end *end, an_error 
 static void say_missing(const an_after_run *run, char *text, size_t size)
 {
     text[0] = '\0';
+    if (run->n_oscillation == 0)
+        snprintf(text, size,
+                 "points=the run holds no oscillation: holds and pulls are kept, and no modulus is made of "
+                 "them here");
     if (run->no_material[0])
         snprintf(text, size, "material=%s", run->no_material);
     for (int i = 0; i < STAGES; i++)

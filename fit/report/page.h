@@ -78,7 +78,8 @@ const an_assessment *page_assessment(const an_report *report);
 /* page_reading: of a kind of reading the one whose frequency is nearest to 1 Hz; NULL where none stands. */
 const an_reading *page_reading(const an_grid *grid, an_reading_kind kind);
 
-/* page_why: why a document is missing: what the report was told, else `otherwise`; plain. */
+/* page_why: why a document is missing: what the report was told about it or about one it
+ * would stand on, else `otherwise`; plain. */
 const char *page_why(const an_report *report, an_report_role role, const char *otherwise);
 
 /* page_no_material: why there is no material, in plain words; NULL where there is one. */

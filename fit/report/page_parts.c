@@ -105,7 +105,10 @@ const an_assessment *page_assessment(const an_report *report)
 
 const char *page_why(const an_report *report, an_report_role role, const char *otherwise)
 {
-    return report->missing[role][0] ? report->missing[role] : otherwise;
+    for (int earlier = role; earlier >= AN_REPORT_RUN; earlier--)
+        if (report->missing[earlier][0])
+            return report->missing[earlier];
+    return otherwise;
 }
 
 const char *page_no_material(const an_report *report)

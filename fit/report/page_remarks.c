@@ -19,7 +19,7 @@ static const an_remark_list *remark_list(const an_report *r, size_t i)
     const an_remark_list *heads[] = {
         r->has_run ? &r->run.remarks : NULL,           r->has_points ? &r->points.remarks : NULL,
         r->has_grid ? &r->grid.remarks : NULL,         r->has_master ? &r->master.remarks : NULL,
-        r->has_material ? &r->material.remarks : NULL,
+        r->has_material ? &r->material.remarks : NULL, &r->burst_remarks,
     };
     static const an_remark_list none = {0};
     size_t n_heads = sizeof heads / sizeof heads[0];

@@ -256,6 +256,8 @@ static void table_corrections(page *p)
 void section_tables(page *p)
 {
     const an_report *r = p->report;
+    if (!r->has_points && !r->has_grid && !r->has_master && !r->has_material)
+        return;
     fputs("<section>\n<h2>Tables</h2>\n", p->out);
     if (r->has_grid)
         table_readings(p);

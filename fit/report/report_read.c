@@ -31,6 +31,7 @@ void an_report_clear(an_report *report)
     an_grid_clear(&report->grid);
     an_master_clear(&report->master);
     an_material_clear(&report->material);
+    an_remark_list_clear(&report->burst_remarks);
     free(report->wave.time_s);
     free(report->wave.displacement);
     free(report->wave.force);
@@ -125,7 +126,7 @@ static int find_worst(const an_points *points)
 
 /* What the visitor of the run looks for, and where it puts it. */
 typedef struct search {
-    an_report_wave *wave;
+    an_report *report;
     int wanted; /* 0: the first */
 } search;
 
@@ -153,19 +154,32 @@ static an_status take_wave(an_report_wave *wave, const an_burst *burst, an_error
     return AN_OK;
 }
 
+static an_status take_remarks(an_report *report, const an_burst *burst, an_error *err)
+{
+    for (size_t i = 0; i < burst->remarks.n; i++) {
+        const an_remark *remark = &burst->remarks.rows[i];
+        AN_TRY(an_remark_list_add_as(&report->burst_remarks, remark->kind->code, remark->severity, burst->n,
+                                     err, "%s", remark->text));
+    }
+    return AN_OK;
+}
+
 static an_status visit_burst(const an_run *run, const an_burst *burst, void *user, an_error *err)
 {
     (void)run;
     search *s = user;
-    if (s->wave->burst != 0 || (s->wanted != 0 && burst->n != s->wanted))
+    an_report_wave *wave = &s->report->wave;
+    if (!s->report->has_points)
+        AN_TRY(take_remarks(s->report, burst, err));
+    if (wave->burst != 0 || (s->wanted != 0 && burst->n != s->wanted))
         return AN_OK;
-    return take_wave(s->wave, burst, err);
+    return take_wave(wave, burst, err);
 }
 
 static an_status read_run(an_report *report, const char *path, int burst, char sha256[AN_SHA256_SIZE],
                           an_error *err)
 {
-    search s = {.wave = &report->wave, .wanted = burst};
+    search s = {.report = report, .wanted = burst};
     if (burst == 0 && report->has_points) {
         s.wanted = find_worst(&report->points);
         report->wave.worst = s.wanted != 0;

@@ -57,6 +57,7 @@ typedef struct an_report {
     an_master master;
     an_material material;
     an_report_wave wave;
+    an_remark_list burst_remarks; /* of the run's bursts, where no points document carries them on */
     char missing[AN_REPORT_SOURCES]
                 [400]; /* by role: why there is no such document, plain; "" where nobody said */
 } an_report;

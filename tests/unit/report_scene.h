@@ -247,8 +247,25 @@ typedef struct scene {
     bool run, grid, master, material;
     an_simplicity simplicity;
     const char *name;
+    int hold;            /* the burst is a relaxation hold of so many samples; 0: an oscillation */
     const char *missing; /* as an_report_say_missing takes it; NULL: nothing is said */
 } scene;
+
+/* A step held for 300 s, decaying over 40 s, in place of the oscillation. */
+static void make_hold(an_report_wave *w, int n)
+{
+    w->kind = AN_BURST_HOLD;
+    w->set_frequency_Hz = NAN;
+    w->n = (size_t)n;
+    w->time_s = realloc(w->time_s, w->n * sizeof(double));
+    w->displacement = realloc(w->displacement, w->n * sizeof(double));
+    w->force = realloc(w->force, w->n * sizeof(double));
+    for (int i = 0; i < n; i++) {
+        w->time_s[i] = 300.0 * i / n;
+        w->displacement[i] = 1e-4;
+        w->force[i] = 2 + exp(-w->time_s[i] / 40);
+    }
+}
 
 static void build(an_report *report, const scene *s)
 {
@@ -259,6 +276,8 @@ static void build(an_report *report, const scene *s)
     if (s->run)
         add_run(report, s->name);
     add_points(report, &model);
+    if (s->hold)
+        make_hold(&report->wave, s->hold);
     if (s->missing)
         assert_int_equal(an_report_say_missing(report, s->missing, NULL), AN_OK);
     if (s->grid)

@@ -39,7 +39,7 @@ static char *page_of(const scene *s)
     return text;
 }
 
-static const scene whole = {true, true, true, true, AN_SIMPLE, "Rail pad rubber & <cord>", NULL};
+static const scene whole = {true, true, true, true, AN_SIMPLE, "Rail pad rubber & <cord>", 0, NULL};
 
 /* The page taken apart by a general XML parser. */
 typedef struct parsed {
@@ -184,7 +184,7 @@ static void test_everything_is_escaped(void **state)
 static void test_a_complex_material_has_no_spectrum_and_says_why(void **state)
 {
     (void)state;
-    const scene s = {true, true, true, false, AN_COMPLEX, "Hull core", NULL};
+    const scene s = {true, true, true, false, AN_COMPLEX, "Hull core", 0, NULL};
     parsed page = parse_scene(&s);
     assert_int_equal(
         count_nodes(&page, "//h:header//h:p[@class='absent' and contains(., 'do not superpose')]"), 1);
@@ -197,7 +197,7 @@ static void test_a_complex_material_has_no_spectrum_and_says_why(void **state)
 static void test_points_alone(void **state)
 {
     (void)state;
-    const scene s = {false, false, false, false, AN_SIMPLE, "", NULL};
+    const scene s = {false, false, false, false, AN_SIMPLE, "", 0, NULL};
     parsed page = parse_scene(&s);
     assert_int_equal(count_nodes(&page, "//h:header//h:p[@class='word' and .='No verdict']"), 1);
     assert_int_equal(count_nodes(&page, "//h:section[h:h2='Waveform']/h:p[@class='absent']"), 1);
@@ -209,15 +209,30 @@ static void test_points_alone(void **state)
     parsed_clear(&page);
 }
 
+static void test_a_long_hold_is_thinned_out_and_not_fitted(void **state)
+{
+    (void)state;
+    enum { LONG = 5000 };
+    const scene s = {.run = true, .name = "Pad", .hold = LONG};
+    parsed page = parse_scene(&s);
+    /* every third sample: the least step that leaves at most 2000 */
+    assert_int_equal(count_nodes(&page, "//s:svg[starts-with(s:title, 'Waveforms')]//s:circle"),
+                     2 * ((LONG + 2) / 3) + 1); /* and one in the legend */
+    assert_int_equal(count_nodes(&page, "//s:svg[starts-with(s:title, 'Force over')]"), 0);
+    assert_null(strstr(page.text, "fitted"));
+    parsed_clear(&page);
+}
+
 static void test_what_is_missing_is_said_with_its_reason(void **state)
 {
     (void)state;
     const scene s = {
         .run = true, .grid = true, .name = "Pad", .missing = "master=isotherms 3 and 4 <do not overlap>"};
     parsed page = parse_scene(&s);
+    /* at the verdict, where the master curve would stand, and where the spectrum that needs it would */
     assert_int_equal(
         count_nodes(&page, "//h:p[@class='absent' and contains(., 'Isotherms 3 and 4 <do not overlap>.')]"),
-        2);
+        3);
     parsed_clear(&page);
 
     an_report report;
@@ -250,6 +265,7 @@ int main(void)
         cmocka_unit_test(test_everything_is_escaped),
         cmocka_unit_test(test_a_complex_material_has_no_spectrum_and_says_why),
         cmocka_unit_test(test_points_alone),
+        cmocka_unit_test(test_a_long_hold_is_thinned_out_and_not_fitted),
         cmocka_unit_test(test_what_is_missing_is_said_with_its_reason),
         cmocka_unit_test(test_no_document_is_refused),
     };
