@@ -105,7 +105,7 @@ static void add_reading(const an_xml_node *reading, char *text)
 
 static void print_glass(const an_xml_node *grid, FILE *out)
 {
-    char text[TEXT] = "", head[64];
+    char read[TEXT] = "", text[TEXT] = "";
     double frequency = usual_frequency(grid);
     /* what was read stands before what was not */
     for (int refused = 0; refused < 2; refused++)
@@ -113,10 +113,10 @@ static void print_glass(const an_xml_node *grid, FILE *out)
              reading = an_xml_next(reading, "reading"))
             if (number_of(reading, "frequency", "value") == frequency &&
                 refused == (an_xml_attribute_of(reading, "refused") != NULL))
-                add_reading(reading, text);
-    snprintf(head, sizeof head, "glass %.3g Hz", frequency);
-    if (text[0])
-        put_block(out, head, 2, text);
+                add_reading(reading, read);
+    append(text, "", "at %.3g Hz: %s", frequency, read);
+    if (read[0])
+        put_block(out, "glass", 2, text);
     else
         put_block(out, "glass", 1, "no reading: too few temperatures at any one frequency");
 }

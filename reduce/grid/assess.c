@@ -157,9 +157,9 @@ static void find_largest_correction(const an_points *points, int n_points, an_as
         snprintf(assessment->largest_correction, sizeof assessment->largest_correction, "none");
     else
         snprintf(assessment->largest_correction, sizeof assessment->largest_correction,
-                 "%s: %.2g %% of the stiffness at burst %d (%.3g Hz, %.1f °C); K_s C = %.2g",
-                 rung_phrases[i_rung], 100 * size, most->burst, most->frequency_Hz, degc(most->temperature_K),
-                 most->stiffness_compliance);
+                 "%s: %.*f %% of stiffness at burst %d (%.3g Hz, %.1f °C); K_s C = %.2g",
+                 rung_phrases[i_rung], size < 0.1 ? 1 : 0, 100 * size, most->burst, most->frequency_Hz,
+                 degc(most->temperature_K), most->stiffness_compliance);
 }
 
 static void say_missing(const an_grid *grid, an_assessment *assessment)

@@ -268,11 +268,11 @@ void an_glass_peak(const an_series *series, an_reading *reading)
     int at = greatest(series);
     place where = {0};
     if (!comes_down(series, at, -1))
-        refuse(reading,
-               "does not fall at the cold end beyond noise: the peak lies near the edge of the range or below it");
+        refuse(reading, "does not fall at the cold end beyond noise: the peak lies near the edge of the "
+                        "range or below it");
     else if (!comes_down(series, at, 1))
-        refuse(reading,
-               "does not fall at the hot end beyond noise: the peak lies near the edge of the range or above it");
+        refuse(reading, "does not fall at the hot end beyond noise: the peak lies near the edge of the range "
+                        "or above it");
     else if (overlaps(series, at))
         refuse(reading, "two peaks overlap");
     if (reading->reason[0])

@@ -46,8 +46,10 @@ void an_grid_clear(an_grid *grid)
 
 static an_cell_rules rules_for(const an_points *points, int n_points, const an_procedure *procedure)
 {
-    an_cell_rules rules = {
-        an_procedure_number(procedure, "repeat_flag"), n_points, {0, 0, points->specimen.geometry.kind}};
+    an_cell_rules rules = {.width_K = an_procedure_number(procedure, "isotherm_width"),
+                           .drift_limit = an_procedure_number(procedure, "repeat_flag"),
+                           .n_run = n_points,
+                           .sharing = {0, 0, points->specimen.geometry.kind}};
     for (int i = 1; i < n_points; i++) {
         const an_points *run = &points[i];
         rules.sharing.specimens_differ |=
@@ -112,9 +114,10 @@ static an_status sort_in(const an_points *points, int n_points, const an_procedu
     an_gathering gathering;
     double rate_limit = an_procedure_number(procedure, "isotherm_drift");
     an_cell_rules rules = rules_for(points, n_points, procedure);
-    AN_TRY(an_gathering_make(points, n_points, an_procedure_number(procedure, "isotherm_width"), rate_limit,
-                             &gathering, err));
+    AN_TRY(an_gathering_make(points, n_points, rules.width_K, rate_limit, &gathering, err));
     an_status status = an_cells_make(&gathering, &rules, grid, err);
+    if (status >= 0)
+        status = an_returns_check(&gathering, &rules, grid, err);
     an_gathering_clear(&gathering);
     AN_TRY(status);
     AN_TRY(remark_motion(rate_limit, grid, err));

@@ -1,12 +1,14 @@
-/* outlier.c: cells that do not lie on the smooth curve of their isotherm are marked, and stay in the document.
+/* outlier.c: cells that do not lie on the smooth curve of their isotherm are marked, and stay in the
+ * document.
  *
- * Relaxation is smooth in log frequency: one Maxwell element already spreads its loss over more than a decade [FE80]. So
- * ln|E*| and delta of a cell follow from its neighbours on the isotherm, two on each side, by cubic interpolation
- * (quadratic next to the edges). The miss is held against what can explain it: the noise of the cell and of its
- * neighbours, a floor, and a share of what separates the interpolation from a straight line, since where the curve bends
- * interpolation is less sure. Of the cells that miss, the one is marked without which the others miss least, and the rest
- * is judged again without it: a bad cell makes its neighbours miss too. An isotherm of which more than a quarter would be
- * marked is left alone: that is not an outlier but another material.
+ * Relaxation is smooth in log frequency: one Maxwell element already spreads its loss over more than a decade
+ * [FE80]. So ln|E*| and delta of a cell follow from its neighbours on the isotherm, two on each side, by
+ * cubic interpolation (quadratic next to the edges). The miss is held against what can explain it: the noise
+ * of the cell and of its neighbours, a floor, and a share of what separates the interpolation from a straight
+ * line, since where the curve bends interpolation is less sure. Of the cells that miss, the one is marked
+ * without which the others miss least, and the rest is judged again without it: a bad cell makes its
+ * neighbours miss too. An isotherm of which more than a quarter would be marked is left alone: that is not an
+ * outlier but another material.
  */
 #include "reduce/grid/parts.h"
 

@@ -56,6 +56,7 @@ typedef struct an_sharing {
 
 /* How cells are made. */
 typedef struct an_cell_rules {
+    double width_K;     /* [K] greatest distance of a burst from its isotherm's mean */
     double drift_limit; /* [1] greatest relative difference of the first and the last repeat */
     int n_run;          /* points documents */
     an_sharing sharing;
@@ -65,6 +66,11 @@ typedef struct an_cell_rules {
  * scatter. Returns AN_OK or AN_E_MEMORY. */
 an_status an_cells_make(const an_gathering *gathering, const an_cell_rules *rules, an_grid *grid,
                         an_error *err);
+
+/* an_returns_check: a run that ends where it was before is compared with itself; a remark of the grid where
+ * it changed. Returns AN_OK or AN_E_MEMORY. */
+an_status an_returns_check(const an_gathering *gathering, const an_cell_rules *rules, an_grid *grid,
+                           an_error *err);
 
 /* an_outliers_mark: mark the cells that do not lie on the smooth curve of their isotherm, with a remark each.
  * Returns AN_OK or AN_E_MEMORY. */

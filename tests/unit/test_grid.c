@@ -314,6 +314,32 @@ static void the_largest_correction_is_named(void **state)
     an_points_clear(&points);
 }
 
+/* Back to the first temperature at 1 Hz after the sweep: unchanged, 4 % softer (drift), 14 % softer (a clamp
+ * that slipped). */
+static void a_return_is_compared_with_the_start(void **state)
+{
+    (void)state;
+    static const double softer[] = {1, 0.96, 0.86};
+    static const char *const codes[] = {NULL, "drift-check", "clamp-slip"};
+    for (int i = 0; i < 3; i++) {
+        an_points points;
+        an_grid grid;
+        made_begin(&points, "RP-0412-12");
+        made_sweep(&points, 245, 5, 6, sweep, N_SWEEP, 0.001);
+        double start = points.point[points.n_point - 1].start_s + 2000;
+        an_point *back = made_burst(&points, points.point[0].temperature_K + 0.2, 1, start, 0.001);
+        back->storage_Pa *= softer[i];
+        back->loss_Pa *= softer[i];
+        grid_of(&points, 1, &grid);
+        assert_int_equal(an_remark_list_has(&grid.remarks, "drift-check", back->burst), i == 1);
+        assert_int_equal(an_remark_list_has(&grid.remarks, "clamp-slip", back->burst), i == 2);
+        assert_int_equal(grid.assessment.verdict, i == 2 ? AN_PARTIAL : AN_USABLE);
+        assert_int_equal(grid.remarks.n, codes[i] ? 1 : 0);
+        an_grid_clear(&grid);
+        an_points_clear(&points);
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -328,6 +354,7 @@ int main(void)
         cmocka_unit_test(a_moving_isotherm_is_flagged),
         cmocka_unit_test(replicates_share_the_bench_only),
         cmocka_unit_test(the_verdict_follows_its_rule),
+        cmocka_unit_test(a_return_is_compared_with_the_start),
         cmocka_unit_test(the_largest_correction_is_named),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
