@@ -22,7 +22,7 @@ static const char style[] =
     ".usable{border-left-color:#1f6b4a}.usable .word{color:#1f6b4a}\n"
     ".partial{border-left-color:#8a5a00;border-left-style:double}.partial .word{color:#8a5a00}\n"
     ".repeat{border-left-color:#9c2a1e;border-left-style:dashed}.repeat .word{color:#9c2a1e}\n"
-    ".verdict h2{font-size:1rem;border:0;margin:.7rem 0 .1rem;padding:0}\n"
+    ".verdict .sub{font-weight:700;margin:.7rem 0 .1rem}\n"
     "dl{display:grid;grid-template-columns:max-content 1fr;gap:.15rem 1rem;margin:.4rem 0 .8rem}\n"
     "dt{color:#4c5a63}dd{margin:0;overflow-wrap:anywhere}\n"
     ".figures{display:grid;grid-template-columns:repeat(2,minmax(0,1fr));gap:18px;align-items:start}\n"
@@ -114,7 +114,7 @@ static void write_superposition(FILE *out, const an_report *report)
 static void write_before_unclamping(FILE *out, const an_assessment *assessment)
 {
     int n_said = 0;
-    fputs("<h2>Before unclamping</h2>\n<ul>\n", out);
+    fputs("<p class=\"sub\">Before unclamping</p>\n<ul>\n", out);
     for (int i = 0; i < assessment->n_reason; i++)
         if (what_to_do(assessment->reason[i])) {
             write_item(out, what_to_do(assessment->reason[i]));

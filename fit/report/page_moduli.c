@@ -225,10 +225,11 @@ static void figure_angle(page *p, strand *s)
 {
     char label[32];
     snprintf(label, sizeof label, "|%c*| (MPa)", p->letter);
-    an_figure_spec spec = {.id = "angle",
-                           .title = "Loss angle over the magnitude of the complex modulus",
-                           .description = "Isotherms of a material that superposes fall on one curve",
-                           .x = {.label = label, .symbol = "|E*|", .unit = "MPa", .scale = AN_AXIS_LOG10}};
+    an_figure_spec spec = {
+        .id = "angle",
+        .title = "Loss angle over the magnitude of the complex modulus",
+        .description = "Isotherms of a material that superposes fall on one curve",
+        .x = {.label = label, .symbol = "magnitude", .unit = "MPa", .scale = AN_AXIS_LOG10}};
     an_figure *figure = page_figure_new(p, &spec);
     if (!figure)
         return;

@@ -17,6 +17,9 @@ static void add_window(an_figure *figure, const double window[2])
         return;
     an_figure_add_shade(figure, -INFINITY, window[0], AN_SHADE_HATCH, "outside the trusted window");
     an_figure_add_shade(figure, window[1], INFINITY, AN_SHADE_HATCH, "outside the trusted window");
+    const double ends[2] = {window[0] / 3, window[1] * 3}, nothing[2] = {NAN, NAN};
+    an_figure_add_series(figure,
+                         &(an_figure_series){.x = ends, .y = nothing, .n = 2}); /* room for both ends */
 }
 
 /* Modes that are trusted, or those that are not. trusted NULL: by the window. */
@@ -93,8 +96,8 @@ static void figure_relaxation(page *p, const an_material *material)
         high[i] = y[i] * (1 + COVERAGE * u);
     }
     an_figure_add_panel(
-        figure, &(an_figure_axis){.label = y_label, .symbol = "E", .unit = "MPa", .scale = AN_AXIS_LOG10},
-        200);
+        figure,
+        &(an_figure_axis){.label = y_label, .symbol = "modulus", .unit = "MPa", .scale = AN_AXIS_LOG10}, 200);
     add_window(figure, material->window_time_s);
     if (u > 0)
         an_figure_add_band(figure, &(an_figure_band){.x = t,

@@ -291,7 +291,8 @@ static void figure_master(page *p)
         double range[2];
         page_ramp_temperature(p, figure);
         an_figure_add_panel(
-            figure, &(an_figure_axis){.label = y_label, .symbol = "E", .unit = "MPa", .scale = AN_AXIS_LOG10},
+            figure,
+            &(an_figure_axis){.label = y_label, .symbol = "modulus", .unit = "MPa", .scale = AN_AXIS_LOG10},
             230);
         add_points(p, figure, &m, 0, false);
         add_points(p, figure, &m, 1, false);
