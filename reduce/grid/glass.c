@@ -9,7 +9,7 @@
  * tangent at the steepest fall of log10 E', taken from the same kind of local polynomial.
  *
  * The noise part of a reading is what the noise of each value does to it. The part from the curve between the
- * isotherms is the difference to the polynomial one degree lower, taken as the half width of a rectangular
+ * isotherms is the greatest difference to other forms of that curve, taken as the half width of a rectangular
  * distribution.
  */
 #include "reduce/grid/parts.h"
@@ -171,7 +171,28 @@ static void refuse(an_reading *reading, const char *reason)
     snprintf(reading->reason, sizeof reading->reason, "%s", reason);
 }
 
-/* The reading, what the noise of each value does to it, and what one degree less does. */
+/* How far the reading moves at most with one degree less, or with the window moved by one temperature to
+ * either side. */
+static double other_forms(const an_series *series, const place *where, double temperature_K)
+{
+    double middle =
+        (series->temperature_K[where->first] + series->temperature_K[where->first + where->n - 1]) / 2;
+    double most = fabs(read_at(series, where, DEGREE - 1) - temperature_K);
+    if (middle < where->from_K || middle > where->to_K)
+        most = fmax(most, fabs(read_at(series, where, DEGREE - 2) - temperature_K));
+    for (int side = -1; side <= 1; side += 2) {
+        place moved = *where;
+        moved.first += side;
+        if (moved.first < 0 || moved.first + moved.n > series->n ||
+            series->temperature_K[moved.first] > where->from_K ||
+            series->temperature_K[moved.first + moved.n - 1] < where->to_K)
+            continue;
+        most = fmax(most, fabs(read_at(series, &moved, DEGREE) - temperature_K));
+    }
+    return most;
+}
+
+/* The reading, what the noise of each value does to it, and what another form of the curve does. */
 static void read_out(const an_series *series, const place *where, an_reading *reading)
 {
     double variance = 0, temperature = read_at(series, where, DEGREE);
@@ -191,7 +212,7 @@ static void read_out(const an_series *series, const place *where, an_reading *re
     }
     reading->temperature_K = temperature;
     reading->u_noise_K = sqrt(variance);
-    reading->u_form_K = fabs(read_at(series, where, DEGREE - 1) - temperature) / sqrt(3);
+    reading->u_form_K = other_forms(series, where, temperature) / sqrt(3);
 }
 
 static int too_few(const an_series *series, an_reading *reading)
