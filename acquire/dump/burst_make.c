@@ -68,7 +68,8 @@ static an_status set_clock(const an_rows *rows, an_burst *burst, const size_t *i
 
 double an_channel_tolerance(const an_channel_in *in, size_t i, double time_s)
 {
-    double place = pow(10, in->column.places[i]) * in->size * in->conversion.factor / in->conversion.divisor;
+    double place =
+        an_column_place(&in->column, i) * in->size * in->conversion.factor / in->conversion.divisor;
     return fmax(0.5 * place, 4e-16 * (fabs(time_s) + 1e-9));
 }
 

@@ -65,6 +65,14 @@ double an_column_value(const an_column *column, size_t i)
                         : (double)column->samples[i].integer / power_of_ten[column->decimals];
 }
 
+double an_column_place(const an_column *column, size_t i)
+{
+    int place = column->places[i];
+    if (place <= 0 && -place < POWERS)
+        return 1 / power_of_ten[-place];
+    return pow(10, place);
+}
+
 static void become_real(an_column *column)
 {
     for (size_t i = 0; i < column->n; i++)

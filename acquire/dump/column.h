@@ -45,6 +45,10 @@ an_status an_column_add_integer(an_column *column, int64_t value, an_error *err)
 /* an_column_value: the i-th sample [the dump's unit]. */
 double an_column_value(const an_column *column, size_t i);
 
+/* an_column_place: a unit of the last digit that the i-th sample's text had [the dump's unit]; about 0 for
+ * values that came from no text. The column keeps places. */
+double an_column_place(const an_column *column, size_t i);
+
 /* an_column_drop: remove some samples.
  *   rows [in] [n_rows] their indices, rising */
 void an_column_drop(an_column *column, const size_t *rows, size_t n_rows);

@@ -219,19 +219,23 @@ static int split_at_mark(const an_text_form *form, char mark, const char *text, 
     return n_cells > AN_CELLS_MOST ? n_cells : n_cells + 1;
 }
 
-an_status an_head_add_line(an_head *head, const char *text, size_t n, long line, bool comment, an_error *err)
+int an_head_split(const an_layout *layout, const char *text, size_t n, an_cell *cells)
 {
-    const an_text_form *form = &head->layout->text;
-    const char *mark = head->layout->key_separator;
-    an_cell cells[AN_CELLS_MOST + 2], none = {"", 0};
+    const an_text_form *form = &layout->text;
+    const char *mark = layout->key_separator;
     int n_cells = mark ? split_at_mark(form, mark[0], text, n, cells)
                        : an_cells_split(text, n, form->separator, form->quote, cells);
-    if (n_cells > AN_CELLS_MOST)
+    for (int i = n_cells; i < 3; i++)
+        cells[i] = (an_cell){"", 0};
+    return n_cells;
+}
+
+an_status an_head_add_line(an_head *head, const char *text, size_t n, long line, bool comment, an_error *err)
+{
+    an_cell cells[AN_CELLS_MOST + 2];
+    if (an_head_split(head->layout, text, n, cells) > AN_CELLS_MOST)
         return an_fail(err, AN_E_LIMIT, NULL, "more than %d fields", AN_CELLS_MOST);
-    if (n_cells < 1 || cells[0].n == 0)
-        return AN_OK;
-    return an_head_add(head, cells[0], n_cells > 1 ? cells[1] : none, n_cells > 2 ? cells[2] : none, line,
-                       comment, err);
+    return cells[0].n ? an_head_add(head, cells[0], cells[1], cells[2], line, comment, err) : AN_OK;
 }
 
 an_status an_head_finish(const an_head *head, const char *path, an_error *err)

@@ -28,6 +28,11 @@ void an_head_init(an_head *head, const an_layout *layout);
 an_status an_head_add(an_head *head, an_cell key, an_cell value, an_cell unit, long line, bool comment,
                       an_error *err);
 
+/* an_head_split: cut a row of the head, or of a block header, into key, value and unit.
+ *   cells [out] [AN_CELLS_MOST + 2] at least three are set, empty where there is nothing
+ * Returns how many fields stand in the row; more than AN_CELLS_MOST: too many. */
+int an_head_split(const an_layout *layout, const char *text, size_t n, an_cell *cells);
+
 /* an_head_add_line: cut a row of the head into key, value and unit, and add it. A row of one field is a
  * title: it must be mapped or ignored like a key. */
 an_status an_head_add_line(an_head *head, const char *text, size_t n, long line, bool comment, an_error *err);

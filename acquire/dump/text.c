@@ -98,20 +98,20 @@ static an_status open_block(text_reader *reader, long step, an_error *err)
 }
 
 /* One row of a block header: key, value, unit. */
-static an_status read_block_row(text_reader *reader, const an_line *line, const an_cell *cells, int n_cells,
-                                an_error *err)
+static an_status read_block_row(text_reader *reader, const an_line *line, an_error *err)
 {
+    an_cell cells[AN_CELLS_MOST + 2];
+    int known = reader->head.n_unmapped;
+    an_head_split(reader->layout, line->text, line->n, cells);
     const an_layout_value *value = an_layout_value_of(reader->layout, cells[0].text, cells[0].n);
-    an_cell none = {"", 0};
     double si;
     if (!value) {
-        int known = reader->head.n_unmapped;
-        AN_TRY(an_head_add_line(&reader->head, line->text, line->n, line->number, false, err));
+        AN_TRY(an_head_add(&reader->head, cells[0], cells[1], cells[2], line->number, false, err));
         return reader->head.n_unmapped > known ? an_head_finish(&reader->head, reader->source->path, err)
                                                : AN_OK;
     }
-    AN_TRY(an_head_number(reader->layout, cells[0], n_cells > 1 ? cells[1] : none,
-                          n_cells > 2 ? cells[2] : none, value->unit, an_role_unit(value->role), &si, err));
+    AN_TRY(an_head_number(reader->layout, cells[0], cells[1], cells[2], value->unit,
+                          an_role_unit(value->role), &si, err));
     an_burst_facts_set(&reader->rows.facts, value->role, si);
     return AN_OK;
 }
@@ -293,7 +293,7 @@ static an_status read_content(text_reader *reader, const an_line *line, an_error
     case IN_BLOCK:
         if (an_header_is(&reader->header, cells, n_cells))
             return read_header(reader, cells, n_cells, err);
-        return read_block_row(reader, line, cells, n_cells, err);
+        return read_block_row(reader, line, err);
     case BELOW_HEADER:
         return read_below_header(reader, line, cells, n_cells, err);
     default:

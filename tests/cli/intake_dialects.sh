@@ -114,6 +114,10 @@ sed -e '/role="step"/d; /role="set_frequency"/d; /<self_test/,/<\/self_test>/d' 
     "$pads/layout.xml" >layout.xml
 take blocks.csv layout.xml || fail "blocks.csv: $(cat err.txt)"
 content out.xml | cmp -s - plain.txt || fail "blocks.csv: $(content out.xml | diff - plain.txt | cut -c1-200 | head -4)"
+sed '1,11s/,/: /; s/^\(drive\|rows\),/\1: /; s/^\(drive: [0-9]*\),/\1 /' blocks.csv >colons.csv
+sed 's/<head>/<head key_separator=":">/' layout.xml >colons.xml
+take colons.csv colons.xml || fail "colons.csv: $(cat err.txt)"
+content out.xml | cmp -s - plain.txt || fail "colons.csv: $(content out.xml | diff - plain.txt | cut -c1-200 | head -4)"
 sed '400d' blocks.csv >fewer.csv
 take fewer.csv layout.xml || fail "fewer.csv: $(cat err.txt)"
 grep -q '128 samples declared, 127 found' out.xml || fail "fewer.csv: the lost sample is not remarked upon"
