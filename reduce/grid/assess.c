@@ -23,11 +23,10 @@ __attribute__((format(printf, 2, 3))) static void say(an_assessment *assessment,
     va_end(arguments);
 }
 
-/* How often one code stands about bursts, and its first remark. */
+/* How often one code stands with one severity, and its first remark. */
 typedef struct tally {
     const an_remark *first;
     int n;
-    an_severity severity; /* the heaviest */
 } tally;
 
 enum { TALLIES = 64 };
@@ -35,15 +34,14 @@ enum { TALLIES = 64 };
 static void count_remark(const an_remark *remark, tally *tallies, int *n)
 {
     int i = 0;
-    while (i < *n && tallies[i].first->kind != remark->kind)
+    while (i < *n &&
+           (tallies[i].first->kind != remark->kind || tallies[i].first->severity != remark->severity))
         i++;
     if (i == TALLIES)
         return;
     if (i == *n)
-        tallies[(*n)++] = (tally){remark, 0, remark->severity};
+        tallies[(*n)++] = (tally){remark, 0};
     tallies[i].n++;
-    if (remark->severity > tallies[i].severity)
-        tallies[i].severity = remark->severity;
 }
 
 /* The remarks of bursts and of runs, one tally a code. */
@@ -71,7 +69,8 @@ static void say_tallies(tally *tallies, int n, an_severity severity, an_assessme
     for (;;) {
         tally *most = NULL;
         for (int i = 0; i < n; i++)
-            if (tallies[i].n > 0 && tallies[i].severity == severity && (!most || tallies[i].n > most->n))
+            if (tallies[i].n > 0 && tallies[i].first->severity == severity &&
+                (!most || tallies[i].n > most->n))
                 most = &tallies[i];
         if (!most)
             return;
@@ -184,7 +183,7 @@ void an_assess(const an_points *points, int n_points, an_grid *grid)
     int n_bad, n = count_remarks(points, n_points, grid, tallies);
     int worst = -1;
     for (int i = 0; i < n; i++)
-        worst = (int)tallies[i].severity > worst ? (int)tallies[i].severity : worst;
+        worst = (int)tallies[i].first->severity > worst ? (int)tallies[i].first->severity : worst;
     count_bursts(points, n_points, assessment, &n_bad);
     int n_all = assessment->n_used + assessment->n_flagged + assessment->n_skipped;
     if (worst == AN_HALT || 2 * n_bad > n_all || grid->n_isotherm + grid->n_ramp == 0)
