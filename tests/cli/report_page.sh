@@ -61,6 +61,20 @@ done
 grep -oE '(https?:)?//[a-z0-9.-]+\.[a-z]+[^"]*' page.html | grep -vxE 'http://www.w3.org/(2000/svg|1999/xhtml)' &&
     fail "the page names an address"
 
+# compare DOCUMENT CAPTION PAIR...: numbers on the page against the document's own table.
+compare() {
+    local document=$1 caption=$2
+    shift 2
+    "$ANELAST_BIN/anelast-table" "$document" >table.csv || fail "no table of $document"
+    python3 "$ANELAST_SOURCE/tests/cli/page_numbers.py" page.html table.csv "$caption" "$@" || fail "numbers of $document"
+}
+
+compare points.xml Points '0=burst*1+0' '2=temperature_K*1+-273.15' '3=frequency_Hz*1+0' '4=storage_Pa*1e-6+0' \
+    '5=u_noise_storage_Pa*1e-6+0' '6=u_common_storage_Pa*1e-6+0' '7=loss_Pa*1e-6+0' '8=u_noise_loss_Pa*1e-6+0' \
+    '9=u_common_loss_Pa*1e-6+0' '10=loss_factor*1+0'
+compare master.xml 'Shift factors' '0=temperature_K*1+-273.15' '1=log10_aT*1+0' '4=log10_bT*1+0'
+compare material.xml 'Prony series' '0=relaxation_time_s*1+0' '1=modulus_Pa*1e-6+0' '3=relative_weight*1+0'
+
 for width in 1200 500; do
     browse page.html $width
     [ -s console ] && fail "the page writes on the browser's console: $(head -3 console)"

@@ -288,6 +288,35 @@ static void test_legend_entries_do_not_overlap(void **state)
     an_figure_free(&figure);
 }
 
+/* Equal ratios are equal lengths on a log10 axis, equal differences on a linear one. */
+static void test_places(void **state)
+{
+    (void)state;
+    static const double x[] = {1, 10, 1000}, y[] = {-2, 0, 6};
+    an_figure *figure = NULL;
+    an_figure_spec spec = {
+        .id = "p", .title = "places", .x = {.scale = AN_AXIS_LOG10, .from = 1, .to = 1000}};
+    assert_int_equal(an_figure_new(&figure, &spec, NULL), AN_OK);
+    an_figure_add_panel(figure, &(an_figure_axis){.from = -2, .to = 6}, 160);
+    an_figure_add_series(figure,
+                         &(an_figure_series){.x = x, .y = y, .n = 3, .style = {.marker = AN_MARKER_DISC}});
+    char *text = text_of(figure);
+    double at[3][2];
+    const char *found = text;
+    for (int i = 0; i < 3; i++) {
+        found = strstr(found, "<circle");
+        assert_non_null(found);
+        assert_int_equal(sscanf(found, "<circle cx=\"%lf\" cy=\"%lf\"", &at[i][0], &at[i][1]), 2);
+        found++;
+    }
+    /* a tenth of a unit is what coordinates are written to */
+    assert_true(fabs((at[1][0] - at[0][0]) - (at[2][0] - at[0][0]) / 3) <= 0.15);
+    assert_true(fabs((at[0][1] - at[1][1]) - 160 * 2.0 / 8) <= 0.1);
+    assert_true(fabs((at[0][1] - at[2][1]) - 160) <= 0.1);
+    free(text);
+    an_figure_free(&figure);
+}
+
 /* Labels of an axis for a range, joined by blanks. */
 static void check_ticks(an_axis_scale kind, double from, double to, const char *expected)
 {
@@ -366,6 +395,7 @@ int main(void)
         cmocka_unit_test(test_everything_shown_is_escaped),
         cmocka_unit_test(test_points_without_a_place_are_left_out),
         cmocka_unit_test(test_legend_entries_do_not_overlap),
+        cmocka_unit_test(test_places),
         cmocka_unit_test(test_ticks),
         cmocka_unit_test(test_faults_are_kept_until_writing),
     };
