@@ -69,4 +69,5 @@ def main():
         sys.stdout.write(fit(document.read(), json.load(truth)))
 
 
-main()
+if __name__ == "__main__":
+    main()

@@ -37,8 +37,8 @@ void an_run_id_make(const char *specimen, const char *started, const char *dump,
             start[n++] = *at;
     const char *slash = strrchr(dump, '/'), *stem = slash ? slash + 1 : dump, *dot = strrchr(stem, '.');
     int n_stem = dot && dot > stem ? (int)(dot - stem) : (int)strlen(stem);
-    if (!specimen[0])
-        snprintf(id, n_id, "%.*s", n_stem, stem);
+    if (!specimen[0] || (!start[0] && n_stem == 0))
+        snprintf(id, n_id, "%s%.*s", specimen, n_stem, stem);
     else if (start[0])
         snprintf(id, n_id, "%s_%s", specimen, start);
     else

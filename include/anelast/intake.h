@@ -34,8 +34,8 @@ an_status an_intake_take(const an_intake *intake, an_intake_result *result, an_e
 
 /* an_run_id_make: a name for a run that is safe as the name of a file: specimen and start without colons and
  * zone, "RP-0417-2_2026-03-09T142000"; where the start is not known, specimen and the dump's stem; where the
- * specimen is not, the stem alone. Other characters than letters, digits, '.', '_' and '-' become '-'. id
- * [out] [n_id] bytes */
+ * specimen is not, the stem alone, and where there is no dump ("") the specimen alone. Other characters than
+ * letters, digits, '.', '_' and '-' become '-'. id [out] [n_id] bytes */
 void an_run_id_make(const char *specimen, const char *started, const char *dump, char *id, size_t n_id);
 
 #endif

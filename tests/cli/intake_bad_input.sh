@@ -50,6 +50,12 @@ accept() {
 accept good.csv '<end bursts="4"/>' 'id="RP-0522-1_2026-03-22T214000"' 'started="2026-03-22T21:40:00+01:00"'
 grep -q . err.txt && fail "good.csv: something on standard error: $(cat err.txt)"
 
+# names of runs are safe as names of files, whatever they are made of
+name_of() { "$ANELAST_BIN/anelast-intake" good.csv -l "$pads/layout.xml" -s "$pads/specimen.xml" "$@" | sed -n 's/^<run .* id="\([^"]*\)".*/\1/p'; }
+[ "$(name_of --run-id '../night 7')" = "_.-night-7" ] || fail "--run-id: $(name_of --run-id '../night 7')"
+sed '2s/RP-0522-1/RP 1\/2/' good.csv >odd.csv && sed -i '6d' odd.csv
+accept odd.csv 'id="RP-1-2_odd"'
+
 # files that are not there
 refuse 3 absent.csv "absent.csv: "
 layout=absent.xml refuse 3 good.csv "absent.xml: "
