@@ -233,6 +233,24 @@ static an_status remark_shifts(const making *m, an_master *master, an_error *err
     return AN_OK;
 }
 
+/* Neighbours whose ranges do not meet: the shift between them rests on the smoothness of the spectrum across
+ * the gap. */
+static an_status remark_gaps(const making *m, an_master *master, an_error *err)
+{
+    static const double worth_saying = 0.1; /* decades: less is no more than the step between two points */
+    const an_superpose_input *input = &m->selection.input;
+    for (size_t i = 0; i + 1 < input->n_isotherm; i++) {
+        an_area_shift shift;
+        if (an_area_between(input, i, m->result.vertical, &shift, NULL) < 0 || shift.gap_decades < worth_saying)
+            continue;
+        AN_TRY(an_remark_list_add(
+            &master->remarks, "gap-bridged", 0, err,
+            "isotherms at %.2f K and %.2f K do not meet; the spectrum bridges about %.2g decades",
+            input->isotherm[i].temperature_K, input->isotherm[i + 1].temperature_K, shift.gap_decades));
+    }
+    return AN_OK;
+}
+
 static an_status remark_law(an_status fitted, an_master *master, an_error *err)
 {
     if (fitted == AN_DUBIOUS)
@@ -286,6 +304,7 @@ static an_status make(making *m, an_master *master, an_error *err)
     AN_TRY(fill_shifts(m, master, err));
     AN_TRY(fill_points(m, master, err));
     AN_TRY(remark_shifts(m, master, err));
+    AN_TRY(remark_gaps(m, master, err));
     AN_TRY(remark_law(fitted, master, err));
     return remark_verdict(master, err);
 }

@@ -114,6 +114,7 @@ typedef struct an_area_shift {
     double log10_a;       /* log10 a of the warmer against the colder, <= 0 as a rule */
     double u;             /* its random uncertainty, (2/n)^1/2 s_y / |dy/dx| */
     double log10_b;       /* log10 b of the warmer against the colder, from |E*| after shifting */
+    double gap_decades;   /* of frequency, between ranges that do not meet; 0: they overlap */
     const char *quantity; /* what it was read from: "loss factor", "storage modulus" or "loss modulus" */
 } an_area_shift;
 

@@ -231,6 +231,34 @@ static void area_is_exact_on_straight_lines(void **state)
     assert_close(shift.log10_a, -0.8, 1e-12);
 }
 
+/* Straight lines that leave 0.3 decades of frequency between them are bridged exactly; 1.2 decades are
+ * refused. */
+static void gaps_are_bridged_or_refused(void **state)
+{
+    (void)state;
+    an_superpose_isotherm isotherm[2] = {{300, 0, 5}, {310, 5, 5}};
+    an_superpose_point point[10];
+    for (int wide = 0; wide < 2; wide++) {
+        double shift_true = wide ? -3.2 : -2.3;
+        for (int i = 0; i < 10; i++) {
+            double x = i % 5 * 0.5, shift = i < 5 ? 0 : shift_true;
+            point[i] =
+                (an_superpose_point){pow(10, x), pow(10, 7 + 0.4 * (x + shift)), pow(10, 6), {1e8, 0, 1e8}};
+        }
+        an_superpose_input input = {2, isotherm, 10, point, 0, NULL, 0};
+        an_area_shift shift;
+        an_error err = {0};
+        an_status status = an_area_between(&input, 0, AN_VERTICAL_NONE, &shift, &err);
+        assert_int_equal(status, wide ? AN_E_SCIENCE : AN_OK);
+        if (wide)
+            assert_non_null(strstr(err.text, "no overlap"));
+        else {
+            assert_close(shift.gap_decades, 0.3, 1e-12);
+            assert_close(shift.log10_a, shift_true, 1e-12);
+        }
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -241,6 +269,7 @@ int main(void)
         cmocka_unit_test(refuses_what_cannot_be_joined),
         cmocka_unit_test(common_sources_pass_through),
         cmocka_unit_test(area_is_exact_on_straight_lines),
+        cmocka_unit_test(gaps_are_bridged_or_refused),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
