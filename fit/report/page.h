@@ -11,6 +11,9 @@
 #include "fit/report/markup.h"
 
 #define ZERO_CELSIUS_K 273.15 /* [K] */
+#define PAGE_COVERAGE  2.0    /* [1] coverage factor of bars and bands, about 95 % */
+
+enum { PAGE_CURVE = 240 }; /* points of a drawn curve */
 
 /* One modulus at one temperature and frequency, from the grid where there is one, else from the points. */
 typedef struct page_cell {
@@ -94,8 +97,8 @@ void cell_with_u(FILE *out, double value, double u);
 void cell_integer(FILE *out, long value);
 
 /* table_begin: a table that scrolls in its own box.
- *   caption [in] plain; heads [in] label text, ended by NULL */
-void table_begin(FILE *out, const char *caption, const char *const *heads);
+ *   caption [in] plain; heads [in] label text, ended by NULL; @ stands for the modulus's letter */
+void table_begin(page *p, const char *caption, const char *const *heads);
 void table_end(FILE *out);
 
 /* Tables of section_tables that stand in a file of their own. */

@@ -9,8 +9,6 @@
 #include <stdlib.h>
 #include <string.h>
 
-#define COVERAGE 2.0 /* [1] coverage factor of bars and bands, about 95 % */
-
 enum { QUANTITIES = 3 }; /* storage, loss, loss factor */
 
 typedef enum direction { ALONG_TEMPERATURE, ALONG_FREQUENCY } direction;
@@ -51,9 +49,9 @@ static void strand_add(strand *s, const page_cell *cell, direction way)
     const double noise[QUANTITIES] = {cell->u_noise_MPa[0], cell->u_noise_MPa[1], cell->u_loss_factor};
     for (int k = 0; k < QUANTITIES; k++) {
         s->y[k][i] = value[k];
-        s->bar[k][i] = COVERAGE * noise[k];
-        s->low[k][i] = value[k] - COVERAGE * total[k];
-        s->high[k][i] = value[k] + COVERAGE * total[k];
+        s->bar[k][i] = PAGE_COVERAGE * noise[k];
+        s->low[k][i] = value[k] - PAGE_COVERAGE * total[k];
+        s->high[k][i] = value[k] + PAGE_COVERAGE * total[k];
     }
 }
 

@@ -180,19 +180,29 @@ void cell_integer(FILE *out, long value)
     fprintf(out, "<td class=\"n\">%ld</td>", value);
 }
 
-void table_begin(FILE *out, const char *caption, const char *const *heads)
+/* A head with the modulus's letter put in. */
+static void write_head_text(page *p, const char *head)
 {
-    fputs("<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"", out);
-    markup_plain(out, caption);
-    fputs("\"><table>\n<caption><span>", out);
-    markup_plain(out, caption);
-    fputs("</span></caption>\n<thead><tr>", out);
-    for (; *heads; heads++) {
-        fputs("<th scope=\"col\">", out);
-        markup_label(out, *heads, MARKUP_HTML, 0);
-        fputs("</th>", out);
-    }
-    fputs("</tr></thead>\n<tbody>\n", out);
+    char text[96];
+    size_t n = 0;
+    for (; *head && n < sizeof text - 1; head++)
+        text[n++] = *head == '@' ? p->letter : *head;
+    text[n] = '\0';
+    fputs("<th scope=\"col\">", p->out);
+    markup_label(p->out, text, MARKUP_HTML, 0);
+    fputs("</th>", p->out);
+}
+
+void table_begin(page *p, const char *caption, const char *const *heads)
+{
+    fputs("<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"", p->out);
+    markup_plain(p->out, caption);
+    fputs("\"><table>\n<caption><span>", p->out);
+    markup_plain(p->out, caption);
+    fputs("</span></caption>\n<thead><tr>", p->out);
+    for (; *heads; heads++)
+        write_head_text(p, *heads);
+    fputs("</tr></thead>\n<tbody>\n", p->out);
 }
 
 void table_end(FILE *out)

@@ -26,7 +26,7 @@ static void cell_hash(FILE *out, const char *hash)
 static void table_documents(page *p)
 {
     static const char *const heads[] = {"Document", "File", "Made by", "At", "SHA-256", NULL};
-    table_begin(p->out, "Documents on this page", heads);
+    table_begin(p, "Documents on this page", heads);
     for (int i = 0; i < p->report->n_source; i++) {
         const an_report_source *source = &p->report->source[i];
         const an_made *made = made_of(p->report, source->role);
@@ -63,7 +63,7 @@ static bool is_known(const an_report *r, int i_source, size_t i_input)
 static void table_inputs(page *p)
 {
     static const char *const heads[] = {"Input", "File", "Read for", "SHA-256", NULL};
-    table_begin(p->out, "Inputs", heads);
+    table_begin(p, "Inputs", heads);
     for (int i = 0; i < p->report->n_source; i++) {
         const an_made *made = made_of(p->report, p->report->source[i].role);
         for (size_t k = 0; k < made->n_inputs; k++) {
@@ -103,7 +103,7 @@ static void table_choices(page *p)
 {
     static const char *const heads[] = {"Choice", "Value", "Unit", "In force for", NULL};
     fputs("<details><summary>Choices in force</summary>\n", p->out);
-    table_begin(p->out, "Choices in force", heads);
+    table_begin(p, "Choices in force", heads);
     for (int i = 0; i < p->report->n_source; i++) {
         const an_made *made = made_of(p->report, p->report->source[i].role);
         for (size_t k = 0; k < made->n_choices; k++) {

@@ -132,7 +132,7 @@ void section_remarks(page *p)
     if (all.n == 0)
         fputs("<p>Nothing was noticed.</p>\n", p->out);
     else
-        table_begin(p->out, "Remarks, the weightiest first", heads);
+        table_begin(p, "Remarks, the weightiest first", heads);
     for (size_t i = 0; i < all.n;) {
         size_t end = i + 1;
         while (end < all.n && all.rows[end]->kind == all.rows[i]->kind &&

@@ -7,9 +7,7 @@
 #include <math.h>
 #include <stdlib.h>
 
-#define COVERAGE 2.0 /* [1] coverage factor of the band */
-
-enum { CURVE = 240, STEMS = 30 }; /* points of a drawn curve; most modes drawn with stems */
+enum { STEMS = 30 }; /* most modes drawn with stems */
 
 static void add_window(an_figure *figure, const double window[2])
 {
@@ -86,14 +84,14 @@ static void figure_relaxation(page *p, const an_material *material)
     an_figure *figure = page_figure_new(p, &spec);
     if (!figure)
         return;
-    double t[CURVE], y[CURVE], low[CURVE], high[CURVE];
+    double t[PAGE_CURVE], y[PAGE_CURVE], low[PAGE_CURVE], high[PAGE_CURVE];
     double from = material->window_time_s[0] / 10, to = material->window_time_s[1] * 10;
     double u = hypot(material->u_common_relative, material->fit_error);
-    for (int i = 0; i < CURVE; i++) {
-        t[i] = from * pow(to / from, (double)i / (CURVE - 1));
+    for (int i = 0; i < PAGE_CURVE; i++) {
+        t[i] = from * pow(to / from, (double)i / (PAGE_CURVE - 1));
         y[i] = an_maxwell_relaxation(&material->modes, t[i]) / 1e6;
-        low[i] = y[i] * (1 - COVERAGE * u);
-        high[i] = y[i] * (1 + COVERAGE * u);
+        low[i] = y[i] * (1 - PAGE_COVERAGE * u);
+        high[i] = y[i] * (1 + PAGE_COVERAGE * u);
     }
     an_figure_add_panel(
         figure,
@@ -103,13 +101,13 @@ static void figure_relaxation(page *p, const an_material *material)
         an_figure_add_band(figure, &(an_figure_band){.x = t,
                                                      .low = low,
                                                      .high = high,
-                                                     .n = CURVE,
+                                                     .n = PAGE_CURVE,
                                                      .color = AN_COLOR_FIRST,
                                                      .name = "common part of u and fit error, k = 2"});
     an_figure_add_series(figure,
                          &(an_figure_series){.x = t,
                                              .y = y,
-                                             .n = CURVE,
+                                             .n = PAGE_CURVE,
                                              .legend = "from the handed-over spectrum",
                                              .style = {.color = AN_COLOR_FIRST, .stroke = AN_STROKE_SOLID}});
     page_figure_end(

@@ -8,10 +8,6 @@
 #include <stdlib.h>
 #include <string.h>
 
-#define COVERAGE 2.0 /* [1] coverage factor of bars and bands */
-
-enum { CURVE = 240 }; /* points of a drawn curve */
-
 static const an_law *chosen_law(const an_master *master)
 {
     for (int i = 0; i < master->n_trial; i++)
@@ -43,10 +39,10 @@ static bool shift_arrays_new(page *p, shift_arrays *s)
         const an_shift *shift = &master->shift[i];
         s->T[i] = shift->temperature_K - ZERO_CELSIUS_K;
         s->log_a[i] = shift->log10_aT;
-        s->bar_a[i] = COVERAGE * shift->u_log10_aT;
-        s->noise_a[i] = COVERAGE * shift->u_noise_log10_aT;
+        s->bar_a[i] = PAGE_COVERAGE * shift->u_log10_aT;
+        s->noise_a[i] = PAGE_COVERAGE * shift->u_noise_log10_aT;
         s->log_b[i] = shift->log10_bT;
-        s->bar_b[i] = COVERAGE * shift->u_log10_bT;
+        s->bar_b[i] = PAGE_COVERAGE * shift->u_log10_bT;
         double by_law;
         bool valid =
             law && an_law_log10_aT(law, shift->temperature_K, AN_RANGE_REFUSE, &by_law, NULL) == AN_OK;
@@ -88,10 +84,10 @@ static void add_law(page *p, an_figure *figure)
         return;
     double from = fmax(master->shift[0].temperature_K, law->valid_from_K);
     double to = fmin(master->shift[master->n_shift - 1].temperature_K, law->valid_to_K);
-    double T[CURVE], y[CURVE], low[CURVE], high[CURVE];
-    for (int i = 0; i < CURVE; i++) {
-        double kelvin = from + (to - from) * i / (CURVE - 1);
-        double u = COVERAGE * an_law_u_log10_aT(law, kelvin);
+    double T[PAGE_CURVE], y[PAGE_CURVE], low[PAGE_CURVE], high[PAGE_CURVE];
+    for (int i = 0; i < PAGE_CURVE; i++) {
+        double kelvin = from + (to - from) * i / (PAGE_CURVE - 1);
+        double u = PAGE_COVERAGE * an_law_u_log10_aT(law, kelvin);
         T[i] = kelvin - ZERO_CELSIUS_K;
         if (an_law_log10_aT(law, kelvin, AN_RANGE_MARK, &y[i], NULL) < 0)
             y[i] = NAN;
@@ -101,7 +97,7 @@ static void add_law(page *p, an_figure *figure)
     an_figure_add_band(figure, &(an_figure_band){.x = T,
                                                  .low = low,
                                                  .high = high,
-                                                 .n = CURVE,
+                                                 .n = PAGE_CURVE,
                                                  .color = AN_COLOR_INK,
                                                  .name = "law, k = 2",
                                                  .loose = true});
@@ -109,7 +105,7 @@ static void add_law(page *p, an_figure *figure)
         figure,
         &(an_figure_series){.x = T,
                             .y = y,
-                            .n = CURVE,
+                            .n = PAGE_CURVE,
                             .legend = page_law_name(law->kind),
                             .style = {.color = AN_COLOR_INK, .stroke = AN_STROKE_SOLID, .width = 1.2}});
 }
@@ -172,7 +168,7 @@ static void master_arrays_fill(master_arrays *m, const an_master *master, int is
             for (int s = 0; s < AN_SOURCE_COUNT; s++)
                 variance += point->common[s][k] * point->common[s][k];
             m->modulus[k][m->n] = modulus[k] / 1e6;
-            m->bar[k][m->n] = COVERAGE * sqrt(variance) / 1e6;
+            m->bar[k][m->n] = PAGE_COVERAGE * sqrt(variance) / 1e6;
             m->residual[k][m->n] = point->residual[k];
         }
         m->n++;
@@ -244,9 +240,9 @@ static void add_points(page *p, an_figure *figure, master_arrays *m, int modulus
 static void add_curve(an_figure *figure, const an_maxwell *model, const double range[2], uint32_t color,
                       const char *legend)
 {
-    double x[CURVE], y[2][CURVE];
-    for (int i = 0; i < CURVE; i++) {
-        x[i] = range[0] * pow(range[1] / range[0], (double)i / (CURVE - 1));
+    double x[PAGE_CURVE], y[2][PAGE_CURVE];
+    for (int i = 0; i < PAGE_CURVE; i++) {
+        x[i] = range[0] * pow(range[1] / range[0], (double)i / (PAGE_CURVE - 1));
         y[0][i] = an_maxwell_storage(model, x[i]) / 1e6;
         y[1][i] = an_maxwell_loss(model, x[i]) / 1e6;
     }
@@ -255,7 +251,7 @@ static void add_curve(an_figure *figure, const an_maxwell *model, const double r
             figure, &(an_figure_series){
                         .x = x,
                         .y = y[k],
-                        .n = CURVE,
+                        .n = PAGE_CURVE,
                         .legend = k ? NULL : legend,
                         .loose = true,
                         .style = {.color = color,

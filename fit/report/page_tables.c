@@ -63,21 +63,16 @@ static void point_row(FILE *out, const an_point *point)
 
 static void table_points(page *p)
 {
-    static const char *const heads_E[] = {
-        "Burst",           "State",           "T (°C)",           "f (Hz)",  "E′ (MPa)",
-        "u noise",         "u common",        "E″ (MPa)",         "u noise", "u common",
-        "tan δ",           "Strain (%)",      "Static force (N)", "K_{s} C", "SNR (dB)",
-        "I_{2}/I_{1} (%)", "I_{3}/I_{1} (%)", "Remarks",          NULL};
-    static const char *const heads_G[] = {
-        "Burst",           "State",           "T (°C)",           "f (Hz)",  "G′ (MPa)",
-        "u noise",         "u common",        "G″ (MPa)",         "u noise", "u common",
+    static const char *const heads[] = {
+        "Burst",           "State",           "T (°C)",           "f (Hz)",  "@′ (MPa)",
+        "u noise",         "u common",        "@″ (MPa)",         "u noise", "u common",
         "tan δ",           "Strain (%)",      "Static force (N)", "K_{s} C", "SNR (dB)",
         "I_{2}/I_{1} (%)", "I_{3}/I_{1} (%)", "Remarks",          NULL};
     const an_points *points = &p->report->points;
     fprintf(p->out, "<details%s><summary>Points: all %d bursts</summary>\n",
             points->n_point <= 40 ? " open=\"open\"" : "", points->n_point);
     fputs("<div class=\"tall\">\n", p->out);
-    table_begin(p->out, "Points", p->letter == 'G' ? heads_G : heads_E);
+    table_begin(p, "Points", heads);
     for (int i = 0; i < points->n_point; i++)
         point_row(p->out, &points->point[i]);
     table_end(p->out);
@@ -89,7 +84,7 @@ static void table_isotherms(page *p)
     static const char *const heads[] = {"T (°C)",       "u noise (K)",  "Set (°C)", "Cells", "Spread (K)",
                                         "Rate (K/min)", "Reached from", "Steady",   NULL};
     const an_grid *grid = &p->report->grid;
-    table_begin(p->out, "Isotherms", heads);
+    table_begin(p, "Isotherms", heads);
     for (int i = 0; i < grid->n_isotherm; i++) {
         const an_isotherm *isotherm = &grid->isotherm[i];
         fputs("<tr>", p->out);
@@ -116,7 +111,7 @@ static void table_readings(page *p)
                     "The measured temperatures do not span a transition.");
         return;
     }
-    table_begin(p->out, "Glass-transition readings", heads);
+    table_begin(p, "Glass-transition readings", heads);
     for (int i = 0; i < grid->n_reading; i++) {
         const an_reading *reading = &grid->reading[i];
         fputs("<tr>", p->out);
@@ -208,7 +203,7 @@ static void table_budget(page *p)
         p->status = an_fail_memory(p->err, "the budget");
         return;
     }
-    table_begin(p->out, "Uncertainty by source, one standard uncertainty each", heads);
+    table_begin(p, "Uncertainty by source, one standard uncertainty each", heads);
     budget_line line = budget_of(points, AN_SOURCE_COUNT, sizes);
     budget_row(p->out, "noise", "burst by burst", &line);
     for (int source = 0; source < AN_SOURCE_COUNT; source++) {
@@ -225,7 +220,7 @@ static void table_corrections(page *p)
     static const char *const heads[] = {
         "Rung", "Largest change of stiffness (%)", "at burst", "f (Hz)", "T (°C)", NULL};
     const an_points *points = &p->report->points;
-    table_begin(p->out, "Largest correction of every rung, from the sensor inwards", heads);
+    table_begin(p, "Largest correction of every rung, from the sensor inwards", heads);
     for (int rung = 0; rung < AN_RUNG_COUNT; rung++) {
         const an_point *worst = NULL;
         double largest = 0;

@@ -11,7 +11,7 @@ static void table_shifts(page *p)
                                         "u common", "log_{10} b_{T}", "u noise",
                                         "u common", "Determined",     NULL};
     const an_master *master = &p->report->master;
-    table_begin(p->out, "Shift factors", heads);
+    table_begin(p, "Shift factors", heads);
     for (int i = 0; i < master->n_shift; i++) {
         const an_shift *s = &master->shift[i];
         fprintf(p->out, "<tr%s>", s->determined ? "" : " class=\"muted\"");
@@ -91,8 +91,7 @@ static void table_laws(page *p)
         page_absent(p, "No shift law.", "No law was tried on these shift factors.");
         return;
     }
-    table_begin(p->out,
-                "Shift laws tried, constants with the noise part of u; the smallest criterion is chosen",
+    table_begin(p, "Shift laws tried, constants with the noise part of u; the smallest criterion is chosen",
                 heads);
     for (int i = 0; i < master->n_trial; i++) {
         const an_law_trial *trial = &master->trial[i];
@@ -116,13 +115,10 @@ void tables_superposition(page *p)
 
 void table_modes(page *p)
 {
-    static const char *const heads_E[] = {"Relaxation time τ (s)", "E_{i} (MPa)", "u noise (MPa)",
-                                          "E_{i}/E_{0}",           "Trusted",     NULL};
-    static const char *const heads_G[] = {"Relaxation time τ (s)", "G_{i} (MPa)", "u noise (MPa)",
-                                          "G_{i}/G_{0}",           "Trusted",     NULL};
+    static const char *const heads[] = {"Relaxation time τ (s)", "@_{i} (MPa)", "u noise (MPa)",
+                                        "@_{i}/@_{0}",           "Trusted",     NULL};
     const an_material *m = &p->report->material;
-    table_begin(p->out, "Prony series, weights relative to the instantaneous modulus",
-                m->is_shear ? heads_G : heads_E);
+    table_begin(p, "Prony series, weights relative to the instantaneous modulus", heads);
     for (size_t i = 0; i < m->modes.n_mode; i++) {
         bool trusted = !m->trusted || m->trusted[i];
         fprintf(p->out, "<tr%s>", trusted ? "" : " class=\"muted\"");
