@@ -18,7 +18,7 @@
 typedef struct job {
     const char *programs, *dump;
     const an_after_options *options;
-    char work[PATH_MAX];
+    an_work work;
     an_run_facts facts;
     an_after_run *run;
 } job;
@@ -37,7 +37,7 @@ enum { PHASE, GRID, SHIFT, PRONY, STAGES, ARGUMENTS = 24 };
 
 static void path_in(const job *one, const char *name, char *path, size_t n_path)
 {
-    snprintf(path, n_path, "%s/%s", one->work, name);
+    snprintf(path, n_path, "%s/%s", one->work.path, name);
 }
 
 static int is_there(const job *one, const char *name)
@@ -50,8 +50,8 @@ static int is_there(const job *one, const char *name)
 /* Take the work folder out of what a stage said: it will not be there when it is read. */
 static void forget_work(const job *one, char *text)
 {
-    size_t n = strlen(one->work);
-    for (char *at; (at = strstr(text, one->work));)
+    size_t n = strlen(one->work.path);
+    for (char *at; (at = strstr(text, one->work.path));)
         memmove(at, at + n + (at[n] == '/'), strlen(at + n + (at[n] == '/')) + 1);
 }
 
@@ -247,7 +247,7 @@ static an_status make_all(job *one, an_error *err)
         AN_TRY(status);
     }
     AN_TRY(make_page(one, err));
-    AN_TRY(an_folder_publish(one->work, one->options->into, name, err));
+    AN_TRY(an_folder_publish(&one->work, one->options->into, name, err));
     return run->no_page[0] ? AN_DUBIOUS : status;
 }
 
@@ -266,11 +266,11 @@ an_status an_after_run_make(const char *programs, const char *dump, const an_aft
     if (status >= 0)
         status = choose_documents(one, err);
     if (status >= 0)
-        status = an_folder_begin(options->into, one->work, sizeof one->work, err);
+        status = an_folder_begin(options->into, &one->work, err);
     if (status >= 0) {
         status = make_all(one, err);
         if (status < 0)
-            an_folder_drop(one->work);
+            an_folder_drop(&one->work);
     }
     free(one);
     return status;

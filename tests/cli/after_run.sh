@@ -73,6 +73,16 @@ complains "identity" "run id 'RP-0612-1_strip' stands for another dump already"
 (cd "$run" && sha256sum --quiet -c) <sums.txt || fail "a refused run touched the old one"
 clean "identity" results/night
 
+# What a killed program left there goes, but not what is fresh, and not what people have put there.
+mkdir -p results/night/.anelast-old001 results/night/.anelast-old002 results/night/.anelast-new001
+touch results/night/.anelast-old001/run.xml results/night/.anelast-old002/note.txt
+touch -d '1 hour ago' results/night/.anelast-old001 results/night/.anelast-old002
+expect_code 0 "abandoned" "$bin/anelast" few/strip.csv --into results/night
+[ ! -e results/night/.anelast-old001 ] || fail "an abandoned work folder was not removed"
+[ -e results/night/.anelast-old002/note.txt ] || fail "somebody's file was removed"
+[ -e results/night/.anelast-new001 ] || fail "a fresh work folder was removed"
+rm -r results/night/.anelast-*
+
 # Two processes with their own laws: no spectrum is handed over without the override, and it is said why.
 expect_code 0 "complex" "$bin/anelast" complex/strip.csv --into results
 holds "complex" results/RP-0613-1_strip run.xml points.xml grid.xml master.xml report.html
