@@ -166,7 +166,8 @@ static an_status judge_modulus(an_reduction *r, an_error *err)
         p->stiffness_compliance * cabs(r->result.rungs.parallel / r->result.rungs.series); /* |K2| |C| */
     if (frame >= 1)
         REMARK(r, "lower-bound",
-               "the stiffness measured is %.2f times what the frame alone allows: no modulus", frame);
+               "the stiffness measured is %.2f times what the frame alone allows; check units and compliance",
+               frame);
     else if (p->stiffness_compliance > l->compliance_refuse)
         REMARK(r, "lower-bound", "K_s C is %.2f, above %.2f: the frame moves more than the specimen",
                p->stiffness_compliance, l->compliance_refuse);

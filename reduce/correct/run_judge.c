@@ -139,6 +139,15 @@ static an_status judge_temperature(an_points *points, double longest_s, int *n_s
     return AN_OK;
 }
 
+/* Why a point is skipped: its first remark of that weight. */
+static const char *reason_of(const an_point *point)
+{
+    for (size_t i = 0; i < point->remarks.n; i++)
+        if (point->remarks.rows[i].severity == AN_SKIP)
+            return point->remarks.rows[i].text;
+    return "no reason stands with it";
+}
+
 an_status an_points_judge(an_points *points, const an_procedure *procedure, an_error *err)
 {
     an_limits limits;
@@ -167,8 +176,7 @@ an_status an_points_judge(an_points *points, const an_procedure *procedure, an_e
     for (int i = 0; i < points->n_point; i++)
         n_left += points->point[i].state != AN_POINT_SKIPPED;
     if (!n_left && points->n_point)
-        return an_fail(err, AN_E_SCIENCE, NULL, "none of %d bursts could be used; the first: %s",
-                       points->n_point,
-                       points->point[0].remarks.n ? points->point[0].remarks.rows[0].text : "no reason");
+        return an_fail(err, AN_E_SCIENCE, NULL, "none of %d bursts could be used; burst %d: %s",
+                       points->n_point, points->point[0].burst, reason_of(&points->point[0]));
     return n_skipped ? AN_DUBIOUS : AN_OK;
 }

@@ -49,14 +49,20 @@ double an_model_slope(const an_model *model, double t, const double *row, const 
 an_status an_model_solve(const an_model *model, const an_waveform *waveform, an_solution *solution,
                          double *residual, an_error *err);
 
+/* Noise near the line. */
+typedef struct an_near_line {
+    double level[AN_CHANNELS];    /* [unit of y] white level of all bins together; NAN where none is free */
+    double balanced[AN_CHANNELS]; /* [unit of y] geometric mean of both sides: for noise that slopes over the
+                                     band */
+    double freedom;               /* [1] degrees of freedom behind level */
+} an_near_line;
+
 /* an_noise_near_line: the white level that the residual has near the line, unbiased for what the fit took out
  * of it.
  *   weight [in] [AN_CHANNELS] share of the frequency's information that each channel gave (0 where it was
  *     known)
- *   level  [out] [AN_CHANNELS] [unit of y]; NAN where no bin is free
- *   freedom [out] degrees of freedom behind the level */
+ *   near [out] */
 void an_noise_near_line(const an_model *model, const an_waveform *waveform, const an_solution *solution,
-                        const double *residual, const double weight[AN_CHANNELS], double level[AN_CHANNELS],
-                        double *freedom);
+                        const double *residual, const double weight[AN_CHANNELS], an_near_line *near);
 
 #endif

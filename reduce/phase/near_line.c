@@ -2,6 +2,8 @@
  * density. Stage: phase. Method: the residual is projected on sines a whole number of bins (1 / window) away
  * from the line, harmonics left out; each projection's expectation under white noise is computed with what
  * the fit has already taken out of the residual, so that the level is unbiased for white noise.
+ * Where the noise slopes, the geometric mean of both sides reads it at the line, which is right for a power
+ * law.
  */
 #include "model.h"
 
@@ -11,7 +13,7 @@
 /* Bins each side, and the band that counts as near, in times the frequency. Common practice: half an octave
  * below to more than an octave above, wide enough for some 20 degrees of freedom in seven cycles. */
 enum { BINS_EACH_SIDE = 16 };
-static const double BAND_LOW = 0.45, BAND_HIGH = 2.5;
+static const double BAND_LOW = 0.45, BAND_HIGH = 2.3;
 
 /* Sums of one probing sine against model, slope and residuals. Both its phases, cosine and sine. */
 typedef struct probe {
@@ -76,23 +78,39 @@ static int bin_free(const an_model *m, int bin)
     return fabs(harmonic - nearest) * m->n_cycle > 0.5;
 }
 
-void an_noise_near_line(const an_model *m, const an_waveform *w, const an_solution *s, const double *residual,
-                        const double weight[AN_CHANNELS], double level[AN_CHANNELS], double *freedom)
+/* Sums over the bins of one side of the line. */
+typedef struct side {
+    double power[AN_CHANNELS], expected[AN_CHANNELS]; /* [unit of y squared], [1] */
+} side;
+
+static void add_bin(const an_model *m, const an_waveform *w, const an_solution *s, const double *residual,
+                    const double weight[AN_CHANNELS], int bin, side *sum)
 {
-    double power[AN_CHANNELS] = {0}, expected[AN_CHANNELS] = {0};
     probe p;
-    *freedom = 0;
+    probe_run(&p, m, w, s, residual, m->omega * (1 + bin / m->n_cycle));
+    for (int c = 0; c < AN_CHANNELS; c++)
+        for (int k = 0; k < 2; k++) {
+            sum->power[c] += p.residual[k][c] * p.residual[k][c];
+            sum->expected[c] += expectation(&p, k, c, m, s, weight[c]);
+        }
+}
+
+void an_noise_near_line(const an_model *m, const an_waveform *w, const an_solution *s, const double *residual,
+                        const double weight[AN_CHANNELS], an_near_line *near)
+{
+    side below = {0}, above = {0};
+    near->freedom = 0;
     for (int bin = -BINS_EACH_SIDE; bin <= BINS_EACH_SIDE; bin++) {
         if (!bin_free(m, bin))
             continue;
-        probe_run(&p, m, w, s, residual, m->omega * (1 + bin / m->n_cycle));
-        for (int c = 0; c < AN_CHANNELS; c++)
-            for (int k = 0; k < 2; k++) {
-                power[c] += p.residual[k][c] * p.residual[k][c];
-                expected[c] += expectation(&p, k, c, m, s, weight[c]);
-            }
-        *freedom += 2;
+        add_bin(m, w, s, residual, weight, bin, bin < 0 ? &below : &above);
+        near->freedom += 2;
     }
-    for (int c = 0; c < AN_CHANNELS; c++)
-        level[c] = expected[c] > 0 ? sqrt(power[c] / expected[c]) : NAN;
+    for (int c = 0; c < AN_CHANNELS; c++) {
+        double low = below.power[c] / below.expected[c], high = above.power[c] / above.expected[c];
+        double pooled = (below.power[c] + above.power[c]) / (below.expected[c] + above.expected[c]);
+        near->level[c] = near->freedom > 0 ? sqrt(pooled) : NAN;
+        near->balanced[c] =
+            below.expected[c] > 0 && above.expected[c] > 0 ? sqrt(sqrt(low * high)) : near->level[c];
+    }
 }

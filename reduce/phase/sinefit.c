@@ -84,33 +84,35 @@ static an_status converge(an_model *m, const an_waveform *w, const an_sinefit_ch
 }
 
 /* The level to use: deviation of all the residual, unless the noise near the line tells otherwise. */
-static void choose_level(const an_sinefit_choice *choice, const double near[AN_CHANNELS], double freedom,
-                         an_sinefit *fit)
+static void choose_level(const an_sinefit_choice *choice, const an_near_line *near, an_sinefit *fit)
 {
     for (int c = 0; c < AN_CHANNELS; c++) {
-        fit->near_line[c] = near[c];
+        fit->near_line[c] = near->level[c];
         fit->level[c] = fit->deviation[c];
         fit->excess[c] = 1;
         if (choice->level[c] > 0) {
             fit->level[c] = choice->level[c];
-        } else if (freedom > 0 && isfinite(near[c]) && fit->deviation[c] > 0) {
-            double ratio = near[c] / fit->deviation[c];
-            fit->excess[c] = gsl_cdf_chisq_Q(freedom * ratio * ratio, freedom);
+        } else if (near->freedom > 0 && fit->deviation[c] > 0) {
+            double ratio = near->level[c] / fit->deviation[c];
+            fit->excess[c] = gsl_cdf_chisq_Q(near->freedom * ratio * ratio, near->freedom);
             if (fit->excess[c] < COLOUR_RISK || fit->excess[c] > 1 - COLOUR_RISK)
-                fit->level[c] = near[c];
+                fit->level[c] = near->balanced[c];
         }
     }
 }
 
 /* Rounding whose pattern recurs in every cycle adds up instead of averaging out: with m samples a cycle, m
- * whole, only m of the errors are independent. Noise of deviation s before a step q dithers it away by exp(-4
- * pi^2 s^2 / q^2) [WID61]. */
-static double recurring_rounding(const an_waveform *w, const an_model *m, int c, double level)
+ * whole, only m of the errors are independent, and half of them where the mean stands on a step or between
+ * two, so that one half of the cycle mirrors the other. Noise of deviation s before a step q dithers it away
+ * by exp(-4 pi^2 s^2 / q^2) [WID61]; that noise shows near the line, where what recurs does not. */
+static double recurring_rounding(const an_waveform *w, const an_model *m, int c, const an_sinefit *fit)
 {
     double q = w->resolution[c], per_cycle = m->n_used / m->n_cycle, cycles = m->n_cycle;
     if (!(q > 0) || fabs(per_cycle - round(per_cycle)) * cycles > 0.25)
         return 0;
-    return 2 * (q * q / 12) * exp(-4 * M_PI * M_PI * level * level / (q * q)) / per_cycle;
+    double dither = isfinite(fit->near_line[c]) ? fmin(fit->level[c], fit->near_line[c]) : fit->level[c];
+    double steps = 2 * fit->mean[c] / q, mirrored = fabs(steps - round(steps)) < 0.1 ? 2 : 1;
+    return mirrored * 2 * (q * q / 12) * exp(-4 * M_PI * M_PI * dither * dither / (q * q)) / per_cycle;
 }
 
 /* Correlation of the two residuals where it is more than chance (4 deviations), else 0. */
@@ -135,7 +137,7 @@ static void fill_covariance(const an_waveform *w, const an_model *m, const an_so
             fit->covariance[a][b] = level * s->inverse[a % 2][b % 2] + var_omega * tie[a] * tie[b];
         }
     for (int a = 0; a < 4; a++)
-        fit->covariance[a][a] += recurring_rounding(w, m, a / 2, fit->level[a / 2]);
+        fit->covariance[a][a] += recurring_rounding(w, m, a / 2, fit);
     for (int c = 0; c < AN_CHANNELS; c++)
         fit->u_amplitude[c] =
             sqrt(0.5 * (fit->covariance[2 * c][2 * c] + fit->covariance[2 * c + 1][2 * c + 1]));
@@ -184,7 +186,8 @@ an_status an_sinefit_run(const an_waveform *w, const an_sinefit_choice *choice, 
 {
     an_model model;
     an_solution solution;
-    double share[AN_CHANNELS] = {0}, near[AN_CHANNELS] = {NAN, NAN}, var_omega = 0, freedom = 0;
+    double share[AN_CHANNELS] = {0}, var_omega = 0;
+    an_near_line near = {.level = {NAN, NAN}};
     memset(fit, 0, sizeof *fit);
     AN_TRY(an_model_set(&model, w, choice, err));
     double *own = residual ? NULL : malloc(AN_CHANNELS * sizeof *own * (size_t)w->n);
@@ -201,8 +204,8 @@ an_status an_sinefit_run(const an_waveform *w, const an_sinefit_choice *choice, 
     if (!choice->frequency_known)
         step(&solution, (double[]){pow(fit->deviation[0], 2), pow(fit->deviation[1], 2)}, share, &var_omega);
     if (!(choice->level[0] > 0 && choice->level[1] > 0))
-        an_noise_near_line(&model, w, &solution, r, share, near, &freedom);
-    choose_level(choice, near, freedom, fit);
+        an_noise_near_line(&model, w, &solution, r, share, &near);
+    choose_level(choice, &near, fit);
     if (!choice->frequency_known)
         step(&solution, (double[]){pow(fit->level[0], 2), pow(fit->level[1], 2)}, share, &var_omega);
     fill_covariance(w, &model, &solution, var_omega, fit);

@@ -77,15 +77,22 @@ static an_status fit_from(const an_waveform *w, int from, const an_sinefit_choic
     return status;
 }
 
-/* Stiffness of one cycle with the uncertainty of the settled noise. */
+/* Stiffness of one cycle with its uncertainty: by the cycle's own residual where it has samples enough to
+ * tell, never by more than the settled noise, which a stiffness that goes on changing raises. */
 static an_status cycle_fit(const cycles *c, int i_cycle, const an_sinefit *settled, an_sinefit *fit)
 {
-    an_waveform one =
-        part(c->w, cycle_start(c, i_cycle), i_cycle + 1 < c->n ? cycle_start(c, i_cycle + 1) : c->w->n);
-    an_sinefit_choice choice = {
-        .frequency_Hz = settled->frequency_Hz, .frequency_known = 1, .drift_degree = 1, .n_harmonic = 1};
-    for (int k = 0; k < AN_CHANNELS; k++)
-        choice.level[k] = fmax(settled->level[k], 1e-12 * cabs(settled->amplitude[k][0]));
+    enum { ENOUGH = 20 };
+    int to = i_cycle + 1 < c->n ? cycle_start(c, i_cycle + 1) : c->w->n;
+    an_waveform one = part(c->w, cycle_start(c, i_cycle), to);
+    an_sinefit_choice choice = {.frequency_Hz = settled->frequency_Hz,
+                                .frequency_known = 1,
+                                .drift_degree = 1,
+                                .n_harmonic = settled->n_harmonic};
+    AN_TRY(an_sinefit_run(&one, &choice, fit, NULL, NULL));
+    for (int k = 0; k < AN_CHANNELS; k++) {
+        double own = one.n >= ENOUGH ? fmin(fit->deviation[k], settled->level[k]) : settled->level[k];
+        choice.level[k] = fmax(own, 1e-12 * cabs(settled->amplitude[k][0]));
+    }
     return an_sinefit_run(&one, &choice, fit, NULL, NULL);
 }
 
@@ -115,34 +122,37 @@ static int first_steady(const cycles *c, const an_sinefit *settled, const an_sta
     return -1;
 }
 
-/* Drop further cycles while the residual near the line says that more than noise is left; else the least
- * uncertain try. */
+/* Nonzero where more than noise is left near the line, and more than in the later half of the burst: a
+ * transient decays, a coloured noise stays. The levels are known to some 20 % each, so half as much again is
+ * the least that tells. */
+static int transient_left(const an_sinefit *fit, double later, const an_startup_choice *choice)
+{
+    return fit->excess[AN_FORCE] < choice->transient_risk && fit->near_line[AN_FORCE] > 1.5 * later;
+}
+
+/* Drop further cycles while a transient is left, down to the later half of the burst. */
 static an_status drop_transient(const cycles *c, int first, const an_sinefit_choice *choice,
                                 const an_startup_choice *start_choice, an_startup *s, an_sinefit *fit,
                                 double *residual, an_error *err)
 {
-    int last = c->n - start_choice->least_cycles, best = -1;
-    double least = INFINITY;
-    an_status status = AN_OK;
-    for (int k = first; k <= (last > first ? last : first); k++) {
-        int from = cycle_start(c, k);
-        status = fit_from(c->w, from, choice, fit, residual, err);
-        if (status < 0)
-            continue;
-        s->first_sample = from;
-        if (!(fit->excess[AN_FORCE] < start_choice->transient_risk))
+    int half = c->n / 2 > start_choice->least_cycles ? c->n / 2 : start_choice->least_cycles,
+        late = c->n - half;
+    s->first_sample = cycle_start(c, first);
+    AN_TRY(fit_from(c->w, s->first_sample, choice, fit, residual, err));
+    if (late <= first || !(fit->excess[AN_FORCE] < start_choice->transient_risk))
+        return AN_OK;
+    AN_TRY(fit_from(c->w, cycle_start(c, late), choice, fit, residual, err));
+    double later = fit->near_line[AN_FORCE];
+    int still = fit->excess[AN_FORCE] < start_choice->transient_risk;
+    for (int k = first; k <= late; k++) {
+        s->first_sample = cycle_start(c, k);
+        AN_TRY(fit_from(c->w, s->first_sample, choice, fit, residual, err));
+        if (!transient_left(fit, later, start_choice)) {
+            s->settled = s->settled && !(k == late && still);
             return AN_OK;
-        double u = fit->stiffness_noise[0] + fit->stiffness_noise[2];
-        if (u < least) {
-            least = u;
-            best = from;
         }
     }
-    s->settled = 0;
-    if (best < 0)
-        return status;
-    s->first_sample = best;
-    return fit_from(c->w, best, choice, fit, residual, err);
+    return AN_OK;
 }
 
 /* A first, rough fit over the last half of the burst, three cycles at least, gives frequency and noise. */
