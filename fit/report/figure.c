@@ -269,12 +269,15 @@ an_status an_figure_write(an_figure *figure, FILE *out, an_error *err)
     write_head(out, figure, &f);
     draw_ramp(out, figure, &f);
     draw_legend(out, figure, &f);
-    double top = f.panel_top;
-    int i_panel = 0;
-    for (const panel *p = figure->first; p; p = p->next) {
-        draw_axes(out, figure, &f, p, top, !p->next);
-        draw_items(out, figure, &f, p, top, i_panel++);
-        top += p->height + panel_gap(p);
+    canvas c = {.out = out, .figure = figure, .f = &f, .top = f.panel_top};
+    for (c.p = figure->first; c.p; c.p = c.p->next) {
+        c.y = panel_scale(c.p, c.top);
+        c.y_ticks = panel_ticks(c.p, &c.y);
+        c.bottom = c.top + c.p->height;
+        draw_axes(&c);
+        draw_items(&c);
+        c.top = c.bottom + panel_gap(c.p);
+        c.i_panel++;
     }
     fputs("</svg>\n", out);
     return AN_OK;

@@ -7,16 +7,6 @@
 
 #include <math.h>
 
-/* One panel while its items are drawn. */
-typedef struct canvas {
-    FILE *out;
-    const an_figure *figure;
-    const frame *f;
-    const panel *p;
-    scale y;
-    double top, bottom; /* [viewBox unit] */
-} canvas;
-
 static void put_point(FILE *out, char command, double x, double y)
 {
     fputc(command, out);
@@ -35,24 +25,24 @@ void draw_marker_group(FILE *out, const an_figure_style *style)
         fprintf(out, "<g fill=\"#%06x\">", style->color);
 }
 
-const char *draw_marker(FILE *out, an_marker marker, double x, double y, double radius, const char *close)
+const char *draw_marker(FILE *out, const mark *at, const char *close)
 {
-    if (marker == AN_MARKER_DISC || marker == AN_MARKER_RING) {
+    double x = at->x, y = at->y, r = at->radius;
+    if (at->marker == AN_MARKER_DISC || at->marker == AN_MARKER_RING) {
         fputs("<circle", out);
         markup_attribute(out, "cx", x);
         markup_attribute(out, "cy", y);
-        markup_attribute(out, "r", radius);
+        markup_attribute(out, "r", r);
         fputs(close, out);
         return "circle";
     }
-    double r = radius;
     fputs("<path d=\"", out);
     put_point(out, 'M', x - r, y + r);
-    if (marker == AN_MARKER_SQUARE) {
+    if (at->marker == AN_MARKER_SQUARE) {
         put_point(out, 'L', x + r, y + r);
         put_point(out, 'L', x + r, y - r);
         put_point(out, 'L', x - r, y - r);
-    } else if (marker == AN_MARKER_TRIANGLE) {
+    } else if (at->marker == AN_MARKER_TRIANGLE) {
         put_point(out, 'L', x + r, y + r);
         put_point(out, 'L', x, y - r);
     } else {
@@ -60,7 +50,7 @@ const char *draw_marker(FILE *out, an_marker marker, double x, double y, double 
         put_point(out, 'M', x - r, y - r);
         put_point(out, 'L', x + r, y + r);
     }
-    fprintf(out, "%s\"%s", marker == AN_MARKER_CROSS ? "" : "z", close);
+    fprintf(out, "%s\"%s", at->marker == AN_MARKER_CROSS ? "" : "z", close);
     return "path";
 }
 
@@ -192,11 +182,12 @@ static void draw_markers(const canvas *c, const an_figure_series *s)
 {
     draw_marker_group(c->out, &s->style);
     for (size_t k = 0; k < s->n; k++) {
-        double x = scale_place(&c->f->x, s->x[k]), y = scale_place(&c->y, s->y[k]);
-        if (!isfinite(x) || !isfinite(y))
+        mark at = {s->style.marker, scale_place(&c->f->x, s->x[k]), scale_place(&c->y, s->y[k]),
+                   s->style.radius};
+        if (!isfinite(at.x) || !isfinite(at.y))
             continue;
         bool hover = s->name || (s->hovers && s->hovers[k]);
-        const char *element = draw_marker(c->out, s->style.marker, x, y, s->style.radius, hover ? ">" : "/>");
+        const char *element = draw_marker(c->out, &at, hover ? ">" : "/>");
         if (hover) {
             put_hover(c, s, k);
             fprintf(c->out, "</%s>", element);
@@ -275,17 +266,16 @@ static void draw_border(const canvas *c, const char *start, const char *end)
     fputs(end, c->out);
 }
 
-void draw_items(FILE *out, const an_figure *figure, const frame *f, const panel *p, double top, int i_panel)
+void draw_items(const canvas *c)
 {
-    canvas c = {out, figure, f, p, panel_scale(p, top), top, top + p->height};
-    fprintf(out, "<clipPath id=\"%s-clip%d\">", figure->id, i_panel);
-    draw_border(&c, "<rect", "/></clipPath>\n");
-    fprintf(out, "<g clip-path=\"url(#%s-clip%d)\">\n", figure->id, i_panel);
+    fprintf(c->out, "<clipPath id=\"%s-clip%d\">", c->figure->id, c->i_panel);
+    draw_border(c, "<rect", "/></clipPath>\n");
+    fprintf(c->out, "<g clip-path=\"url(#%s-clip%d)\">\n", c->figure->id, c->i_panel);
     static const item_kind passes[] = {ITEM_SHADE, ITEM_BAND, ITEM_LEVEL, ITEM_SERIES, ITEM_RULE};
     for (size_t k = 0; k < sizeof passes / sizeof passes[0]; k++)
-        for (const item *i = p->first; i; i = i->next)
+        for (const item *i = c->p->first; i; i = i->next)
             if (i->kind == passes[k])
-                draw_item(&c, i);
-    fputs("</g>\n", out);
-    draw_border(&c, "<rect fill=\"none\" stroke=\"#5e6b74\"", "/>\n");
+                draw_item(c, i);
+    fputs("</g>\n", c->out);
+    draw_border(c, "<rect fill=\"none\" stroke=\"#5e6b74\"", "/>\n");
 }

@@ -93,6 +93,7 @@ double tick_width(const tick_set *ticks, int i_major, double size);
 
 #define FIGURE_TICK_SIZE  14.0 /* font sizes [viewBox unit] */
 #define FIGURE_LABEL_SIZE 15.0
+#define FIGURE_EDGE       8.0 /* free at the left of the legend and on the right [viewBox unit] */
 
 /* Where everything stands [viewBox unit]. */
 typedef struct frame {
@@ -111,20 +112,41 @@ scale panel_scale(const panel *p, double top);
 tick_set panel_ticks(const panel *p, const scale *y);
 double panel_gap(const panel *p);
 
+/* One panel while it is drawn. */
+typedef struct canvas {
+    FILE *out;
+    const an_figure *figure;
+    const frame *f;
+    const panel *p;
+    int i_panel;        /* from 0 */
+    scale y;
+    tick_set y_ticks;
+    double top, bottom; /* [viewBox unit] */
+} canvas;
+
 /* The parts of the drawing, in the order of painting. */
-void draw_legend(FILE *out, const an_figure *figure, const frame *f);
 void draw_ramp(FILE *out, const an_figure *figure, const frame *f);
-void draw_axes(FILE *out, const an_figure *figure, const frame *f, const panel *p, double top, int is_last);
-void draw_items(FILE *out, const an_figure *figure, const frame *f, const panel *p, double top, int i_panel);
+void draw_legend(FILE *out, const an_figure *figure, const frame *f);
+void draw_axes(const canvas *c);
+void draw_items(const canvas *c);
+
+/* text_at: the start of a text element; its content and end follow. */
+void text_at(FILE *out, const char *anchor, double x, double y);
 
 /* legend_height: of all rows [viewBox unit], 0 without entries. */
 double legend_height(const an_figure *figure);
+
+/* Where a marker stands. */
+typedef struct mark {
+    an_marker marker;
+    double x, y, radius; /* [viewBox unit] */
+} mark;
 
 /* draw_marker_group: the start of a group that fills and strokes the markers in it. draw_marker: one marker.
  *   close [in] what follows its attributes: a slash and a bracket, or a bracket where content follows
  * draw_marker returns the name of the element, for its end. */
 void draw_marker_group(FILE *out, const an_figure_style *style);
-const char *draw_marker(FILE *out, an_marker marker, double x, double y, double radius, const char *close);
+const char *draw_marker(FILE *out, const mark *at, const char *close);
 
 /* stroke_dashes: the dashes of a stroke as an attribute, "" for a solid one. */
 const char *stroke_dashes(an_stroke stroke);
