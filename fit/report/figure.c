@@ -161,6 +161,7 @@ void an_figure_add_series(an_figure *figure, const an_figure_series *series)
     i->series.y = take_array(figure, series->y, series->n);
     i->series.u = take_array(figure, series->u, series->n);
     i->series.hovers = take_hovers(figure, series->hovers, series->n);
+    i->series.bars = take_text(figure, series->bars);
     i->series.name = take_text(figure, series->name);
     i->series.legend = take_text(figure, series->legend);
     if (!i->series.x || !i->series.y)

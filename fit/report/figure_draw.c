@@ -174,6 +174,11 @@ static void put_hover(const canvas *c, const an_figure_series *s, size_t k)
         put_value(c->out, x->symbol ? x->symbol : "x", x->unit, s->x[k], 0);
         fputs(", ", c->out);
         put_value(c->out, y->symbol ? y->symbol : "y", y->unit, s->y[k], s->u ? s->u[k] : 0);
+        if (s->bars && s->u && s->u[k] > 0) {
+            fputs(" (", c->out);
+            markup_plain(c->out, s->bars);
+            fputc(')', c->out);
+        }
     }
     fputs("</title>", c->out);
 }

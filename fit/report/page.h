@@ -12,6 +12,7 @@
 
 #define ZERO_CELSIUS_K 273.15 /* [K] */
 #define PAGE_COVERAGE  2.0    /* [1] coverage factor of bars and bands, about 95 % */
+#define PAGE_BARS      "k = 2" /* what the bars are, in hover texts */
 
 enum { PAGE_CURVE = 240 }; /* points of a drawn curve */
 

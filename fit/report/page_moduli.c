@@ -68,54 +68,66 @@ static void strand_fill(strand *s, const page_cells *cells, direction way, int g
             strand_add(s, &cells->cell[i], way);
 }
 
-/* What a group is called in hover texts, as in "E′ at 10.0 Hz". */
-static void name_group(char *name, size_t size, const char *symbol, const strand *s, direction way,
-                       const page_cells *cells)
+/* The first cell of a group; NULL where it has none. */
+static const page_cell *first_of(const page_cells *cells, direction way, int group)
 {
+    for (int i = 0; i < cells->n; i++)
+        if (group_of(&cells->cell[i], way) == group)
+            return &cells->cell[i];
+    return NULL;
+}
+
+enum { NAME = 64 }; /* bytes of a group's name */
+
+/* What a group is called in hover texts, as in "E′ at 10.0 Hz". */
+static void name_group(char name[NAME], const page_cells *cells, direction way, int group, const char *symbol)
+{
+    const page_cell *first = first_of(cells, way, group);
     name[0] = '\0';
-    FILE *out = fmemopen(name, size, "w");
+    FILE *out = first ? fmemopen(name, NAME, "w") : NULL;
     if (!out)
         return;
     fprintf(out, "%s at ", symbol);
-    for (int i = 0; i < cells->n && s->n > 0; i++) {
-        const page_cell *c = &cells->cell[i];
-        bool first = (way == ALONG_TEMPERATURE ? c->temperature_C : c->frequency_Hz) == s->x[0] &&
-                     c->modulus_MPa[0] == s->y[0][0];
-        if (!first)
-            continue;
-        if (way == ALONG_TEMPERATURE)
-            markup_number(out, c->frequency_Hz, 3);
-        else
-            markup_fixed(out, c->temperature_C, 1);
-        break;
-    }
+    if (way == ALONG_TEMPERATURE)
+        markup_number(out, first->frequency_Hz, 3);
+    else
+        markup_fixed(out, first->temperature_C, 1);
     fputs(way == ALONG_TEMPERATURE ? " Hz" : " °C", out);
     fclose(out);
 }
 
 static uint32_t group_color(const page_cells *cells, direction way, int group)
 {
-    for (int i = 0; i < cells->n; i++)
-        if (group_of(&cells->cell[i], way) == group)
-            return way == ALONG_TEMPERATURE ? page_line_color(cells, cells->cell[i].frequency_Hz)
-                                            : page_cell_color(cells, cells->cell[i].temperature_C);
-    return AN_COLOR_MUTED;
+    const page_cell *first = first_of(cells, way, group);
+    if (!first)
+        return AN_COLOR_MUTED;
+    return way == ALONG_TEMPERATURE ? page_line_color(cells, first->frequency_Hz)
+                                    : page_cell_color(cells, first->temperature_C);
+}
+
+/* E′, E″ or tan δ, with the letter of the modulus. */
+static void quantity_symbol(const page *p, int quantity, char symbol[16])
+{
+    if (quantity == 2)
+        snprintf(symbol, 16, "tan δ");
+    else
+        snprintf(symbol, 16, "%c%s", p->letter, quantity ? "″" : "′");
 }
 
 /* One quantity of all groups into the last panel of a figure. */
-static void add_quantity(page *p, an_figure *figure, strand *s, direction way, int quantity,
-                         const char *symbol)
+static void add_quantity(page *p, an_figure *figure, strand *s, direction way, int quantity)
 {
     int n_group = way == ALONG_TEMPERATURE ? p->cells.n_line : p->cells.n_isotherm;
-    char name[64];
+    char name[NAME], symbol[16];
+    quantity_symbol(p, quantity, symbol);
     for (int g = 0; g < n_group; g++) {
+        name_group(name, &p->cells, way, g, symbol);
         an_figure_style style = {.color = group_color(&p->cells, way, g),
                                  .radius = 2.2,
                                  .width = 1,
                                  .marker = quantity == 1 ? AN_MARKER_RING : AN_MARKER_DISC,
                                  .stroke = AN_STROKE_SOLID};
         strand_fill(s, &p->cells, way, g, false);
-        name_group(name, sizeof name, symbol, s, way, &p->cells);
         an_figure_add_band(figure, &(an_figure_band){.x = s->x,
                                                      .low = s->low[quantity],
                                                      .high = s->high[quantity],
@@ -127,11 +139,11 @@ static void add_quantity(page *p, an_figure *figure, strand *s, direction way, i
         an_figure_add_series(figure, &(an_figure_series){.x = s->x,
                                                          .y = s->y[quantity],
                                                          .u = s->bar[quantity],
+                                                         .bars = PAGE_BARS,
                                                          .n = s->n,
                                                          .name = name,
                                                          .style = style});
         strand_fill(s, &p->cells, way, g, true);
-        name_group(name, sizeof name, symbol, s, way, &p->cells);
         style.marker = AN_MARKER_CROSS;
         style.stroke = AN_STROKE_NONE;
         style.radius = 3.2;
@@ -139,6 +151,7 @@ static void add_quantity(page *p, an_figure *figure, strand *s, direction way, i
             an_figure_add_series(figure, &(an_figure_series){.x = s->x,
                                                              .y = s->y[quantity],
                                                              .u = s->bar[quantity],
+                                                             .bars = PAGE_BARS,
                                                              .n = s->n,
                                                              .name = name,
                                                              .legend = "flagged or outlier",
@@ -170,7 +183,7 @@ static void figure_along(page *p, strand *s, direction way)
     bool over_temperature = way == ALONG_TEMPERATURE;
     char labels[2][32], symbols[2][16];
     for (int k = 0; k < 2; k++) {
-        snprintf(symbols[k], sizeof symbols[k], "%c%s", p->letter, k ? "″" : "′");
+        quantity_symbol(p, k, symbols[k]);
         snprintf(labels[k], sizeof labels[k], "%s (MPa)", symbols[k]);
     }
     an_figure_spec spec = {
@@ -201,11 +214,11 @@ static void figure_along(page *p, strand *s, direction way)
         an_figure_axis axis = {
             .label = labels[k], .symbol = symbols[k], .unit = "MPa", .scale = AN_AXIS_LOG10};
         an_figure_add_panel(figure, &axis, 150);
-        add_quantity(p, figure, s, way, k, symbols[k]);
+        add_quantity(p, figure, s, way, k);
     }
     an_figure_add_panel(figure,
                         &(an_figure_axis){.label = "tan δ", .symbol = "tan δ", .scale = AN_AXIS_LOG10}, 130);
-    add_quantity(p, figure, s, way, 2, "tan δ");
+    add_quantity(p, figure, s, way, 2);
     if (over_temperature)
         add_reading(p, figure);
     page_figure_end(
@@ -236,8 +249,8 @@ static void figure_angle(page *p, strand *s)
                         260);
     for (int g = 0; g < p->cells.n_isotherm; g++) {
         strand_fill(s, &p->cells, ALONG_FREQUENCY, g, false);
-        char name[64];
-        name_group(name, sizeof name, "δ", s, ALONG_FREQUENCY, &p->cells);
+        char name[NAME];
+        name_group(name, &p->cells, ALONG_FREQUENCY, g, "δ");
         for (size_t i = 0; i < s->n; i++) {
             s->x[i] = hypot(s->y[0][i], s->y[1][i]);
             double t = s->y[2][i];
@@ -248,6 +261,7 @@ static void figure_angle(page *p, strand *s)
             figure, &(an_figure_series){.x = s->x,
                                         .y = s->y[2],
                                         .u = s->bar[2],
+                                        .bars = PAGE_BARS,
                                         .n = s->n,
                                         .name = name,
                                         .style = {.color = group_color(&p->cells, ALONG_FREQUENCY, g),
@@ -263,8 +277,9 @@ static void figure_angle(page *p, strand *s)
 }
 
 /* Relative uncertainty of one modulus into the last panel: noise and total over temperature. */
-static void add_relative(page *p, an_figure *figure, double *x, double *y, int modulus, bool total)
+static void add_relative(page *p, an_figure *figure, strand *s, int modulus, bool total)
 {
+    double *x = s->x, *y = s->y[0];
     size_t n = 0;
     for (int i = 0; i < p->cells.n; i++) {
         const page_cell *c = &p->cells.cell[i];
@@ -298,8 +313,8 @@ static void figure_uncertainty(page *p, strand *s)
         an_figure_add_panel(
             figure, &(an_figure_axis){.label = label, .symbol = "u", .unit = "%", .scale = AN_AXIS_LOG10},
             130);
-        add_relative(p, figure, s->x, s->y[0], k, true);
-        add_relative(p, figure, s->x, s->y[0], k, false);
+        add_relative(p, figure, s, k, true);
+        add_relative(p, figure, s, k, false);
     }
     page_figure_end(p, &figure,
                     "Relative standard uncertainty (k = 1) of every modulus. The noise part differs from "

@@ -20,13 +20,21 @@ static void add_window(an_figure *figure, const double window[2])
                          &(an_figure_series){.x = ends, .y = nothing, .n = 2}); /* room for both ends */
 }
 
-/* Modes that are trusted, or those that are not. trusted NULL: by the window. */
-static void add_modes(an_figure *figure, const an_maxwell *modes, const int *trusted, const double window[2],
-                      bool wanted)
+/* A spectrum with what is trusted of it. */
+typedef struct mode_set {
+    const an_maxwell *modes;
+    const int *trusted;   /* [n_mode]; NULL: by the window */
+    const double *window; /* [2] [s] */
+} mode_set;
+
+/* Modes that are trusted, or those that are not. */
+static void add_modes(an_figure *figure, const mode_set *set, bool wanted)
 {
+    const an_maxwell *modes = set->modes;
     for (size_t i = 0; i < modes->n_mode; i++) {
         double tau = modes->time_s[i], strength = modes->modulus_Pa[i] / 1e6;
-        bool is_trusted = trusted ? trusted[i] != 0 : tau >= window[0] && tau <= window[1];
+        bool inside = tau >= set->window[0] && tau <= set->window[1];
+        bool is_trusted = set->trusted ? set->trusted[i] != 0 : inside;
         if (is_trusted != wanted || !(strength > 0))
             continue;
         an_figure_style style = {.color = wanted ? AN_COLOR_FIRST : AN_COLOR_MUTED,
@@ -44,8 +52,7 @@ static void add_modes(an_figure *figure, const an_maxwell *modes, const int *tru
 }
 
 /* Ranges that take in the modes and, with a little room, the window's ends. */
-static void figure_modes(page *p, const an_figure_spec *spec, const an_maxwell *modes, const int *trusted,
-                         const double window[2], const char *caption)
+static void figure_modes(page *p, const an_figure_spec *spec, const mode_set *set, const char *caption)
 {
     an_figure *figure = page_figure_new(p, spec);
     if (!figure)
@@ -55,9 +62,9 @@ static void figure_modes(page *p, const an_figure_spec *spec, const an_maxwell *
     an_figure_add_panel(
         figure,
         &(an_figure_axis){.label = label, .symbol = "strength", .unit = "MPa", .scale = AN_AXIS_LOG10}, 200);
-    add_window(figure, window);
-    add_modes(figure, modes, trusted, window, true);
-    add_modes(figure, modes, trusted, window, false);
+    add_window(figure, set->window);
+    add_modes(figure, set, true);
+    add_modes(figure, set, false);
     page_figure_end(p, &figure, caption);
 }
 
@@ -182,7 +189,8 @@ void section_spectrum(page *p)
         an_figure_spec spec = {.id = "modes",
                                .title = "Handed-over relaxation spectrum with its trusted window",
                                .x = {.label = label, .symbol = "τ", .unit = "s", .scale = AN_AXIS_LOG10}};
-        figure_modes(p, &spec, &m->modes, m->trusted, m->window_time_s,
+        mode_set set = {&m->modes, m->trusted, m->window_time_s};
+        figure_modes(p, &spec, &set,
                      "The modes that are handed over. Crosses in the hatched range only close the fit at its "
                      "edges and carry no "
                      "meaning of their own.");
@@ -193,7 +201,8 @@ void section_spectrum(page *p)
         an_figure_spec spec = {.id = "dense",
                                .title = "Relaxation spectrum of the joint fit with its trusted window",
                                .x = {.label = label, .symbol = "τ", .unit = "s", .scale = AN_AXIS_LOG10}};
-        figure_modes(p, &spec, &r->master.spectrum, NULL, r->master.window_s,
+        mode_set set = {&r->master.spectrum, NULL, r->master.window_s};
+        figure_modes(p, &spec, &set,
                      r->master.simplicity == AN_COMPLEX
                          ? "The dense spectrum of the joint fit. It belongs to a fit that the data refuse: "
                            "shown to judge by, not "

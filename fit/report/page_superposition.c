@@ -51,11 +51,17 @@ static bool shift_arrays_new(page *p, shift_arrays *s)
     return true;
 }
 
+/* What a panel shows of the shifts: values, half-lengths of the bars [1], and its name. */
+typedef struct shift_column {
+    const double *y, *bar; /* [n_shift] */
+    const char *name;
+} shift_column;
+
 /* Each shift in its colour; those barely determined are open. */
-static void add_shifts(page *p, an_figure *figure, const double *x, const double *y, const double *bar,
-                       const char *name)
+static void add_shifts(page *p, an_figure *figure, const double *x, const shift_column *column)
 {
     const an_master *master = &p->report->master;
+    const double *y = column->y, *bar = column->bar;
     for (int i = 0; i < master->n_shift; i++) {
         bool determined = master->shift[i].determined;
         an_figure_style style = {.color = page_cell_color(&p->cells, x[i]),
@@ -65,8 +71,9 @@ static void add_shifts(page *p, an_figure *figure, const double *x, const double
             figure, &(an_figure_series){.x = x + i,
                                         .y = y + i,
                                         .u = bar + i,
+                                        .bars = PAGE_BARS,
                                         .n = 1,
-                                        .name = name,
+                                        .name = column->name,
                                         .legend = determined ? "isotherm" : "isotherm, barely determined",
                                         .neutral = true,
                                         .loose = !determined,
@@ -126,15 +133,15 @@ static void figure_shifts(page *p)
     if (figure) {
         an_figure_add_panel(figure, &(an_figure_axis){.label = "log_{10} a_{T}", .symbol = "log a"}, 190);
         add_law(p, figure);
-        add_shifts(p, figure, s.T, s.log_a, s.bar_a, "log a");
+        add_shifts(p, figure, s.T, &(shift_column){s.log_a, s.bar_a, "log a"});
         an_figure_add_rule(figure, master->reference_temperature_K - ZERO_CELSIUS_K, "reference");
         an_figure_add_panel(figure, &(an_figure_axis){.label = "off law", .symbol = "log a − law"}, 80);
         an_figure_add_level(figure, 0);
-        add_shifts(p, figure, s.T, s.miss, s.noise_a, "log a");
+        add_shifts(p, figure, s.T, &(shift_column){s.miss, s.noise_a, "log a off law"});
         if (master->vertical != AN_VERTICAL_NONE) {
             an_figure_add_panel(figure, &(an_figure_axis){.label = "log_{10} b_{T}", .symbol = "log b"}, 80);
             an_figure_add_level(figure, 0);
-            add_shifts(p, figure, s.T, s.log_b, s.bar_b, "log b");
+            add_shifts(p, figure, s.T, &(shift_column){s.log_b, s.bar_b, "log b"});
         }
         page_figure_end(p, &figure,
                         "Horizontal shift factors with the law that was chosen, their distance from it in "
@@ -226,6 +233,7 @@ static void add_points(page *p, an_figure *figure, master_arrays *m, int modulus
                 figure, &(an_figure_series){.x = m->x,
                                             .y = residual ? m->residual[modulus] : m->modulus[modulus],
                                             .u = residual ? NULL : m->bar[modulus],
+                                            .bars = PAGE_BARS,
                                             .n = m->n,
                                             .name = name,
                                             .legend = outlier ? "left out as outlier" : symbol,

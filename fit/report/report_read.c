@@ -70,7 +70,8 @@ static int find_role(FILE *in)
 /* A path as the readers take it: standard input becomes a temporary file, kept open in *spool. */
 typedef struct document {
     char path[4096];
-    FILE *file; /* kept open while it is read */
+    const char *given; /* on the command line */
+    FILE *file;        /* kept open while it is read */
     int role;
 } document;
 
@@ -90,6 +91,7 @@ static an_status spool_input(FILE *spool, an_error *err)
 static an_status document_open(document *d, const char *path, an_error *err)
 {
     bool is_input = strcmp(path, "-") == 0;
+    d->given = path;
     d->file = is_input ? tmpfile() : fopen(path, "rb");
     if (!d->file)
         return an_fail(err, AN_E_IO, is_input ? "standard input" : path, "cannot be opened: %m");
@@ -226,16 +228,15 @@ static void name_source(an_report_source *source, const char *role, const char *
 
 /* Points before the run, since they say which burst is worth showing; the order on the page is that of the
  * roles. */
-static an_status read_in_order(an_report *report, const document *documents, char *const *paths, int n_path,
-                               int burst, an_error *err)
+static an_status read_in_order(an_report *report, const document *documents, int n, int burst, an_error *err)
 {
     static const int order[AN_REPORT_SOURCES] = {AN_REPORT_POINTS, AN_REPORT_RUN, AN_REPORT_GRID,
                                                  AN_REPORT_MASTER, AN_REPORT_MATERIAL};
     char sha256[AN_REPORT_SOURCES][AN_SHA256_SIZE];
     int from[AN_REPORT_SOURCES] = {-1, -1, -1, -1, -1};
-    for (int i = 0; i < n_path; i++) {
+    for (int i = 0; i < n; i++) {
         if (from[documents[i].role] >= 0)
-            return an_fail(err, AN_E_USAGE, paths[i], "is the second %s document; a page shows one",
+            return an_fail(err, AN_E_USAGE, documents[i].given, "is the second %s document; a page shows one",
                            roles[documents[i].role]);
         from[documents[i].role] = i;
     }
@@ -246,7 +247,7 @@ static an_status read_in_order(an_report *report, const document *documents, cha
         if (from[role] < 0)
             continue;
         an_report_source *source = &report->source[report->n_source++];
-        name_source(source, roles[role], paths[from[role]]);
+        name_source(source, roles[role], documents[from[role]].given);
         memcpy(source->sha256, sha256[role], sizeof source->sha256);
     }
     return AN_OK;
@@ -271,7 +272,7 @@ an_status an_report_read(an_report *report, char *const *paths, int n_path, int 
             AN_CLEAN(
                 an_fail(err, AN_E_USAGE, NULL, "a burst can only be shown where a run document is given"));
     }
-    AN_CLEAN(read_in_order(report, documents, paths, n_path, burst, err));
+    AN_CLEAN(read_in_order(report, documents, n_path, burst, err));
 cleanup:
     for (int i = 0; i < n_path; i++)
         if (documents[i].file)

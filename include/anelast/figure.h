@@ -70,6 +70,7 @@ typedef struct an_figure_series {
     const double *y; /* [n], unit of the axis */
     const double *u; /* [n] half-length of the error bars, unit of y; NULL: none */
     size_t n;
+    const char *bars;          /* plain; what the bars are, for hover texts: "k = 2"; NULL: nothing is said */
     const char *name;          /* plain; opens the made hover texts; NULL: no hover texts are made */
     const char *const *hovers; /* [n] plain hover texts in place of the made ones; NULL, or an item NULL: made */
     const char *legend;        /* plain; what the legend calls it; NULL or known there already: no entry */

@@ -139,6 +139,7 @@ static an_figure *everything(void)
                                                      .n = 4,
                                                      .name = "lot <A>",
                                                      .legend = "lot <A>",
+                                                     .bars = "k = 2",
                                                      .style = {.color = an_ramp_color(0.3),
                                                                .marker = AN_MARKER_RING,
                                                                .stroke = AN_STROKE_DASHED}});
@@ -187,7 +188,8 @@ static void test_parts_are_there_once(void **state)
     assert_int_equal(count_nodes(text, "/s:svg/s:title[.='All parts <once>']"), 1);
     assert_int_equal(count_nodes(text, "/s:svg/s:desc[.='Stored & compared']"), 1);
     assert_int_equal(count_nodes(text, "//s:circle[s:title]"), 4);
-    assert_int_equal(count_nodes(text, "//s:circle/s:title[starts-with(., 'lot <A>: f = 0.1000 Hz, E′ = ')]"),
+    assert_int_equal(count_nodes(text, "//s:circle/s:title[starts-with(., 'lot <A>: f = 0.1000 Hz, E′ = "
+                                       "(2.00 ± 0.10)×10⁶ Pa (k = 2)')]"),
                      1);
     assert_int_equal(count_nodes(text, "//s:text[.='lot <A>']"), 1);
     assert_int_equal(count_nodes(text, "//s:clipPath"), 2);
