@@ -26,6 +26,18 @@ static size_t fitting(const char *text, int n_column)
     return i;
 }
 
+/* Texts come from dumps and documents: control characters, also those of the upper half, never reach the
+ * terminal. */
+static void put_plain(FILE *out, const char *text, size_t n)
+{
+    for (size_t i = 0; i < n; i++) {
+        unsigned char c = (unsigned char)text[i], next = i + 1 < n ? (unsigned char)text[i + 1] : 0;
+        int upper = c == 0xc2 && next >= 0x80 && next < 0xa0;
+        fputc(c < 0x20 || c == 0x7f || upper ? '?' : c, out);
+        i += (size_t)upper;
+    }
+}
+
 /* A label and a text of at most n_line lines; what does not fit is on the page. */
 static void put_block(FILE *out, const char *label, int n_line, const char *text)
 {
@@ -35,7 +47,8 @@ static void put_block(FILE *out, const char *label, int n_line, const char *text
         int cut = i == n_line && text[n];
         if (cut)
             n = fitting(text, COLUMNS - INDENT - 4);
-        fprintf(out, "%.*s%s\n", (int)n, text, cut ? " ..." : "");
+        put_plain(out, text, n);
+        fputs(cut ? " ...\n" : "\n", out);
         text += n + (text[n] == ' ');
         if (!*text || i == n_line)
             return;
@@ -225,8 +238,8 @@ static void print_head(const an_after_run *run, const char *verdict, FILE *out)
     append(text, "", "%s: %s", run->id, verdict);
     if (run->about[0])
         append(text, "", " (%s)", run->about);
-    size_t n = fitting(text, COLUMNS);
-    fprintf(out, "%.*s\n", (int)n, text);
+    put_plain(out, text, fitting(text, COLUMNS));
+    fputc('\n', out);
 }
 
 /* Which documents were chosen beside the dump, what was replaced, and where the page is. */

@@ -1,5 +1,5 @@
-/* glass.c: one glass-transition reading from one quantity over temperature, after ASTM E1640 (storage onset)
- * and ISO 6721-11 (peaks). Isotherms stand some kelvin apart, so the curve between them is a local
+/* glass.c: one glass-transition reading from one quantity over temperature, after [E1640] (storage onset)
+ * and [ISO6721-11] (peaks). Isotherms stand some kelvin apart, so the curve between them is a local
  * polynomial:
  *
  * - Peak: fourth degree through the five temperatures around the greatest value, by least squares over more
