@@ -63,7 +63,7 @@ void an_sinefit_choice_init(an_sinefit_choice *choice);
  *   waveform [in]; choice [in]; fit [out]
  *   residual [out, nullable] [AN_CHANNELS][n] flat, [unit of y]; also where use is 0
  * The covariance is that of white noise at `level`: the residual's standard deviation, or where that differs
- * significantly (0.5 % each side) from what stands near the line (0.45 to 2.3 times the frequency, at most 16
+ * significantly (0.5 % each side) from what stands near the line (0.45 to 2.3 times the frequency, at most 10
  * bins each side), the level near the line; and the part of the rounding error that recurs in every cycle of
  * coherent sampling is added [WID61]. A noise common to both channels enters by the residuals' correlation.
  * Returns AN_OK; AN_E_VALUE (fewer samples than unknowns, no span, choice out of range); AN_E_NUMERIC

@@ -9,10 +9,11 @@
 
 #include <math.h>
 #include <stddef.h>
+#include <string.h>
 
 /* Bins each side, and the band that counts as near, in times the frequency. Common practice: half an octave
  * below to more than an octave above, wide enough for some 20 degrees of freedom in seven cycles. */
-enum { BINS_EACH_SIDE = 16 };
+enum { BINS_EACH_SIDE = 10 };
 static const double BAND_LOW = 0.45, BAND_HIGH = 2.3;
 
 /* Sums of one probing sine against model, slope and residuals. Both its phases, cosine and sine. */
@@ -20,35 +21,38 @@ typedef struct probe {
     double self[2], column[2][AN_COLUMNS], slope[2][AN_CHANNELS], residual[2][AN_CHANNELS];
 } probe;
 
-static void probe_add(probe *p, const an_model *m, const an_solution *s, double t, const double *row,
-                      const double r[AN_CHANNELS], const double v[2])
+static void probe_add(probe *p, const an_model *m, const double *row, const double r[AN_CHANNELS],
+                      const double slope[AN_CHANNELS], const double v[2])
 {
     for (int k = 0; k < 2; k++) {
         p->self[k] += v[k] * v[k];
         for (int j = 0; j < m->n_column; j++)
             p->column[k][j] += v[k] * row[j];
-        for (int c = 0; c < AN_CHANNELS; c++)
+        for (int c = 0; c < AN_CHANNELS; c++) {
             p->residual[k][c] += v[k] * r[c];
-    }
-    for (int c = 0; c < AN_CHANNELS; c++) {
-        double g = an_model_slope(m, t, row, s->coefficient[c]);
-        p->slope[0][c] += v[0] * g;
-        p->slope[1][c] += v[1] * g;
+            p->slope[k][c] += v[k] * slope[c];
+        }
     }
 }
 
-static void probe_run(probe *p, const an_model *m, const an_waveform *w, const an_solution *s,
-                      const double *residual, double omega)
+/* All probes in one pass over the samples. omega [n_probe] [rad/s]. */
+static void probe_all(probe *probes, const double *omega, int n_probe, const an_model *m,
+                      const an_waveform *w, const an_solution *s, const double *residual)
 {
     double row[AN_COLUMNS];
-    *p = (probe){0};
     for (int i = 0; i < w->n; i++) {
         if (w->use && !w->use[i])
             continue;
-        double t = w->time_s[i], phase = omega * (t - m->origin);
+        double t = w->time_s[i], slope[AN_CHANNELS];
         double r[AN_CHANNELS] = {residual[i], residual[(size_t)w->n + (size_t)i]};
         an_model_row(m, t, row);
-        probe_add(p, m, s, t, row, r, (double[]){cos(phase), sin(phase)});
+        for (int c = 0; c < AN_CHANNELS; c++)
+            slope[c] = an_model_slope(m, t, row, s->coefficient[c]);
+        for (int k = 0; k < n_probe; k++) {
+            double v[2];
+            sincos(omega[k] * (t - m->origin), &v[1], &v[0]);
+            probe_add(&probes[k], m, row, r, slope, v);
+        }
     }
 }
 
@@ -83,33 +87,35 @@ typedef struct side {
     double power[AN_CHANNELS], expected[AN_CHANNELS]; /* [unit of y squared], [1] */
 } side;
 
-static void add_bin(const an_model *m, const an_waveform *w, const an_solution *s, const double *residual,
-                    const double weight[AN_CHANNELS], int bin, side *sum)
+static void add_probe(const an_model *m, const an_solution *s, const double weight[AN_CHANNELS],
+                      const probe *p, side *sum)
 {
-    probe p;
-    probe_run(&p, m, w, s, residual, m->omega * (1 + bin / m->n_cycle));
     for (int c = 0; c < AN_CHANNELS; c++)
         for (int k = 0; k < 2; k++) {
-            sum->power[c] += p.residual[k][c] * p.residual[k][c];
-            sum->expected[c] += expectation(&p, k, c, m, s, weight[c]);
+            sum->power[c] += p->residual[k][c] * p->residual[k][c];
+            sum->expected[c] += expectation(p, k, c, m, s, weight[c]);
         }
 }
 
 void an_noise_near_line(const an_model *m, const an_waveform *w, const an_solution *s, const double *residual,
                         const double weight[AN_CHANNELS], an_near_line *near)
 {
+    probe probes[2 * BINS_EACH_SIDE];
+    double omega[2 * BINS_EACH_SIDE];
     side below = {0}, above = {0};
-    near->freedom = 0;
-    for (int bin = -BINS_EACH_SIDE; bin <= BINS_EACH_SIDE; bin++) {
-        if (!bin_free(m, bin))
-            continue;
-        add_bin(m, w, s, residual, weight, bin, bin < 0 ? &below : &above);
-        near->freedom += 2;
-    }
+    int n = 0;
+    for (int bin = -BINS_EACH_SIDE; bin <= BINS_EACH_SIDE; bin++)
+        if (bin_free(m, bin))
+            omega[n++] = m->omega * (1 + bin / m->n_cycle);
+    memset(probes, 0, sizeof probes);
+    probe_all(probes, omega, n, m, w, s, residual);
+    for (int k = 0; k < n; k++)
+        add_probe(m, s, weight, &probes[k], omega[k] < m->omega ? &below : &above);
+    near->freedom = 2 * n;
     for (int c = 0; c < AN_CHANNELS; c++) {
         double low = below.power[c] / below.expected[c], high = above.power[c] / above.expected[c];
         double pooled = (below.power[c] + above.power[c]) / (below.expected[c] + above.expected[c]);
-        near->level[c] = near->freedom > 0 ? sqrt(pooled) : NAN;
+        near->level[c] = n > 0 ? sqrt(pooled) : NAN;
         near->balanced[c] =
             below.expected[c] > 0 && above.expected[c] > 0 ? sqrt(sqrt(low * high)) : near->level[c];
     }
