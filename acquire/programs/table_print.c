@@ -52,12 +52,12 @@ static void put_codes(FILE *out, const an_xml_node *row)
 }
 
 /* A quantity as it stands where its unit is the head's, converted where it is not. */
-static an_status put_quantity(FILE *out, const an_xml_node *node, const char *attribute, const char *text,
-                              const char *unit, an_error *err)
+static an_status put_quantity(FILE *out, const an_xml_node *node, const char *attribute, const char *unit,
+                              an_error *err)
 {
     const char *given = an_xml_attribute_of(node, "unit");
     if (!given || strcmp(given, unit) == 0) {
-        put_text(out, text);
+        put_text(out, an_xml_attribute_of(node, attribute));
         return AN_OK;
     }
     an_conversion conversion;
@@ -93,7 +93,7 @@ static an_status put_cell(FILE *out, const an_xml_node *row, const an_column *co
     if (!text)
         return AN_OK;
     if (column->unit)
-        return put_quantity(out, node, path + 1, text, column->unit, err);
+        return put_quantity(out, node, path + 1, column->unit, err);
     put_text(out, text);
     return AN_OK;
 }

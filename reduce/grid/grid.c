@@ -47,6 +47,7 @@ void an_grid_clear(an_grid *grid)
 static an_cell_rules rules_for(const an_points *points, int n_points, const an_procedure *procedure)
 {
     an_cell_rules rules = {.width_K = an_procedure_number(procedure, "isotherm_width"),
+                           .rate_K_s = an_procedure_number(procedure, "isotherm_drift"),
                            .drift_limit = an_procedure_number(procedure, "repeat_flag"),
                            .n_run = n_points,
                            .sharing = {0, 0, points->specimen.geometry.kind}};
@@ -112,15 +113,14 @@ static an_status sort_in(const an_points *points, int n_points, const an_procedu
                          an_error *err)
 {
     an_gathering gathering;
-    double rate_limit = an_procedure_number(procedure, "isotherm_drift");
     an_cell_rules rules = rules_for(points, n_points, procedure);
-    AN_TRY(an_gathering_make(points, n_points, rules.width_K, rate_limit, &gathering, err));
+    AN_TRY(an_gathering_make(points, &rules, &gathering, err));
     an_status status = an_cells_make(&gathering, &rules, grid, err);
     if (status >= 0)
         status = an_returns_check(&gathering, &rules, grid, err);
     an_gathering_clear(&gathering);
     AN_TRY(status);
-    AN_TRY(remark_motion(rate_limit, grid, err));
+    AN_TRY(remark_motion(rules.rate_K_s, grid, err));
     return an_outliers_mark(grid, err);
 }
 

@@ -294,11 +294,11 @@ static an_status join_plateaus(an_gathering *gathering, double width_K, an_error
     return AN_OK;
 }
 
-an_status an_gathering_make(const an_points *points, int n_points, double width_K, double rate_K_s,
-                            an_gathering *gathering, an_error *err)
+an_status an_gathering_make(const an_points *points, const an_cell_rules *rules, an_gathering *gathering,
+                            an_error *err)
 {
     size_t n = 1;
-    for (int i = 0; i < n_points; i++)
+    for (int i = 0; i < rules->n_run; i++)
         n += (size_t)points[i].n_point;
     *gathering = (an_gathering){0};
     gathering->member = calloc(n, sizeof *gathering->member);
@@ -307,14 +307,14 @@ an_status an_gathering_make(const an_points *points, int n_points, double width_
         an_gathering_clear(gathering);
         return an_fail_memory(err, "bursts of a grid");
     }
-    for (int i = 0; i < n_points; i++)
+    for (int i = 0; i < rules->n_run; i++)
         add_members(&points[i], i, gathering);
-    cut_plateaus(gathering, width_K);
+    cut_plateaus(gathering, rules->width_K);
     for (int i = 0; i < gathering->n_plateau; i++)
         find_rate(gathering, &gathering->plateau[i]);
-    find_ramps(gathering, width_K, rate_K_s);
+    find_ramps(gathering, rules->width_K, rules->rate_K_s);
     find_directions(gathering);
-    an_status status = join_plateaus(gathering, width_K, err);
+    an_status status = join_plateaus(gathering, rules->width_K, err);
     if (status < 0)
         an_gathering_clear(gathering);
     return status;

@@ -36,29 +36,34 @@ typedef struct judged {
     an_cell *cell;       /* [n] */
 } judged;
 
-/* Interpolation at x by Lagrange through n neighbours; the sum of its squared weights times their variances
- * beside it. */
-static double interpolate(const judged *curve, int i_quantity, const int *neighbour, int n, double x,
+/* Cells of an isotherm that another is held against. */
+typedef struct neighbours {
+    int n;
+    int at[4]; /* [n] */
+} neighbours;
+
+/* Interpolation at x by Lagrange; the sum of its squared weights times their variances beside it. */
+static double interpolate(const judged *curve, int i_quantity, const neighbours *beside, double x,
                           double *variance)
 {
     double sum = 0;
     *variance = 0;
-    for (int i = 0; i < n; i++) {
-        double weight = 1;
-        for (int k = 0; k < n; k++)
+    for (int i = 0; i < beside->n; i++) {
+        double weight = 1, x_i = curve->x[beside->at[i]];
+        for (int k = 0; k < beside->n; k++)
             if (k != i)
-                weight *= (x - curve->x[neighbour[k]]) / (curve->x[neighbour[i]] - curve->x[neighbour[k]]);
-        sum += weight * curve->y[i_quantity][neighbour[i]];
-        *variance += weight * weight * curve->variance[i_quantity][neighbour[i]];
+                weight *= (x - curve->x[beside->at[k]]) / (x_i - curve->x[beside->at[k]]);
+        sum += weight * curve->y[i_quantity][beside->at[i]];
+        *variance += weight * weight * curve->variance[i_quantity][beside->at[i]];
     }
     return sum;
 }
 
-/* Unmarked neighbours, nearest first on each side; the inner pair first. Returns how many: 4 inside, 3 next
- * to an edge. */
-static int find_neighbours(const judged *curve, int at, int *neighbour)
+/* Unmarked neighbours, nearest first on each side; the inner pair first: 4 inside, 3 next to an edge. */
+static neighbours find_neighbours(const judged *curve, int at)
 {
-    int below[3], above[3], n_below = 0, n_above = 0, n = 0;
+    int below[3], above[3], n_below = 0, n_above = 0;
+    neighbours found = {0};
     for (int i = at - 1; i >= 0 && n_below < 3; i--)
         if (!curve->cell[i].outlier)
             below[n_below++] = i;
@@ -67,25 +72,25 @@ static int find_neighbours(const judged *curve, int at, int *neighbour)
             above[n_above++] = i;
     int most = n_below >= 2 && n_above >= 2 ? 4 : 3;
     for (int i = 0; i < 3; i++) {
-        if (i < n_below && n < most)
-            neighbour[n++] = below[i];
-        if (i < n_above && n < most)
-            neighbour[n++] = above[i];
+        if (i < n_below && found.n < most)
+            found.at[found.n++] = below[i];
+        if (i < n_above && found.n < most)
+            found.at[found.n++] = above[i];
     }
-    return n;
+    return found;
 }
 
 /* How far a cell misses, as a multiple of what explains a miss. */
 static double miss(const judged *curve, int at, int i_quantity, double *by)
 {
-    int neighbour[4];
-    int n = find_neighbours(curve, at, neighbour);
+    neighbours beside = find_neighbours(curve, at), pair = beside;
     *by = 0;
-    if (n < 3)
+    if (beside.n < 3)
         return 0;
+    pair.n = 2;
     double variance, line_variance;
-    double value = interpolate(curve, i_quantity, neighbour, n, curve->x[at], &variance);
-    double line = interpolate(curve, i_quantity, neighbour, 2, curve->x[at], &line_variance);
+    double value = interpolate(curve, i_quantity, &beside, curve->x[at], &variance);
+    double line = interpolate(curve, i_quantity, &pair, curve->x[at], &line_variance);
     double bend = bend_share * (value - line);
     *by = curve->y[i_quantity][at] - value;
     return fabs(*by) / sqrt(variance + curve->variance[i_quantity][at] + bend * bend);

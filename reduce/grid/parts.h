@@ -37,17 +37,6 @@ typedef struct an_gathering {
     int n_isotherm;      /* isotherms by rising temperature, heating before cooling */
 } an_gathering;
 
-/* an_gathering_make: sort the bursts of all documents into plateaus, ramps and isotherms.
- *   points [in] [n_points]; width_K [in, K] greatest distance of a burst from its isotherm's mean; rate_K_s
- * [in, K/s] greatest rate of a steady plateau; gathering [out] clear with an_gathering_clear Returns AN_OK or
- * AN_E_MEMORY. */
-an_status an_gathering_make(const an_points *points, int n_points, double width_K, double rate_K_s,
-                            an_gathering *gathering, an_error *err);
-void an_gathering_clear(an_gathering *gathering);
-
-/* an_plateau_moving: nonzero where a plateau's rate lies above the limit by more than its noise explains. */
-int an_plateau_moving(const an_plateau *plateau, double rate_K_s);
-
 /* Which common sources are one and the same in all runs. */
 typedef struct an_sharing {
     int specimens_differ, benches_differ;
@@ -57,10 +46,21 @@ typedef struct an_sharing {
 /* How cells are made. */
 typedef struct an_cell_rules {
     double width_K;     /* [K] greatest distance of a burst from its isotherm's mean */
+    double rate_K_s;    /* [K/s] greatest rate of a steady plateau */
     double drift_limit; /* [1] greatest relative difference of the first and the last repeat */
     int n_run;          /* points documents */
     an_sharing sharing;
 } an_cell_rules;
+
+/* an_gathering_make: sort the bursts of all documents into plateaus, ramps and isotherms.
+ *   points [in] [rules->n_run]; rules [in]; gathering [out] clear with an_gathering_clear
+ * Returns AN_OK or AN_E_MEMORY. */
+an_status an_gathering_make(const an_points *points, const an_cell_rules *rules, an_gathering *gathering,
+                            an_error *err);
+void an_gathering_clear(an_gathering *gathering);
+
+/* an_plateau_moving: nonzero where a plateau's rate lies above the limit by more than its noise explains. */
+int an_plateau_moving(const an_plateau *plateau, double rate_K_s);
 
 /* an_cells_make: isotherms, cells and ramp of a grid from what was gathered; repeats averaged and compared,
  * scatter. Returns AN_OK or AN_E_MEMORY. */

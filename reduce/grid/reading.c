@@ -61,29 +61,36 @@ static void fill_series(an_cell *const *cell, int n, an_reading_kind kind, an_se
     }
 }
 
+/* What the readings of one pass share. */
+typedef struct pass {
+    int on_ramp;      /* nonzero: bursts of the ramp, else cells of isotherms */
+    double u_bias_K;  /* [K] common uncertainty of the temperature */
+    an_series series; /* room for one quantity of one column */
+    an_grid *grid;    /* where readings go */
+} pass;
+
 /* The readings of one column. */
-static void read_column(an_cell *const *cell, int n, int on_ramp, double u_bias_K, an_series *series,
-                        an_grid *grid)
+static void read_column(pass *through, an_cell *const *cell, int n)
 {
     double log_frequency = 0;
     for (int i = 0; i < n; i++)
         log_frequency += log(cell[i]->frequency_Hz) / n;
     for (int kind = AN_READING_STORAGE_ONSET; kind <= AN_READING_LOSS_FACTOR_PEAK; kind++) {
-        an_reading *reading = &grid->reading[grid->n_reading++];
+        an_reading *reading = &through->grid->reading[through->grid->n_reading++];
         *reading = (an_reading){
-            .kind = (an_reading_kind)kind, .frequency_Hz = exp(log_frequency), .on_ramp = on_ramp};
-        fill_series(cell, n, reading->kind, series);
+            .kind = (an_reading_kind)kind, .frequency_Hz = exp(log_frequency), .on_ramp = through->on_ramp};
+        fill_series(cell, n, reading->kind, &through->series);
         if (reading->kind == AN_READING_STORAGE_ONSET)
-            an_glass_onset(series, reading);
+            an_glass_onset(&through->series, reading);
         else
-            an_glass_peak(series, reading);
+            an_glass_peak(&through->series, reading);
         if (reading->reason[0] == 0)
-            reading->u_common_K = u_bias_K;
+            reading->u_common_K = through->u_bias_K;
     }
 }
 
 /* Columns of the cells of one pass. A frequency that stands at one temperature only is no column. */
-static void read_pass(an_cell **cell, int n, int on_ramp, double u_bias_K, an_series *series, an_grid *grid)
+static void read_pass(pass *through, an_cell **cell, int n)
 {
     qsort(cell, (size_t)n, sizeof *cell, by_frequency);
     for (int i = 0, m; i < n; i += m) {
@@ -91,7 +98,7 @@ static void read_pass(an_cell **cell, int n, int on_ramp, double u_bias_K, an_se
             ;
         qsort(cell + i, (size_t)m, sizeof *cell, by_temperature);
         if (m > 1)
-            read_column(cell + i, m, on_ramp, u_bias_K, series, grid);
+            read_column(through, cell + i, m);
     }
 }
 
@@ -120,12 +127,13 @@ an_status an_readings_make(double u_bias_K, an_grid *grid, an_error *err)
     double *room = malloc(3 * n * sizeof *room);
     grid->reading = calloc(3 * n, sizeof *grid->reading);
     if (cell && room && grid->reading) {
-        an_series series = {0, room, room + n, room + 2 * n};
+        pass through = {0, u_bias_K, {0, room, room + n, room + 2 * n}, grid};
         int m = pick_cells(grid, cell);
-        read_pass(cell, m, 0, u_bias_K, &series, grid);
+        read_pass(&through, cell, m);
         for (int i = 0; i < grid->n_ramp; i++)
             cell[i] = &grid->ramp[i];
-        read_pass(cell, grid->n_ramp, 1, u_bias_K, &series, grid);
+        through.on_ramp = 1;
+        read_pass(&through, cell, grid->n_ramp);
     }
     int good = cell && room && grid->reading;
     free(cell);

@@ -62,29 +62,43 @@ static double change(const an_gathering *gathering, const an_plateau *from, cons
     return two.modulus - one.modulus - slope * step;
 }
 
-/* The greatest change at the frequencies that both plateaus have. */
-static an_status compare(const an_gathering *gathering, const an_plateau *from, const an_plateau *to,
-                         double limit, an_grid *grid, an_error *err)
+/* A return: the plateau that is returned to, and the last one. */
+typedef struct returning {
+    const an_gathering *gathering;
+    const an_plateau *from, *to;
+} returning;
+
+/* The greatest change beyond the limit at the frequencies that both plateaus have. */
+static double greatest_change(const returning *pair, double limit, const an_member **last,
+                              const an_member **first)
 {
-    const an_member *worst = NULL, *against = NULL;
     double most = 0;
-    for (int i = 0; i < to->n_member; i++) {
-        const an_member *last = &gathering->member[to->first + i];
-        const an_member *first = at_frequency(gathering, from, last->point->frequency_Hz);
-        double allowed = 0, one = first ? change(gathering, from, first, last, &allowed) : 0;
+    *last = *first = NULL;
+    for (int i = 0; i < pair->to->n_member; i++) {
+        const an_member *late = &pair->gathering->member[pair->to->first + i];
+        const an_member *early = at_frequency(pair->gathering, pair->from, late->point->frequency_Hz);
+        double allowed = 0, one = early ? change(pair->gathering, pair->from, early, late, &allowed) : 0;
         if (fabs(expm1(one)) - allowed > limit && fabs(one) > fabs(most)) {
             most = one;
-            worst = last;
-            against = first;
+            *last = late;
+            *first = early;
         }
     }
-    if (!worst)
+    return most;
+}
+
+static an_status compare(const returning *pair, double limit, an_grid *grid, an_error *err)
+{
+    const an_member *last, *first;
+    double most = greatest_change(pair, limit, &last, &first);
+    if (!last)
         return AN_OK;
+    const an_point *point = last->point;
     return an_remark_list_add(
-        &grid->remarks, fabs(expm1(most)) > slip_limit ? "clamp-slip" : "drift-check", worst->point->burst,
-        err, "back at %.2f K and %.4g Hz burst %d reads %+.1f %% against burst %d; up to %.3g %% is allowed",
-        worst->point->temperature_K, worst->point->frequency_Hz, worst->point->burst, 100 * expm1(most),
-        against->point->burst, 100 * limit);
+        &grid->remarks, fabs(expm1(most)) > slip_limit ? "clamp-slip" : "drift-check", point->burst, err,
+        "back at %.2f K and %.4g Hz burst %d reads %+.1f %% against burst %d; up to %.3g %% is allowed",
+        point->temperature_K, point->frequency_Hz, point->burst, 100 * expm1(most), first->point->burst,
+        100 * limit);
 }
 
 an_status an_returns_check(const an_gathering *gathering, const an_cell_rules *rules, an_grid *grid,
@@ -95,8 +109,9 @@ an_status an_returns_check(const an_gathering *gathering, const an_cell_rules *r
                            gathering->plateau[last + 1].i_run == gathering->plateau[first].i_run;)
             last++;
         const an_plateau *from = returns_to(gathering, first, last, rules->width_K);
+        returning pair = {gathering, from, &gathering->plateau[last]};
         if (from)
-            AN_TRY(compare(gathering, from, &gathering->plateau[last], rules->drift_limit, grid, err));
+            AN_TRY(compare(&pair, rules->drift_limit, grid, err));
     }
     return AN_OK;
 }
