@@ -15,6 +15,8 @@ static const double most_u = 1; /* decades: a pair known no better has no slope 
  * narrower gap holds E' inside it (Kramers and Kronig). The joint fit has the last word, and its covariance
  * says what the bridge is worth. */
 static const double widest_gap = 1;
+/* Decades that one point's noise moves a segment: where it is more, a gap is no gap but a plateau. */
+static const double most_noise_at_gap = 0.3;
 
 /* log10 of a quantity at a point, and its standard uncertainty. */
 static double ordinate(const an_superpose_point *p, int quantity, double *u)
@@ -31,24 +33,29 @@ typedef struct segment {
     const an_superpose_point *point;
     size_t n;
     int quantity;
-    double sign;      /* +1: rises with frequency; -1: falls */
-    double low, high; /* range of the ordinate */
-    double u;         /* rms uncertainty of the ordinate */
+    double log10_scale; /* taken off moduli: the temperature where b_T = T/T0 */
+    double sign;        /* +1: rises with frequency; -1: falls */
+    double low, high;   /* range of the ordinate */
+    double u;           /* rms uncertainty of the ordinate */
 } segment;
+
+static double segment_ordinate(const segment *s, size_t i, double *u)
+{
+    return ordinate(&s->point[i], s->quantity, u) - (s->quantity == 0 ? 0 : s->log10_scale);
+}
 
 /* Fill range, sign and uncertainty. Returns 0 where the ordinate turns by more than its noise, or is not
  * positive. */
 static int survey(segment *s)
 {
-    double u, first = ordinate(&s->point[0], s->quantity, &u),
-              last = ordinate(&s->point[s->n - 1], s->quantity, &u);
+    double u, first = segment_ordinate(s, 0, &u), last = segment_ordinate(s, s->n - 1, &u);
     double before = first, u_before = u, sum = 0;
     if (s->n < 2 || !(first != last))
         return 0;
     s->sign = last > first ? 1 : -1;
     s->low = s->high = first;
     for (size_t i = 0; i < s->n; i++) {
-        double y = ordinate(&s->point[i], s->quantity, &u);
+        double y = segment_ordinate(s, i, &u);
         if (!isfinite(y) || s->sign * (y - before) < -3 * hypot(u, u_before))
             return 0;
         s->low = fmin(s->low, y);
@@ -68,11 +75,11 @@ static double area_under(const segment *s, double low, double high, size_t *n)
     double area = 0, u;
     *n = 0;
     for (size_t i = 0; i < s->n; i++) {
-        double y1 = ordinate(&s->point[i], s->quantity, &u), x1 = log10(s->point[i].omega_rad_s);
+        double y1 = segment_ordinate(s, i, &u), x1 = log10(s->point[i].omega_rad_s);
         *n += y1 >= low && y1 <= high;
         if (i + 1 == s->n)
             break;
-        double y2 = ordinate(&s->point[i + 1], s->quantity, &u), x2 = log10(s->point[i + 1].omega_rad_s);
+        double y2 = segment_ordinate(s, i + 1, &u), x2 = log10(s->point[i + 1].omega_rad_s);
         double from = fmin(fmax(y1, low), high), to = fmin(fmax(y2, low), high);
         if (from == to)
             continue;
@@ -93,7 +100,7 @@ static double end_slope(const segment *s, int at_high)
 {
     double u;
     size_t i = at_high ? s->n - 2 : 0;
-    double rise = ordinate(&s->point[i + 1], s->quantity, &u) - ordinate(&s->point[i], s->quantity, &u);
+    double rise = segment_ordinate(s, i + 1, &u) - segment_ordinate(s, i, &u);
     double slope = s->sign * rise / log10(s->point[i + 1].omega_rad_s / s->point[i].omega_rad_s);
     return slope > 0 ? slope : mean_slope(s);
 }
@@ -110,26 +117,30 @@ static void bridge_gap(const segment *cold, const segment *warm, double gap, an_
     shift->u = shift->gap_decades / 2;
 }
 
-/* One quantity. Returns 0 where it does not serve; *overlap tells whether overlap was there. */
-static int area_of(segment cold, segment warm, an_area_shift *shift, int *overlap)
+/* One quantity: what it lacks. */
+static an_area_lack area_of(segment cold, segment warm, an_area_shift *shift)
 {
     if (!survey(&cold) || !survey(&warm) || cold.sign != warm.sign)
-        return 0;
+        return AN_LACKS_SLOPE;
+    double noise = hypot(cold.u, warm.u) / fmin(mean_slope(&cold), mean_slope(&warm));
     double low = fmax(cold.low, warm.low), high = fmin(cold.high, warm.high);
     size_t n_cold = 1, n_warm = 1;
     if (high > low) {
         double difference = area_under(&cold, low, high, &n_cold) - area_under(&warm, low, high, &n_warm);
         shift->log10_a = difference / (high - low);
+    } else if (noise > most_noise_at_gap) {
+        return AN_LACKS_SLOPE;
     } else {
         bridge_gap(&cold, &warm, low - high, shift);
     }
     if (shift->gap_decades > widest_gap)
-        return 0;
-    *overlap = 1;
+        return AN_LACKS_OVERLAP;
     double n = fmax(1, 0.5 * (double)(n_cold + n_warm));
-    shift->u += hypot(cold.u, warm.u) / (sqrt(n) * mean_slope(&cold)); /* (2/n)^1/2 s_y / |dy/dx| */
+    shift->u += noise / sqrt(n); /* (2/n)^1/2 s_y / |dy/dx| */
     shift->quantity = quantity_word[cold.quantity];
-    return shift->u <= most_u;
+    /* Nothing relaxes more slowly when it is warmer: a shift that way is a plateau's own rise, not a shift.
+     */
+    return shift->u <= most_u && shift->log10_a < 0 ? AN_LACKS_NOTHING : AN_LACKS_SLOPE;
 }
 
 /* Mean log10 |E*| of the warmer against the colder at equal reduced frequency. */
@@ -160,23 +171,29 @@ an_status an_area_between(const an_superpose_input *input, size_t i_cold, an_ver
     const an_superpose_isotherm *c = &input->isotherm[i_cold], *w = c + 1;
     segment cold = {.point = input->point + c->first_point, .n = c->n_point};
     segment warm = {.point = input->point + w->first_point, .n = w->n_point};
-    int overlap = 0, found = 0;
+    if (vertical == AN_VERTICAL_DENSITY_TEMPERATURE) {
+        cold.log10_scale = log10(c->temperature_K);
+        warm.log10_scale = log10(w->temperature_K);
+    }
+    *shift = (an_area_shift){.lack = AN_LACKS_SLOPE};
     for (int quantity = 0; quantity < quantities; quantity++) {
         an_area_shift one = {0};
         cold.quantity = warm.quantity = quantity;
-        if (!area_of(cold, warm, &one, &overlap))
-            continue;
-        if (!found || one.u < shift->u)
+        one.lack = area_of(cold, warm, &one);
+        int better = one.lack == AN_LACKS_NOTHING && (shift->lack != AN_LACKS_NOTHING || one.u < shift->u);
+        if (better)
             *shift = one;
-        found = 1;
-        if (vertical == AN_VERTICAL_FREE && quantity == 0)
+        else if (shift->lack != AN_LACKS_NOTHING && one.lack == AN_LACKS_OVERLAP)
+            shift->lack = AN_LACKS_OVERLAP;
+        if (vertical == AN_VERTICAL_FREE && quantity == 0 && shift->lack == AN_LACKS_NOTHING)
             break;
     }
-    if (!found)
+    if (shift->lack != AN_LACKS_NOTHING)
         return an_fail(err, AN_E_SCIENCE, NULL,
                        "isotherms %.2f K and %.2f K cannot be joined: no %s in storage modulus, loss modulus "
                        "or loss factor",
-                       c->temperature_K, w->temperature_K, overlap ? "slope" : "overlap");
+                       c->temperature_K, w->temperature_K,
+                       shift->lack == AN_LACKS_SLOPE ? "slope" : "overlap");
     shift->log10_b = scale_between(&cold, &warm, shift->log10_a);
     return AN_OK;
 }

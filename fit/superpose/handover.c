@@ -36,6 +36,13 @@ static void add_point(const an_master_point *point, curve *all)
     all->omega_range[1] = fmax(all->omega_range[1], point->reduced_omega);
 }
 
+/* Points of an isotherm whose shift is not determined do not say where on the master curve they stand. */
+static int stands_somewhere(const an_master *master, const an_master_point *point)
+{
+    int k = point->isotherm;
+    return !point->outlier && (k < 0 || k >= master->n_shift || master->shift[k].determined);
+}
+
 static an_status gather(const an_master *master, curve *all, an_error *err)
 {
     *all = (curve){.omega_range = {INFINITY, 0}};
@@ -43,10 +50,11 @@ static an_status gather(const an_master *master, curve *all, an_error *err)
     if (!all->observation)
         return an_fail_memory(err, "the observations of a spectrum");
     for (int i = 0; i < master->n_point; i++)
-        if (!master->point[i].outlier)
+        if (stands_somewhere(master, &master->point[i]))
             add_point(&master->point[i], all);
     if (all->n == 0)
-        return an_fail(err, AN_E_SCIENCE, "", "the master document holds no point that is not an outlier");
+        return an_fail(err, AN_E_SCIENCE, "",
+                       "the master document holds no point that is not an outlier and whose shift is determined");
     return AN_OK;
 }
 

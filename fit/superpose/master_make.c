@@ -241,7 +241,14 @@ static an_status remark_gaps(const making *m, an_master *master, an_error *err)
     const an_superpose_input *input = &m->selection.input;
     for (size_t i = 0; i + 1 < input->n_isotherm; i++) {
         an_area_shift shift;
-        if (an_area_between(input, i, m->result.vertical, &shift, NULL) < 0 || shift.gap_decades < worth_saying)
+        an_area_between(input, i, m->result.vertical, &shift, NULL);
+        if (shift.lack == AN_LACKS_SLOPE)
+            AN_TRY(an_remark_list_add(&master->remarks, "no-slope", 0, err,
+                                      "isotherms at %.2f K and %.2f K run flat within their noise; the shift "
+                                      "between them rests on the joint fit alone",
+                                      input->isotherm[i].temperature_K,
+                                      input->isotherm[i + 1].temperature_K));
+        if (shift.lack != AN_LACKS_NOTHING || shift.gap_decades < worth_saying)
             continue;
         AN_TRY(an_remark_list_add(
             &master->remarks, "gap-bridged", 0, err,

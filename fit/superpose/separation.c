@@ -8,6 +8,9 @@
 
 static const double ln10 = 2.302585092994046;
 static const double widest_bracket = 0.8;
+/* A bracket narrower than this many standard uncertainties of |E*| gives no slope: on a plateau order is
+ * chance. */
+static const double least_bracket = 5;
 
 typedef struct place {
     double x, y;       /* ln |E*|/b, phase angle [rad] */
@@ -42,7 +45,8 @@ static int compare(const place *at, const an_superpose_input *input, size_t i_is
         place low = place_of(&input->point[isotherm->first_point + i], log10_b);
         place high = place_of(&input->point[isotherm->first_point + i + 1], log10_b);
         double width = high.x - low.x;
-        if (!(width > 1e-9 && width <= widest_bracket) || at->x < low.x || at->x > high.x)
+        double noise = sqrt(low.xx + high.xx + at->xx);
+        if (!(width > least_bracket * noise && width <= widest_bracket) || at->x < low.x || at->x > high.x)
             continue;
         double part = (at->x - low.x) / width, slope = (high.y - low.y) / width;
         double distance = at->y - (low.y + slope * (at->x - low.x));

@@ -116,18 +116,52 @@ static size_t choose_reference(const an_superpose_input *input, double wanted_K)
     return best;
 }
 
+/* Shift a kelvin of the nearest pair that has an area; NAN where none has. */
+static double nearest_rate(const an_superpose_input *input, const an_area_shift *pair, size_t i)
+{
+    for (size_t far = 1; far < input->n_isotherm; far++)
+        for (int side = -1; side <= 1; side += 2) {
+            size_t k = side < 0 ? i - far : i + far; /* wraps far beyond the end below 0 */
+            if (k + 1 < input->n_isotherm && k < input->n_isotherm && pair[k].lack == AN_LACKS_NOTHING)
+                return pair[k].log10_a /
+                       (input->isotherm[k + 1].temperature_K - input->isotherm[k].temperature_K);
+        }
+    return NAN;
+}
+
+/* All pairs' areas. A pair on a plateau, which has no slope, starts from the rate of its nearest neighbour:
+ * the joint fit says what its shift is worth. pair: [n_isotherm - 1] */
+static an_status survey_pairs(const an_superpose_input *input, an_vertical vertical, an_area_shift *pair,
+                              an_error *err)
+{
+    for (size_t i = 0; i + 1 < input->n_isotherm; i++)
+        if (an_area_between(input, i, vertical, &pair[i], err) < 0 && pair[i].lack == AN_LACKS_OVERLAP)
+            return AN_E_SCIENCE;
+    for (size_t i = 0; i + 1 < input->n_isotherm; i++) {
+        if (pair[i].lack == AN_LACKS_NOTHING)
+            continue;
+        double rate = nearest_rate(input, pair, i);
+        if (!isfinite(rate))
+            return an_area_between(input, i, vertical, &pair[i], err);
+        pair[i].log10_a = rate * (input->isotherm[i + 1].temperature_K - input->isotherm[i].temperature_K);
+    }
+    return AN_OK;
+}
+
 /* Chain the pairs' areas. log10_a, log10_b: [n_isotherm], relative to the coldest. */
 static an_status start_chain(const an_superpose_input *input, an_vertical vertical, double *log10_a,
                              double *log10_b, an_error *err)
 {
-    log10_a[0] = log10_b[0] = 0;
-    for (size_t i = 0; i + 1 < input->n_isotherm; i++) {
-        an_area_shift shift;
-        AN_TRY(an_area_between(input, i, vertical, &shift, err));
-        log10_a[i + 1] = log10_a[i] + shift.log10_a;
-        log10_b[i + 1] = log10_b[i] + shift.log10_b;
+    an_area_shift *pair = calloc(input->n_isotherm, sizeof *pair);
+    if (!pair)
+        return an_fail_memory(err, "the start of the joint fit");
+    an_status status = survey_pairs(input, vertical, pair, err);
+    for (size_t i = 0; status >= 0 && i + 1 < input->n_isotherm; i++) {
+        log10_a[i + 1] = log10_a[i] + pair[i].log10_a;
+        log10_b[i + 1] = log10_b[i] + pair[i].log10_b;
     }
-    return AN_OK;
+    free(pair);
+    return status;
 }
 
 static double reduced_of(const an_joint *joint)

@@ -49,12 +49,20 @@ static an_status hand_out_spectrum(const an_joint *joint, an_superposition *resu
     memcpy(result->spectrum.time_s, joint->time_s, joint->n_mode * sizeof(double));
     memcpy(result->spectrum.modulus_Pa, joint->now.x_Pa, joint->n_mode * sizeof(double));
     result->spectrum.equilibrium_Pa = joint->equilibrium ? joint->now.x_Pa[joint->n_mode] : 0;
+    return AN_OK;
+}
+
+/* Reduced frequencies that the data cover: those of isotherms whose shift is determined. */
+static void hand_out_range(const an_joint *joint, an_superposition *result)
+{
     result->omega_range[0] = INFINITY;
+    result->omega_range[1] = 0;
     for (size_t p = 0; p < joint->n_point; p++) {
+        if (!result->determined[joint->isotherm_of[p]])
+            continue;
         result->omega_range[0] = fmin(result->omega_range[0], joint->omega[p]);
         result->omega_range[1] = fmax(result->omega_range[1], joint->omega[p]);
     }
-    return AN_OK;
 }
 
 an_status an_joint_hand_out(an_joint *joint, const an_superpose_options *options, an_superposition *result,
@@ -77,6 +85,7 @@ an_status an_joint_hand_out(an_joint *joint, const an_superpose_options *options
     an_joint_model(joint);
     an_verdict_fill(joint, options, result);
     AN_TRY(an_joint_covariance(joint, options, result, err));
+    hand_out_range(joint, result);
     return result->simplicity == AN_SIMPLE ? AN_OK : AN_DUBIOUS;
 }
 

@@ -91,7 +91,7 @@ typedef struct an_superposition {
     char reason[320]; /* of the verdict, with the numbers */
     size_t n_point;
     double *residual;      /* [n_point][2] (measured - fitted)/u of E' and E'', owned */
-    double omega_range[2]; /* rad/s, least and greatest reduced frequency */
+    double omega_range[2]; /* rad/s, least and greatest reduced frequency of determined isotherms */
 } an_superposition;
 
 /* an_superpose_defaults: what measurement and trade suggest; sources beside each value in superpose.c. */
@@ -109,8 +109,12 @@ void an_superposition_clear(an_superposition *result);
 an_status an_superpose(const an_superpose_input *input, const an_superpose_options *options,
                        an_superposition *result, an_error *err);
 
+/* What a pair of neighbours lacks for its area. */
+typedef enum an_area_lack { AN_LACKS_NOTHING = 0, AN_LACKS_OVERLAP, AN_LACKS_SLOPE } an_area_lack;
+
 /* One pair of neighbours joined by the area between them. */
 typedef struct an_area_shift {
+    an_area_lack lack;    /* why the pair was refused */
     double log10_a;       /* log10 a of the warmer against the colder, <= 0 as a rule */
     double u;             /* its random uncertainty, (2/n)^1/2 s_y / |dy/dx| */
     double log10_b;       /* log10 b of the warmer against the colder, from |E*| after shifting */
