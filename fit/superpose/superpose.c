@@ -232,6 +232,7 @@ static an_status fit_chosen(const an_superpose_input *input, an_joint_plan *plan
 {
     static const an_vertical tried[] = {AN_VERTICAL_NONE, AN_VERTICAL_DENSITY_TEMPERATURE, AN_VERTICAL_FREE};
     double floor = plan->options->complex_chi_square, least = INFINITY;
+    an_status refused = AN_OK;
     an_joint best;
     an_joint_init(&best);
     for (size_t i = 0; i < sizeof tried / sizeof *tried; i++) {
@@ -241,8 +242,10 @@ static an_status fit_chosen(const an_superpose_input *input, an_joint_plan *plan
         an_status status = fit_vertical(input, plan, &one, err);
         if (status < 0) {
             an_joint_clear(&one);
-            an_joint_clear(&best);
-            return status;
+            refused = status;
+            if (status == AN_E_SCIENCE) /* this law of b_T tears neighbours apart; another may not */
+                continue;
+            break;
         }
         double criterion = reduced_of(&one) <= floor ? criterion_of(&one) : 1e200 * (1 + (double)i);
         if (criterion < least) {
@@ -252,6 +255,10 @@ static an_status fit_chosen(const an_superpose_input *input, an_joint_plan *plan
         } else {
             an_joint_clear(&one);
         }
+    }
+    if (refused < 0 && (refused != AN_E_SCIENCE || !isfinite(least))) {
+        an_joint_clear(&best);
+        return refused;
     }
     *joint = best;
     return AN_OK;
