@@ -141,8 +141,6 @@ static const an_remark_kind table[] = {
     /* ---- superposition and spectrum ---- */
     {"no-overlap", AN_HOLD, "isotherms at <value> K and <value> K share no range",
      "Use smaller temperature steps."},
-    {"no-slope", AN_FLAG, "isotherms at <value> K and <value> K run flat within their noise",
-     "Use the shift there with its uncertainty; on a plateau it hardly matters."},
     {"gap-bridged", AN_FLAG, "isotherms at <value> K and <value> K do not meet; the spectrum bridges <value> decades",
      "Use smaller temperature steps or a wider range of frequencies there."},
     {"isotherm-left-out", AN_NOTE, "the isotherm at <value> K is left out: <reason>",

@@ -243,7 +243,7 @@ static an_status remark_gaps(const making *m, an_master *master, an_error *err)
         an_area_shift shift;
         an_area_between(input, i, m->result.vertical, &shift, NULL);
         if (shift.lack == AN_LACKS_SLOPE)
-            AN_TRY(an_remark_list_add(&master->remarks, "no-slope", 0, err,
+            AN_TRY(an_remark_list_add(&master->remarks, "shift-undetermined", 0, err,
                                       "isotherms at %.2f K and %.2f K run flat within their noise; the shift "
                                       "between them rests on the joint fit alone",
                                       input->isotherm[i].temperature_K,

@@ -1,13 +1,13 @@
 /* Distance of isotherms in the plane of phase angle over |E*|/b_T: free of time, so free of horizontal
  * shifts. Stage: superpose. Method: [VP98] as a number: every point against every other isotherm that
- * brackets its |E*|, linear in ln |E*|, and beside it the distance that the noise of the three points makes.
- * Range: brackets no wider than 0.8 in ln |E*|, so that the chord stays close to the curve. */
+ * brackets its |E*|, square to the chord over ln |E*|, and beside it what the noise of the three points
+ * makes. Range: brackets no wider than 0.4 in ln |E*|, so that the chord stays close to the curve. */
 #include "anelast/superpose.h"
 
 #include <math.h>
 
 static const double ln10 = 2.302585092994046;
-static const double widest_bracket = 0.8;
+static const double widest_bracket = 0.4;
 /* A bracket narrower than this many standard uncertainties of |E*| gives no slope: on a plateau order is
  * chance. */
 static const double least_bracket = 5;
@@ -50,9 +50,11 @@ static int compare(const place *at, const an_superpose_input *input, size_t i_is
             continue;
         double part = (at->x - low.x) / width, slope = (high.y - low.y) / width;
         double distance = at->y - (low.y + slope * (at->x - low.x));
-        square[0] = distance * distance;
-        square[1] = variance_across(at, slope) + (1 - part) * (1 - part) * variance_across(&low, slope) +
-                    part * part * variance_across(&high, slope);
+        double across = 1 + slope * slope; /* the distance square to the chord */
+        square[0] = distance * distance / across;
+        square[1] = (variance_across(at, slope) + (1 - part) * (1 - part) * variance_across(&low, slope) +
+                     part * part * variance_across(&high, slope)) /
+                    across;
         return 1;
     }
     return 0;

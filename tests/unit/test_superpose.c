@@ -231,6 +231,41 @@ static void area_is_exact_on_straight_lines(void **state)
     assert_close(shift.log10_a, -0.8, 1e-12);
 }
 
+/* Isotherms on a rubber plateau, whose modulus rises with T and hardly depends on frequency: they must
+ * neither refuse the rest nor pretend to a shift, and the window must not rest on them. */
+static void plateau_is_kept_but_not_trusted(void **state)
+{
+    (void)state;
+    double tau[] = {1e-4, 1e-3, 1e-2, 1e-1, 1}, strength[] = {1e8, 3e8, 3e8, 1e8, 1e7};
+    an_maxwell model = {5, tau, strength, 5e6};
+    static synthetic s;
+    memset(&s, 0, sizeof s);
+    s.seed = 4;
+    for (int k = 0; k < 12; k++) {
+        double t = 258 + 6.0 * k;
+        synthetic_sweep sweep = {t, wlf(t) - wlf(270), t / 270, 0.1, 30, 8, 0.002};
+        synthetic_add(&s, &model, &sweep);
+    }
+    an_superpose_input input = synthetic_input(&s);
+    an_superposition r;
+    an_superposition_init(&r);
+    assert_int_equal(an_superpose(&input, NULL, &r, NULL), AN_OK);
+    assert_int_equal(r.vertical, AN_VERTICAL_DENSITY_TEMPERATURE);
+    size_t n = 2 * r.n_isotherm;
+    assert_false(r.determined[11]);
+    assert_true(sqrt(r.noise_covariance[11 * n + 11]) > 0.05);
+    for (size_t i = 0; i < r.n_isotherm; i++) {
+        double expected = s.log10_aT[i] - s.log10_aT[r.i_reference];
+        assert_close(r.log10_aT[i], expected, 5 * sqrt(r.noise_covariance[i * n + i]) + 1e-12);
+    }
+    double slowest = INFINITY;
+    for (size_t i = 0; i < r.n_isotherm; i++)
+        if (r.determined[i])
+            slowest = fmin(slowest, s.point[s.isotherm[i].first_point].omega_rad_s * pow(10, r.log10_aT[i]));
+    assert_relative(r.omega_range[0], slowest, 1e-12);
+    an_superposition_clear(&r);
+}
+
 /* Straight lines that leave 0.3 decades of frequency between them are bridged exactly; 1.2 decades are
  * refused. */
 static void gaps_are_bridged_or_refused(void **state)
@@ -270,6 +305,7 @@ int main(void)
         cmocka_unit_test(common_sources_pass_through),
         cmocka_unit_test(area_is_exact_on_straight_lines),
         cmocka_unit_test(gaps_are_bridged_or_refused),
+        cmocka_unit_test(plateau_is_kept_but_not_trusted),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
