@@ -42,7 +42,9 @@ def burst(rows, step, start, kelvin, hertz, options, chance):
         position = offset + (reach * turn).imag + chance.gauss(0, 1e-9)
         force = abs(stiffness) * offset + (stiffness * reach * turn).imag + chance.gauss(0, 2e-3)
         if options.clip and step == 7:
-            force = min(force, abs(stiffness) * (offset + 0.8 * reach))
+            # both tops cut so deep that seven samples in ten stand at an end: too little is left to fit
+            middle, half = abs(stiffness) * offset, 0.45 * abs(stiffness) * reach
+            force = min(max(force, middle - half), middle + half)
         rows.append(f"{step},{start + time:.6f},{position * 1e6:.4f},{force:.4f},"
                     f"{kelvin - 273.15 + chance.gauss(0, 0.02):.3f},{hertz}")
     return start + SAMPLES * CYCLES / (SAMPLES * hertz) + 2

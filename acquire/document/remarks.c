@@ -79,7 +79,7 @@ static const an_remark_kind table[] = {
      "Check the drive."},
     {"frequency-wrong", AN_SKIP, "the frequency is <value> Hz, set was <value> Hz",
      "Check the drive and the step table; measure again."},
-    {"clipping", AN_SKIP, "<channel> stays at <value> for <n> samples",
+    {"clipping", AN_FLAG, "<channel> stays at <value> for <n> samples",
      "Set a wider range, and measure again."},
     {"coarse-counts", AN_FLAG, "the amplitude of <channel> is <n> counts", "Set a finer range."},
     {"range-switch", AN_SKIP, "the amplitude of <channel> steps by <value> at cycle <n>",

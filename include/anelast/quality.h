@@ -10,6 +10,7 @@
 typedef struct an_clipping {
     int n_end[AN_CHANNELS]; /* samples at an end of the converter's range, or in a flat top */
     int n_run[AN_CHANNELS]; /* longest run of them */
+    double end[AN_CHANNELS][2]; /* [unit of y] where the channel stops, below and above; NAN: nothing clipped there */
 } an_clipping;
 
 /* How evenly the samples stand in time. */
@@ -42,6 +43,16 @@ typedef struct an_quality {
  *     samples, and more than twice as many as rounding makes at the top of a sine of that amplitude */
 void an_clip_find(const an_waveform *waveform, double frequency_Hz, const double (*range)[2],
                   unsigned char *use, an_clipping *clipping);
+
+/* an_clip_guard: leave out, too, the samples that stood so near an end that their noise alone decided whether they
+ * reached it: those whose fitted value lies beyond the end, or within 4 standard deviations of the residual before
+ * it. Which samples stay is then decided by the fit and not by their noise, and the next fit has no bias from the
+ * choice.
+ *   waveform [in] whole burst; first [in] first sample kept; clipping [in]
+ *   deviation [in] [AN_CHANNELS] of the residual [unit of y]; residual [in] [AN_CHANNELS][n]; use [in, out] [n]
+ * Returns the number of samples newly left out. */
+int an_clip_guard(const an_waveform *waveform, int first, const an_clipping *clipping,
+                  const double deviation[AN_CHANNELS], const double *residual, unsigned char *use);
 
 /* an_timing_assess: look at the times [n], n >= 2 [s]. */
 void an_timing_assess(int n, const double *time_s, an_timing *timing);

@@ -63,11 +63,10 @@ static void take_time(an_reduction *r)
                                 .resolution = {s->resolution[AN_DISPLACEMENT], s->resolution[AN_FORCE]}};
 }
 
-/* Search, clipping, start-up and fit. */
-static an_status fit_burst(an_reducer *reducer, an_reduction *r, an_error *err)
+/* Excitation search and clipping. */
+static an_status search_burst(an_reducer *reducer, an_reduction *r, an_error *err)
 {
     an_samples *s = &r->samples;
-    an_sinefit_choice choice = r->limits->fit;
     AN_TRY(an_search_peak(reducer->search, s->n, s->time, s->y[AN_DISPLACEMENT], &r->searched_Hz,
                           &r->prominence, err));
     if (r->prominence < LEAST_PROMINENCE)
@@ -76,7 +75,18 @@ static an_status fit_burst(an_reducer *reducer, an_reduction *r, an_error *err)
                        "spectrum)",
                        r->prominence);
     an_clip_find(&r->waveform, r->searched_Hz, (const double(*)[2])s->range, s->use, &r->clipping);
+    return AN_OK;
+}
+
+/* Start-up and fit; once more where the first shows which samples the end of the range may have kept. */
+static an_status fit_burst(an_reduction *r, an_error *err)
+{
+    an_samples *s = &r->samples;
+    an_sinefit_choice choice = r->limits->fit;
     choice.frequency_Hz = r->searched_Hz;
+    AN_TRY(an_startup_fit(&r->waveform, &choice, &r->limits->startup, &r->startup, &r->fit, s->residual, err));
+    if (!an_clip_guard(&r->waveform, r->startup.first_sample, &r->clipping, r->fit.deviation, s->residual, s->use))
+        return AN_OK;
     return an_startup_fit(&r->waveform, &choice, &r->limits->startup, &r->startup, &r->fit, s->residual, err);
 }
 
@@ -194,7 +204,10 @@ static an_status reduce(an_reducer *reducer, an_reduction *r, an_error *err)
     AN_TRY(an_judge_record(r, err));
     if (an_remark_list_worst(&p->remarks, -1) >= (int)AN_SKIP)
         return AN_OK;
-    if (fit_burst(reducer, r, &why) < 0)
+    if (search_burst(reducer, r, &why) < 0)
+        return skip(p, why.status == AN_E_SCIENCE ? "no-signal" : "fit-failed", &why, err);
+    AN_TRY(an_judge_clipping(r, err));
+    if (fit_burst(r, &why) < 0)
         return skip(p, why.status == AN_E_SCIENCE ? "no-signal" : "fit-failed", &why, err);
     fill_fit(r);
     if (fill_modulus(r, &why) < 0 || fill_quality(r, &why) < 0)

@@ -29,6 +29,7 @@ void an_limits_read(an_limits *l, const an_procedure *p)
     l->snr_skip = an_procedure_number(p, "snr_skip");
     l->correction_flag = an_procedure_number(p, "correction_flag");
     l->clipped_least = (int)an_procedure_number(p, "clipped_least");
+    l->clipped_most = an_procedure_number(p, "clipped_skip");
     l->samples_flag = an_procedure_number(p, "samples_least");
     l->steps_flag = an_procedure_number(p, "counts_least");
     l->third_note = an_procedure_number(p, "third_harmonic_note");
@@ -68,18 +69,28 @@ an_status an_judge_record(an_reduction *r, an_error *err)
     return AN_OK;
 }
 
-/* Clipping, frozen samples, repeated blocks. */
+an_status an_judge_clipping(an_reduction *r, an_error *err)
+{
+    for (int c = 0; c < AN_CHANNELS; c++) {
+        int clipped = r->clipping.n_end[c];
+        if (clipped > r->limits->clipped_most * r->samples.n)
+            REMARK_AS(r, "clipping", AN_SKIP, "%s stands at its end for %d of %d samples, more than %.0f %%",
+                      CHANNEL[c], clipped, r->samples.n, 100 * r->limits->clipped_most);
+        else if (r->clipping.n_run[c] >= r->limits->clipped_least)
+            REMARK(r, "clipping",
+                   "%s stands at its end for %d samples, up to %d in a row; they were left out of the fit",
+                   CHANNEL[c], clipped, r->clipping.n_run[c]);
+        else if (clipped)
+            REMARK_AS(r, "clipping", AN_NOTE,
+                      "%s: %d single samples at the converter's end were left out of the fit", CHANNEL[c], clipped);
+    }
+    return AN_OK;
+}
+
+/* Frozen samples, repeated blocks. */
 static an_status judge_samples(an_reduction *r, an_error *err)
 {
     for (int c = 0; c < AN_CHANNELS; c++) {
-        if (r->clipping.n_run[c] >= r->limits->clipped_least)
-            REMARK(r, "clipping",
-                   "%s stands at its end for %d samples, up to %d in a row; they were left out of the fit",
-                   CHANNEL[c], r->clipping.n_end[c], r->clipping.n_run[c]);
-        else if (r->clipping.n_end[c])
-            REMARK_AS(r, "clipping", AN_NOTE,
-                      "%s: %d single samples at the converter's end were left out of the fit", CHANNEL[c],
-                      r->clipping.n_end[c]);
         if (r->quality.n_frozen[c])
             REMARK(r, "frozen-samples", "%s stands still for %d samples", CHANNEL[c], r->quality.n_frozen[c]);
     }
@@ -194,10 +205,12 @@ static an_status judge_modulus(an_reduction *r, an_error *err)
 
 an_status an_judge_burst(an_reduction *r, an_error *err)
 {
-    double amplitude = cabs(r->fit.amplitude[AN_DISPLACEMENT][0]);
-    if (amplitude < 6 * r->fit.u_amplitude[AN_DISPLACEMENT])
-        REMARK(r, "no-signal", "displacement amplitude %.3g m is noise (%.3g m)", amplitude,
-               r->fit.u_amplitude[AN_DISPLACEMENT]);
+    for (int c = 0; c < AN_CHANNELS; c++) {
+        double amplitude = cabs(r->fit.amplitude[c][0]);
+        if (amplitude < 6 * r->fit.u_amplitude[c])
+            REMARK(r, "no-signal", "the amplitude of %s, %.3g, is noise (%.3g) in SI units", CHANNEL[c], amplitude,
+                   r->fit.u_amplitude[c]);
+    }
     AN_TRY(judge_samples(r, err));
     AN_TRY(judge_signal(r, err));
     AN_TRY(judge_linearity(r, err));

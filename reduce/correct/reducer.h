@@ -17,6 +17,7 @@ typedef struct an_limits {
     double snr_skip;          /* [dB] */
     double correction_flag;   /* [1] change of the stiffness by one rung, as a part */
     int clipped_least;        /* equal extreme samples in a row */
+    double clipped_most;      /* [1] share of samples at the end of the range above which a burst is dropped */
     double samples_flag;      /* [1] samples in a cycle */
     double steps_flag;        /* [1] amplitude in converter steps */
     double third_note;        /* [1] I3/I1 */
@@ -78,9 +79,10 @@ void an_limits_read(an_limits *limits, const an_procedure *procedure);
  * Returns AN_OK or AN_E_MEMORY. */
 an_status an_samples_take(an_reducer *reducer, const an_burst *burst, an_samples *samples, an_error *err);
 
-/* an_judge_record: remarks before the fit: missing samples, times; may skip the burst. an_judge_burst: all
- * others, after it. Both return AN_OK or AN_E_MEMORY. */
+/* an_judge_record: remarks before the fit: missing samples, times; may skip the burst. an_judge_clipping: after the
+ * search. an_judge_burst: all others, after the fit. All return AN_OK or AN_E_MEMORY. */
 an_status an_judge_record(an_reduction *r, an_error *err);
+an_status an_judge_clipping(an_reduction *r, an_error *err);
 an_status an_judge_burst(an_reduction *r, an_error *err);
 
 /* an_point_settle: the state that a point's remarks put it in. */

@@ -59,6 +59,8 @@ void an_clip_find(const an_waveform *w, double frequency_Hz, const double (*rang
                   an_clipping *clip)
 {
     memset(clip, 0, sizeof *clip);
+    for (int c = 0; c < AN_CHANNELS; c++)
+        clip->end[c][0] = clip->end[c][1] = NAN;
     if (w->n < 3 || !(w->time_s[w->n - 1] > w->time_s[0]))
         return;
     for (int c = 0; c < AN_CHANNELS; c++) {
@@ -69,10 +71,29 @@ void an_clip_find(const an_waveform *w, double frequency_Hz, const double (*rang
         for (int k = 0; k < 2; k++) {
             int at_end = range && end[k] == range[c][k];
             int run = longest_equal(w, c, end[k]);
-            if (at_end || (run >= 3 && run > 2 * natural_run(w, q, amplitude, frequency_Hz)))
+            if (at_end || (run >= 3 && run > 2 * natural_run(w, q, amplitude, frequency_Hz))) {
                 mark(w, c, end[k], use, clip);
+                clip->end[c][k] = end[k];
+            }
         }
     }
+}
+
+int an_clip_guard(const an_waveform *w, int first, const an_clipping *clip, const double deviation[AN_CHANNELS],
+                  const double *residual, unsigned char *use)
+{
+    const double sure = 4; /* standard deviations: of the samples further off, 1 in 30 000 would have reached the end */
+    int n_left_out = 0;
+    for (int c = 0; c < AN_CHANNELS; c++)
+        for (int i = first; i < w->n && clip->n_end[c]; i++) {
+            double fitted = w->y[c][i] - residual[(size_t)c * (size_t)w->n + (size_t)i];
+            if (use[i] && (fitted < clip->end[c][0] + sure * deviation[c] ||
+                           fitted > clip->end[c][1] - sure * deviation[c])) {
+                use[i] = 0;
+                n_left_out++;
+            }
+        }
+    return n_left_out;
 }
 
 /* Straight line of least squares through the times over their index. */

@@ -99,14 +99,14 @@ static void a_skipped_burst_leaves_a_hole(void **state)
     made_sweep(&points, 240, 5, 7, sweep, N_SWEEP, 0.001);
     an_point *point = &points.point[2 * N_SWEEP + 3];
     point->state = AN_POINT_SKIPPED;
-    an_remark_list_add(&point->remarks, "clipping", point->burst, NULL, "force stays at 25 N for 9 samples");
+    an_remark_list_add(&point->remarks, "missing-values", point->burst, NULL, "9 of 640 samples are marked");
     grid_of(&points, 1, &grid);
     assert_int_equal(grid.n_isotherm, 7);
     assert_int_equal(grid.n_cell, 7 * N_SWEEP - 1);
     assert_int_equal(grid.isotherm[2].n_cell, N_SWEEP - 1);
     assert_int_equal(grid.assessment.verdict, AN_PARTIAL);
     assert_int_equal(grid.assessment.n_skipped, 1);
-    assert_non_null(strstr(grid.assessment.reason[0], "force stays at 25 N"));
+    assert_non_null(strstr(grid.assessment.reason[0], "9 of 640 samples are marked"));
     /* what to redo is said as it is set: 250 K is -23.1 degrees Celsius */
     assert_non_null(strstr(grid.assessment.reason[1], "-23.1 °C: 2 Hz"));
     an_grid_clear(&grid);

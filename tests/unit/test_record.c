@@ -197,7 +197,7 @@ static void remarks_are_counted_by_burst_and_weight(void **state)
     assert_int_equal(an_remark_list_worst(&list, -1), -1);
     assert_int_equal(
         an_remark_list_add(&list, "low-snr", 3, &err, "force stands %.1f dB above its noise", 34.1), AN_OK);
-    assert_int_equal(an_remark_list_add(&list, "clipping", 3, &err, "force stays at %d", 32767), AN_OK);
+    assert_int_equal(an_remark_list_add(&list, "missing-values", 3, &err, "%d samples are marked", 12), AN_OK);
     assert_int_equal(an_remark_list_add(&list, "truncated", 0, &err, "it ends at byte 812"), AN_OK);
     assert_int_equal(an_remark_list_add_as(&list, "low-snr", AN_NOTE, 4, &err, "as weak as this"), AN_OK);
     assert_int_equal(an_remark_list_add(&list, "no-such-code", 1, &err, "x"), AN_E_USAGE);
