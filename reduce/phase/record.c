@@ -24,15 +24,18 @@ static int longest_equal(const an_waveform *w, int c, double value)
     return longest;
 }
 
-/* Least step between neighbours: the converter's, where nobody said. */
+/* Least step between samples not far apart: the converter's, where nobody said. Neighbours alone would tell of the sine's
+ * slope where little of it is left between two flat tops. */
 static double least_step(const an_waveform *w, int c)
 {
+    const int apart = 64;
     double least = INFINITY;
-    for (int i = 1; i < w->n; i++) {
-        double d = fabs(w->y[c][i] - w->y[c][i - 1]);
-        if (d > 0 && d < least)
-            least = d;
-    }
+    for (int i = 1; i < w->n; i++)
+        for (int j = i > apart ? i - apart : 0; j < i; j++) {
+            double d = fabs(w->y[c][i] - w->y[c][j]);
+            if (d > 0 && d < least)
+                least = d;
+        }
     return isfinite(least) ? least : 0;
 }
 
