@@ -23,7 +23,7 @@
 
 static const double margins_K[] = {3,   8,   20,  40,  70,
                                    120, 250, 600, 2000}; /* of the divergence below the least temperature */
-enum { N_MARGINS = sizeof margins_K / sizeof margins_K[0], N_BEST = 4 };
+enum { N_MARGINS = sizeof margins_K / sizeof margins_K[0], N_BEST = 24 };
 
 /* The best few starts, best first. */
 typedef struct start_list {
@@ -31,6 +31,22 @@ typedef struct start_list {
     double cost[N_BEST];
     size_t n;
 } start_list;
+
+/* Faults of a law that was fitted: what it says is outside what such a law can mean. */
+static const char *find_fault(const an_law *law)
+{
+    const double *c = law->constant;
+    if (law->kind == AN_LAW_WLF && c[1] > STRAIGHT_C2)
+        return "log10 a_T runs straight over temperature: c2 grows without bound";
+    if (law->kind != AN_LAW_CROSSOVER)
+        return NULL;
+    double above = an_law_activation_energy(law, c[2]);
+    if (c[3] >= above)
+        return "the apparent activation energy does not fall below the crossover";
+    if (c[1] > STRAIGHT_C2)
+        return "log10 a_T runs straight over temperature above the crossover: c2 grows without bound";
+    return NULL;
+}
 
 static void offer(start_list *list, const an_law *law, double cost)
 {
@@ -60,21 +76,33 @@ static void wlf_starts(const law_problem *problem, const an_law *empty, start_li
     }
 }
 
-/* T_x at three places between neighbouring temperatures, with enough of them on either side to carry both
- * branches. */
-static void crossover_starts(const law_problem *problem, const an_law *empty, start_list *list)
+/* c2 of WLF above T_x in a crossover whose other constants are solved for; keeps the best in `best`. */
+static void offer_crossover(const law_problem *problem, const an_law *empty, double crossover_K,
+                            start_list *best)
 {
     static const size_t linear[] = {0, 3};
+    for (size_t m = 0; m < N_MARGINS; m++) {
+        an_law law = *empty;
+        law.constant[2] = crossover_K;
+        law.constant[1] = margins_K[m];
+        double cost = an_law_problem_linear(problem, linear, 2, &law);
+        if (!find_fault(&law))
+            offer(best, &law, cost);
+    }
+}
+
+/* T_x at three places between neighbouring temperatures, with enough of them on either side to carry both
+ * branches; the best of each interval. The law has a kink at T_x, so that chi-square has a bottom of its own
+ * in almost every interval, and a descent rarely finds the way to the next. */
+static void crossover_starts(const law_problem *problem, const an_law *empty, start_list *list)
+{
     for (size_t i = 1; i + 2 < problem->n; i++) {
-        for (int part = 1; part < 4; part++) {
-            double step = problem->temperature_K[i + 1] - problem->temperature_K[i];
-            for (size_t m = 0; m < N_MARGINS; m++) {
-                an_law law = *empty;
-                law.constant[2] = problem->temperature_K[i] + 0.25 * part * step;
-                law.constant[1] = margins_K[m];
-                offer(list, &law, an_law_problem_linear(problem, linear, 2, &law));
-            }
-        }
+        start_list best = {.n = 0};
+        double step = problem->temperature_K[i + 1] - problem->temperature_K[i];
+        for (int part = 1; part < 4; part++)
+            offer_crossover(problem, empty, problem->temperature_K[i] + 0.25 * part * step, &best);
+        if (best.n)
+            offer(list, &best.law[0], best.cost[0]);
     }
 }
 
@@ -104,22 +132,6 @@ static void refuse(an_law_trial *trial, const char *reason)
 {
     trial->criterion = INFINITY;
     snprintf(trial->reason, sizeof trial->reason, "%s", reason);
-}
-
-/* Faults of a law that was fitted: what it says is outside what such a law can mean. */
-static const char *find_fault(const an_law *law)
-{
-    const double *c = law->constant;
-    if (law->kind == AN_LAW_WLF && c[1] > STRAIGHT_C2)
-        return "log10 a_T runs straight over temperature: c2 grows without bound";
-    if (law->kind != AN_LAW_CROSSOVER)
-        return NULL;
-    double above = an_law_activation_energy(law, c[2]);
-    if (c[3] >= above)
-        return "the apparent activation energy does not fall below the crossover";
-    if (c[1] > STRAIGHT_C2)
-        return "log10 a_T runs straight over temperature above the crossover: c2 grows without bound";
-    return NULL;
 }
 
 /* chi-square + 2k + 2k(k+1)/(n-k-1) [HT89]. */
@@ -166,11 +178,14 @@ static void fit_kind(const law_problem *problem, an_law_kind kind, size_t degree
         return;
     }
     find_starts(problem, &empty, &list);
+    int found = 0; /* a law without fault */
     for (size_t i = 0; i < list.n; i++) {
         double cost = an_law_problem_descend(problem, &list.law[i]);
-        if (cost < trial->chi_square) {
+        int sound = !find_fault(&list.law[i]);
+        if (sound > found || (sound == found && cost < trial->chi_square)) {
             trial->chi_square = cost;
             trial->law = list.law[i];
+            found = sound;
         }
     }
     if (kind == AN_LAW_VFT && isfinite(trial->chi_square))

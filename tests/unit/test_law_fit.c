@@ -149,6 +149,55 @@ static void covariance_is_honest(void **state)
     assert_close(sum_chi / 400, 10, 0.7);
 }
 
+/* Shifts as a joint fit hands them out: 2e-4 decades where the material relaxes, ten times worse every 15 K
+ * into the glass, and the reference isotherm's own noise shared by all. */
+static void make_glassy(made *m, const an_law *truth, double from, gsl_rng *random)
+{
+    static const double u_warm = 2e-4, u_reference = 0.01;
+    make(m, truth, from, 0, NULL);
+    double common = gsl_ran_gaussian(random, u_reference);
+    for (size_t i = 0; i < N; i++) {
+        double below_K = fmax(0, truth->constant[2] - m->temperature[i]);
+        double u = u_warm * pow(10, below_K / 15);
+        int reference = fabs(m->temperature[i] - truth->reference_temperature_K) < 1e-9;
+        for (size_t j = 0; j < N; j++)
+            m->covariance[i * N + j] = i == j ? u * u : 0;
+        m->shift[i] += reference ? 0 : common + gsl_ran_gaussian(random, u);
+    }
+    for (size_t i = 0; i < N; i++)
+        for (size_t j = 0; j < N; j++) {
+            int at_reference = fabs(m->temperature[i] - truth->reference_temperature_K) < 1e-9 ||
+                               fabs(m->temperature[j] - truth->reference_temperature_K) < 1e-9;
+            m->covariance[i * N + j] =
+                at_reference ? 0 : m->covariance[i * N + j] + u_reference * u_reference;
+        }
+}
+
+/* Chi-square has a bottom in almost every interval of T_x; the right one is found wherever T_x lies. */
+static void crossover_is_found_from_a_noisy_glass(void **state)
+{
+    (void)state;
+    gsl_rng *random = gsl_rng_alloc(gsl_rng_mt19937);
+    int right = 0, n = 0;
+    for (int at = 0; at < 10; at++) {
+        for (int i = 0; i < 4; i++, n++) {
+            an_law truth = crossover(at % 2 ? 345 : 325);
+            truth.constant[2] = 320 + 1.1 * at;
+            truth.constant[3] = 390e3;
+            made m;
+            an_law_trial trial[AN_LAW_TRIALS];
+            size_t n_trial;
+            make_glassy(&m, &truth, 300, random);
+            assert_true(an_law_fit_choose(&m.data, AN_LAW_NONE, trial, &n_trial, NULL) >= 0);
+            for (size_t k = 0; k < n_trial; k++)
+                right += trial[k].chosen && trial[k].law.kind == AN_LAW_CROSSOVER &&
+                         fabs(trial[k].law.constant[2] - truth.constant[2]) < 3;
+        }
+    }
+    assert_in_range(right, n - 1, n);
+    gsl_rng_free(random);
+}
+
 /* The true kind wins in at least 9 of 10 noisy sets, and the crossover temperature is found within its
  * uncertainty. */
 static void the_true_law_is_chosen(void **state)
@@ -245,6 +294,7 @@ int main(void)
         cmocka_unit_test(vft_is_wlf),
         cmocka_unit_test(covariance_is_honest),
         cmocka_unit_test(the_true_law_is_chosen),
+        cmocka_unit_test(crossover_is_found_from_a_noisy_glass),
         cmocka_unit_test(what_follows_no_law_is_not_forced),
         cmocka_unit_test(temperature_noise_widens),
         cmocka_unit_test(too_little_is_refused),
