@@ -104,8 +104,23 @@ static void count_bursts(const an_points *points, int n_points, an_assessment *a
         }
 }
 
-/* What was skipped, as the technician sets it: temperature and frequencies. */
-static void say_what_to_redo(const an_points *points, int n_points, an_assessment *assessment)
+static int is_lost(const an_point *point)
+{
+    return point->state == AN_POINT_SKIPPED;
+}
+
+/* Kept, but fitted around what the converter cut off. */
+static int is_cut(const an_point *point)
+{
+    for (size_t i = 0; i < point->remarks.n; i++)
+        if (point->remarks.rows[i].severity == AN_FLAG && strcmp(point->remarks.rows[i].kind->code, "clipping") == 0)
+            return !is_lost(point);
+    return 0;
+}
+
+/* The bursts that a test picks, as the technician sets them: temperature and frequencies. */
+static void say_what_to_redo(const an_points *points, int n_points, int (*picks)(const an_point *), const char *what,
+                             an_assessment *assessment)
 {
     char list[160] = "";
     size_t used = 0;
@@ -116,7 +131,7 @@ static void say_what_to_redo(const an_points *points, int n_points, an_assessmen
             const an_point *point = &points[i].point[k];
             double set = isnan(point->set_temperature_K) ? point->temperature_K : point->set_temperature_K;
             double frequency = isnan(point->set_frequency_Hz) ? point->frequency_Hz : point->set_frequency_Hz;
-            if (point->state != AN_POINT_SKIPPED || isnan(frequency) || isnan(set))
+            if (!picks(point) || isnan(frequency) || isnan(set))
                 continue;
             n++;
             if (used > sizeof list - 40)
@@ -129,7 +144,7 @@ static void say_what_to_redo(const an_points *points, int n_points, an_assessmen
             last = set;
         }
     if (n > 0)
-        say(assessment, "before unclamping, measure again: %s Hz%s", list,
+        say(assessment, "before unclamping, measure again%s: %s Hz%s", what, list,
             used > sizeof list - 40 ? ", and more" : "");
 }
 
@@ -192,7 +207,8 @@ void an_assess(const an_points *points, int n_points, an_grid *grid)
         assessment->verdict = AN_PARTIAL;
     for (int severity = AN_HALT; severity >= AN_SKIP; severity--)
         say_tallies(tallies, n, (an_severity)severity, assessment);
-    say_what_to_redo(points, n_points, assessment);
+    say_what_to_redo(points, n_points, is_lost, "", assessment);
+    say_what_to_redo(points, n_points, is_cut, " with a wider range", assessment);
     say_missing(grid, assessment);
     say_tallies(tallies, n, AN_FLAG, assessment);
     find_largest_correction(points, n_points, assessment);

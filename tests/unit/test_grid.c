@@ -113,6 +113,24 @@ static void a_skipped_burst_leaves_a_hole(void **state)
     an_points_clear(&points);
 }
 
+static void a_cut_burst_is_kept_and_asked_for_again(void **state)
+{
+    (void)state;
+    an_points points;
+    an_grid grid;
+    made_begin(&points, "RP-0412-4");
+    made_sweep(&points, 240, 5, 7, sweep, N_SWEEP, 0.001);
+    an_point *point = &points.point[2 * N_SWEEP + 3];
+    point->state = AN_POINT_FLAGGED;
+    an_remark_list_add(&point->remarks, "clipping", point->burst, NULL, "force stands at its end for 9 samples");
+    grid_of(&points, 1, &grid);
+    assert_int_equal(grid.n_cell, 7 * N_SWEEP);
+    assert_int_equal(grid.assessment.verdict, AN_USABLE);
+    assert_non_null(strstr(grid.assessment.reason[0], "measure again with a wider range: -23.1 °C: 2 Hz"));
+    an_grid_clear(&grid);
+    an_points_clear(&points);
+}
+
 static void repeats_are_averaged_and_compared(void **state)
 {
     (void)state;
@@ -347,6 +365,7 @@ int main(void)
         cmocka_unit_test(a_ramp_joins_no_isotherm),
         cmocka_unit_test(a_chain_is_cut),
         cmocka_unit_test(a_skipped_burst_leaves_a_hole),
+        cmocka_unit_test(a_cut_burst_is_kept_and_asked_for_again),
         cmocka_unit_test(repeats_are_averaged_and_compared),
         cmocka_unit_test(outliers_are_marked_and_kept),
         cmocka_unit_test(heating_and_cooling_stay_apart),
