@@ -88,12 +88,37 @@ static double overlap_with(const an_superpose_input *input, size_t i, size_t oth
     return width > 0 ? (fmin(own[1], its[1]) - fmax(own[0], its[0])) / width : 0;
 }
 
-/* T0: the isotherm nearest to the one asked for; else the one nearest to the middle that overlaps both
- * neighbours by half its own range in ln |E*|, or, where none of the middle half does, the one that overlaps
- * them most. */
-static size_t choose_reference(const an_superpose_input *input, double wanted_K)
+/* Uncertainty of log10 a that an isotherm's own slopes and noise leave, decades; infinite for a single point.
+ */
+static double own_u(const an_superpose_input *input, size_t i)
+{
+    static const double log10_e = 0.4342944819032518;
+    const an_superpose_point *first = &input->point[input->isotherm[i].first_point];
+    size_t n = input->isotherm[i].n_point;
+    const an_superpose_point *last = first + n - 1;
+    double width = log(last->omega_rad_s / first->omega_rad_s), information = 0;
+    double slope[2] = {(last->storage_Pa - first->storage_Pa) / width,
+                       (last->loss_Pa - first->loss_Pa) / width};
+    for (size_t p = 0; n > 1 && p < n; p++)
+        information += slope[0] * slope[0] / first[p].noise[0] + slope[1] * slope[1] / first[p].noise[2];
+    return log10_e / sqrt(information);
+}
+
+/* How well an isotherm serves as the reference: its common range of ln |E*| with either neighbour, up to half
+ * its own, less where its own shift is uncertain, since all other shifts share that. */
+static double fitness(const an_superpose_input *input, size_t i)
 {
     static const double enough = 0.5;
+    static const double sure_u = 0.002; /* decades: 0.2 % of E where it falls with the root of time */
+    double overlap = fmin(overlap_with(input, i, i - 1), overlap_with(input, i, i + 1));
+    return fmin(overlap, enough) * fmin(1, sure_u / own_u(input, i));
+}
+
+/* T0: the isotherm nearest to the one asked for; else the one nearest to the middle that overlaps both
+ * neighbours by half its own range in ln |E*| and has a sharp shift of its own, or, where none of the middle
+ * half does, the one that comes nearest to that. */
+static size_t choose_reference(const an_superpose_input *input, double wanted_K)
+{
     static const double nearness = 1e-3; /* a step from the middle weighs a part in 1000 of overlap */
     size_t n = input->n_isotherm, best = n / 2;
     double best_score = -INFINITY;
@@ -104,8 +129,7 @@ static size_t choose_reference(const an_superpose_input *input, double wanted_K)
         else if (n > 2 && (i == 0 || i + 1 == n || 4 * i < n - 1 || 4 * i > 3 * (n - 1)))
             continue;
         else if (n > 2)
-            score = fmin(fmin(overlap_with(input, i, i - 1), overlap_with(input, i, i + 1)), enough) -
-                    nearness * fabs((double)i - 0.5 * (double)(n - 1));
+            score = fitness(input, i) - nearness * fabs((double)i - 0.5 * (double)(n - 1));
         else
             score = -(double)i;
         if (score > best_score) {

@@ -266,6 +266,33 @@ static void plateau_is_kept_but_not_trusted(void **state)
     an_superposition_clear(&r);
 }
 
+/* Half the isotherms on a rubber plateau: T0 is none of them, since all shifts would share its uncertainty.
+ */
+static void reference_has_a_sharp_shift(void **state)
+{
+    (void)state;
+    double tau[] = {1e-4, 1e-3, 1e-2, 1e-1, 1}, strength[] = {1e8, 3e8, 3e8, 1e8, 1e7};
+    an_maxwell model = {5, tau, strength, 5e6};
+    static synthetic s;
+    memset(&s, 0, sizeof s);
+    s.seed = 4;
+    for (int k = 0; k < 14; k++) {
+        double t = 258 + 6.0 * k;
+        synthetic_sweep sweep = {t, wlf(t) - wlf(270), 1, 0.1, 30, 8, 0.005};
+        synthetic_add(&s, &model, &sweep);
+    }
+    an_superpose_input input = synthetic_input(&s);
+    an_superposition r;
+    an_superposition_init(&r);
+    assert_int_equal(an_superpose(&input, NULL, &r, NULL), AN_OK);
+    double least = INFINITY;
+    for (size_t i = 0; i < r.n_isotherm; i++)
+        if (i != r.i_reference)
+            least = fmin(least, r.noise_covariance[i * (2 * r.n_isotherm + 1)]);
+    assert_true(sqrt(least) < 0.005); /* decades: 0.5 % of E where it falls with the root of time */
+    an_superposition_clear(&r);
+}
+
 /* Straight lines that leave 0.3 decades of frequency between them are bridged exactly; 1.2 decades are
  * refused. */
 static void gaps_are_bridged_or_refused(void **state)
@@ -305,6 +332,7 @@ int main(void)
         cmocka_unit_test(common_sources_pass_through),
         cmocka_unit_test(area_is_exact_on_straight_lines),
         cmocka_unit_test(gaps_are_bridged_or_refused),
+        cmocka_unit_test(reference_has_a_sharp_shift),
         cmocka_unit_test(plateau_is_kept_but_not_trusted),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
