@@ -194,11 +194,28 @@ static double reduced_of(const an_joint *joint)
     return joint->smooth.chi_square / fmax(freedom, 1);
 }
 
-/* Schwarz's criterion of a joint fit [SCH78]. */
-static double criterion_of(const an_joint *joint)
+/* Schwarz's criterion of a joint fit [SCH78], chi-square over `excess`. */
+static double criterion_of(const an_joint *joint, double excess)
 {
-    return joint->smooth.chi_square +
+    return joint->smooth.chi_square / excess +
            log((double)joint->n_row) * ((double)joint->n_outer + joint->smooth.used);
+}
+
+/* Whether a law of b_T tried later beats the best before it. As with laws of a_T, chi-squares are divided by
+ * what even the better one leaves above its expectation, so that a noise stated too small does not buy
+ * freedom; and free shifts, which carry no physics, must be better by 10 ("essentially no support" for the
+ * others, Burnham and Anderson 2002, from memory). Beyond `limit` neither describes the data: freedom must
+ * not cover up that the material does not superpose, and T/T0 must be much closer than no shift. */
+static int is_better(const an_joint *one, const an_joint *best, double limit)
+{
+    static const double handicap = 10, much = 10;
+    double reduced[2] = {reduced_of(one), reduced_of(best)};
+    double excess = fmax(1, fmin(reduced[0], reduced[1]));
+    double gain = criterion_of(best, excess) - criterion_of(one, excess);
+    int is_free = one->vertical == AN_VERTICAL_FREE;
+    if (reduced[0] > limit && (is_free || much * reduced[0] > reduced[1]))
+        return 0;
+    return gain > (is_free ? handicap : 0);
 }
 
 /* Fit on ever finer grids while chi-square is above its expectation and each doubling takes off three tenths
@@ -249,14 +266,13 @@ static an_status fit_vertical(const an_superpose_input *input, an_joint_plan *pl
     return status;
 }
 
-/* Try all three laws of b_T; keep the best by Schwarz's criterion. Where none describes the data, the one
- * without vertical shifts: freedom must not cover up that the material does not superpose. */
+/* Try all three laws of b_T; keep the best. */
 static an_status fit_chosen(const an_superpose_input *input, an_joint_plan *plan, an_joint *joint,
                             an_error *err)
 {
     static const an_vertical tried[] = {AN_VERTICAL_NONE, AN_VERTICAL_DENSITY_TEMPERATURE, AN_VERTICAL_FREE};
-    double floor = plan->options->complex_chi_square, least = INFINITY;
     an_status refused = AN_OK;
+    int found = 0;
     an_joint best;
     an_joint_init(&best);
     for (size_t i = 0; i < sizeof tried / sizeof *tried; i++) {
@@ -271,16 +287,13 @@ static an_status fit_chosen(const an_superpose_input *input, an_joint_plan *plan
                 continue;
             break;
         }
-        double criterion = reduced_of(&one) <= floor ? criterion_of(&one) : 1e200 * (1 + (double)i);
-        if (criterion < least) {
-            an_joint_clear(&best);
+        int better = !found || is_better(&one, &best, plan->options->complex_chi_square);
+        an_joint_clear(better ? &best : &one);
+        if (better)
             best = one;
-            least = criterion;
-        } else {
-            an_joint_clear(&one);
-        }
+        found = 1;
     }
-    if (refused < 0 && (refused != AN_E_SCIENCE || !isfinite(least))) {
+    if (refused < 0 && (refused != AN_E_SCIENCE || !found)) {
         an_joint_clear(&best);
         return refused;
     }
