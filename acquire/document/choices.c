@@ -71,6 +71,10 @@ static const an_choice table[] = {
      "default"},
     {"modulus_most", "Pa", NULL, "1e12", 0, 1e15, "correct", "Modulus above which a unit must be wrong",
      "default"},
+    {"strain_flag", "1", NULL, "0.1", 0, 100, "correct",
+     "Strain amplitude flagged from here on: geometry and superposition are those of small strains", "default"},
+    {"strain_most", "1", NULL, "0.5", 0, 100, "correct",
+     "Strain amplitude above which a unit or a dimension must be wrong", "default"},
     /* ---- grid ---- */
     {"isotherm_width", "K", NULL, "0.5", 0, 50, "grid", "Temperatures within this belong to one isotherm",
      "default"},

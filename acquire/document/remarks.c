@@ -53,6 +53,8 @@ static const an_remark_kind table[] = {
      "Measure the specimen again, and correct the one that is wrong."},
     {"geometry-stale", AN_HOLD, "the dimensions are those of the last <n> specimens",
      "Measure this specimen's own dimensions."},
+    {"geometry-unusual", AN_HOLD, "the specimen is <dimension> long and <dimension> thick",
+     "Check whether two dimensions were exchanged, or one has another unit."},
     {"geometry-slender", AN_NOTE, "length over thickness is <value>: shear matters",
      "Use a longer span, or give the ratio E/G."},
     {"uncertainty-assumed", AN_NOTE, "no uncertainty of <what> is given; <value> was assumed",
@@ -115,6 +117,8 @@ static const an_remark_kind table[] = {
     {"not-oscillation", AN_NOTE, "<n> holds or pulls are no oscillation and give no point", "Nothing to do."},
     {"fit-poor", AN_FLAG, "the sine leaves <value> % of <channel>", "Look at the waveform of this burst."},
     /* ---- modulus ---- */
+    {"strain-large", AN_FLAG, "the strain amplitude is <value> %",
+     "Check the unit of displacement and the dimensions; if they are right, use a smaller amplitude."},
     {"stiffness-compliance-large", AN_HOLD, "specimen stiffness times frame compliance is <value>",
      "Use a softer geometry: a longer, thinner specimen; here the value hangs on the frame's calibration."},
     {"lower-bound", AN_SKIP,

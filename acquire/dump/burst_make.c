@@ -95,8 +95,8 @@ static an_status make_time_from_column(an_rows *rows, an_burst *burst, const siz
         if (status >= 0 && n > 2)
             status = an_remark_list_add(
                 &burst->remarks, "clock-jitter", burst->n, err,
-                "no uniform clock has the times of the dump within their last digit; the times "
-                "are kept as they are");
+                "the sampling times are uneven: no fixed interval fits them to their last digit; they are kept "
+                "as they are");
     }
     free(time);
     return status;

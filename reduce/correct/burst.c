@@ -32,6 +32,7 @@ void an_reducer_free(an_reducer **reducer)
     an_search_free(&(*reducer)->search);
     free((*reducer)->array);
     free((*reducer)->use);
+    an_twins_clear(&(*reducer)->twins);
     free(*reducer);
     *reducer = NULL;
 }
@@ -131,7 +132,6 @@ static void fill_fit(an_reduction *r)
 {
     an_point *p = r->point;
     const an_sinefit *f = &r->fit;
-    p->start_s = r->samples.time[0];
     p->frequency_Hz = f->frequency_Hz;
     p->u_frequency_Hz = f->u_frequency_Hz;
     p->n_sample = f->n_used;
@@ -199,8 +199,12 @@ static an_status reduce(an_reducer *reducer, an_reduction *r, an_error *err)
     an_point *p = r->point;
     if (an_samples_take(reducer, r->burst, &r->samples, &why) < 0)
         return skip(p, "fit-failed", &why, err);
-    if (r->samples.n >= 2)
+    if (r->samples.n >= 2) {
         take_time(r);
+        p->start_s = r->samples.time[0];
+        take_temperature(r); /* of the whole burst, for one that comes no further */
+    }
+    AN_TRY(an_twins_judge(&reducer->twins, r, err));
     AN_TRY(an_judge_record(r, err));
     if (an_remark_list_worst(&p->remarks, -1) >= (int)AN_SKIP)
         return AN_OK;

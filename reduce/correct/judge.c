@@ -14,6 +14,14 @@
 
 static const char *const CHANNEL[AN_CHANNELS] = {"displacement", "force"};
 
+/* Unit of a channel's amplitude. */
+static const char *unit_of(const an_reduction *r, int channel)
+{
+    an_signal_quantity quantity =
+        channel == AN_FORCE ? r->burst->force.quantity : r->burst->displacement.quantity;
+    return an_signal_quantity_unit(quantity);
+}
+
 void an_limits_read(an_limits *l, const an_procedure *p)
 {
     an_sinefit_choice_init(&l->fit);
@@ -46,6 +54,22 @@ void an_limits_read(an_limits *l, const an_procedure *p)
     l->frozen_s = an_procedure_number(p, "temperature_frozen");
     l->modulus_least = an_procedure_number(p, "modulus_least");
     l->modulus_most = an_procedure_number(p, "modulus_most");
+    l->strain_flag = an_procedure_number(p, "strain_flag");
+    l->strain_most = an_procedure_number(p, "strain_most");
+}
+
+/* A channel that shows one value throughout was not connected, or not moved. */
+static an_status judge_still(an_reduction *r, an_error *err)
+{
+    for (int c = 0; c < AN_CHANNELS; c++) {
+        const double *y = r->samples.y[c];
+        int i = 1;
+        while (i < r->samples.n && y[i] == y[0])
+            i++;
+        if (i == r->samples.n)
+            REMARK(r, "no-signal", "%s stands at %.4g %s in all %d samples", CHANNEL[c], y[0], unit_of(r, c), i);
+    }
+    return AN_OK;
 }
 
 an_status an_judge_record(an_reduction *r, an_error *err)
@@ -58,7 +82,7 @@ an_status an_judge_record(an_reduction *r, an_error *err)
                   total);
     }
     if (s->n < 2)
-        REMARK(r, "empty-burst", "%d samples", s->n);
+        REMARK(r, "empty-burst", "%d sample%s", s->n, s->n == 1 ? "" : "s");
     else if (r->timing.n_backward)
         REMARK_AS(r, "clock-jump", AN_SKIP, "time steps back or stands still %d times", r->timing.n_backward);
     else if (r->timing.n_gap && !s->n_missing)
@@ -66,7 +90,7 @@ an_status an_judge_record(an_reduction *r, an_error *err)
     else if (r->timing.jitter > r->limits->jitter_flag && !s->n_missing)
         REMARK(r, "clock-jitter", "sampling times scatter by %.2g %% of the interval, limit %.2g %%",
                100 * r->timing.jitter, 100 * r->limits->jitter_flag);
-    return AN_OK;
+    return s->n < 2 ? AN_OK : judge_still(r, err);
 }
 
 an_status an_judge_clipping(an_reduction *r, an_error *err)
@@ -148,16 +172,19 @@ static an_status judge_frequency(an_reduction *r, an_error *err)
 {
     double set = r->burst->set_frequency_Hz, off = fabs(r->fit.frequency_Hz / set - 1);
     if (!r->startup.settled)
-        REMARK(r, "not-settled", "no two successive cycles agree, or more than noise is left near the line");
+        REMARK(r, "not-settled", "no two successive cycles agree, or the start-up still shows beside the sine");
     if (r->startup.n_kept < r->limits->startup.least_cycles - 0.02)
         REMARK(r, "few-cycles", "%.1f cycles, at least %d wanted", r->startup.n_kept,
                r->limits->startup.least_cycles);
     if (r->fit.n_used < r->limits->samples_flag * r->fit.n_cycle)
         REMARK(r, "few-samples", "%.1f samples in a cycle, at least %.0f wanted",
                r->fit.n_used / r->fit.n_cycle, r->limits->samples_flag);
-    if (!isnan(set) && off > r->limits->frequency_flag)
-        REMARK(r, off > r->limits->frequency_skip ? "frequency-wrong" : "frequency-off",
-               "found %.6g Hz, set %.6g Hz; the found one was used", r->fit.frequency_Hz, set);
+    if (off > r->limits->frequency_skip)
+        REMARK(r, "frequency-wrong", "found %.6g Hz, set %.6g Hz, more than %.3g %% apart", r->fit.frequency_Hz, set,
+               100 * r->limits->frequency_skip);
+    else if (off > r->limits->frequency_flag)
+        REMARK(r, "frequency-off", "found %.6g Hz, set %.6g Hz; the found one was used", r->fit.frequency_Hz,
+               set);
     return AN_OK;
 }
 
@@ -198,6 +225,9 @@ static an_status judge_modulus(an_reduction *r, an_error *err)
         if (hypot(p->rung[i][0], p->rung[i][1]) > l->correction_flag)
             REMARK(r, "correction-large", "the %s rung changes the stiffness by %.0f %%",
                    an_rung_word((an_rung)i), 100 * hypot(p->rung[i][0], p->rung[i][1]));
+    if (p->strain > l->strain_flag)
+        REMARK(r, "strain-large", "the strain amplitude is %.3g %%, above %.3g %%", 100 * p->strain,
+               100 * l->strain_flag);
     if (isnan(p->temperature_K))
         REMARK(r, "temperature-missing", "no temperature channel; the set temperature is no substitute");
     return AN_OK;
@@ -208,8 +238,8 @@ an_status an_judge_burst(an_reduction *r, an_error *err)
     for (int c = 0; c < AN_CHANNELS; c++) {
         double amplitude = cabs(r->fit.amplitude[c][0]);
         if (amplitude < 6 * r->fit.u_amplitude[c])
-            REMARK(r, "no-signal", "the amplitude of %s, %.3g, is noise (%.3g) in SI units", CHANNEL[c], amplitude,
-                   r->fit.u_amplitude[c]);
+            REMARK(r, "no-signal", "the sine in %s, %.3g %s, does not stand above its noise, %.3g %s", CHANNEL[c],
+                   amplitude, unit_of(r, c), r->fit.u_amplitude[c], unit_of(r, c));
     }
     AN_TRY(judge_samples(r, err));
     AN_TRY(judge_signal(r, err));

@@ -34,6 +34,8 @@ typedef struct an_limits {
     double frozen_s;          /* [s] a temperature that does not move by a bit for longer is none */
     double modulus_least;     /* [Pa] plausible moduli */
     double modulus_most;      /* [Pa] */
+    double strain_flag;       /* [1] strain amplitude */
+    double strain_most;       /* [1] above: a unit is wrong */
 } an_limits;
 
 /* A burst's samples in SI; arrays of the reducer. */
@@ -64,8 +66,15 @@ typedef struct an_reduction {
     an_quality quality;
 } an_reduction;
 
+/* Bursts met so far, by the SHA-256 of their samples. */
+typedef struct an_twins {
+    struct an_twin *row; /* [n], owned */
+    int n, room;
+} an_twins;
+
 struct an_reducer {
     an_limits limits;
+    an_twins twins;
     an_search *search;
     size_t room;        /* samples that the arrays hold */
     double *array;      /* [6 room] */
@@ -78,6 +87,11 @@ void an_limits_read(an_limits *limits, const an_procedure *procedure);
 /* an_samples_take: decode a burst into the reducer's arrays; samples that are not finite are left out.
  * Returns AN_OK or AN_E_MEMORY. */
 an_status an_samples_take(an_reducer *reducer, const an_burst *burst, an_samples *samples, an_error *err);
+
+/* an_twins_judge: skip a burst whose displacement, force and temperature repeat an earlier burst's byte for byte; noise
+ * never does. an_twins_clear: release. Returns AN_OK or AN_E_MEMORY. */
+an_status an_twins_judge(an_twins *twins, an_reduction *r, an_error *err);
+void an_twins_clear(an_twins *twins);
 
 /* an_judge_record: remarks before the fit: missing samples, times; may skip the burst. an_judge_clipping: after the
  * search. an_judge_burst: all others, after the fit. All return AN_OK or AN_E_MEMORY. */

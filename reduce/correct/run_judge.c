@@ -8,14 +8,18 @@
 #include <stdio.h>
 #include <string.h>
 
+static int is_beam(an_geometry_kind kind)
+{
+    return kind == AN_CANTILEVER_GUIDED || kind == AN_CANTILEVER_FREE || kind == AN_CANTILEVER_DUAL ||
+           kind == AN_BENDING_THREE_POINT;
+}
+
 /* The shear term that an isotropic beam of Poisson's ratio 0.35 would need, worth a note from 1 %. */
 static an_status note_shear(an_points *points, an_error *err)
 {
     const an_geometry *g = &points->specimen.geometry;
-    int beam = g->kind == AN_CANTILEVER_GUIDED || g->kind == AN_CANTILEVER_FREE ||
-               g->kind == AN_CANTILEVER_DUAL || g->kind == AN_BENDING_THREE_POINT;
     double slender = g->length.value / g->thickness.value, term = 2.4 * 1.35 / (slender * slender);
-    if (!beam || !isnan(g->poisson.value) || !isnan(g->modulus_ratio.value) || term < 0.01)
+    if (!is_beam(g->kind) || !isnan(g->poisson.value) || !isnan(g->modulus_ratio.value) || term < 0.01)
         return AN_OK;
     return an_remark_list_add(
         &points->remarks, "geometry-slender", 0, err,
@@ -34,6 +38,26 @@ static an_status note_calibration(an_points *points, an_error *err)
                               "the apparatus' calibration ended on %.10s, the "
                               "run is of %.10s",
                               until, at);
+}
+
+/* Shapes that dimensions typed in the wrong box, or in another unit, would make. */
+static an_status note_shape(an_points *points, an_error *err)
+{
+    const an_geometry *g = &points->specimen.geometry;
+    double length = g->length.value, thickness = g->thickness.value, width = g->width.value;
+    int bent = is_beam(g->kind);
+    if ((bent || g->kind == AN_TENSION) && length < thickness)
+        return an_remark_list_add(&points->remarks, "geometry-unusual", 0, err,
+                                  "the length, %.4g mm, is less than the thickness, %.4g mm", 1e3 * length,
+                                  1e3 * thickness);
+    if (g->kind == AN_TENSION && length < width)
+        return an_remark_list_add(&points->remarks, "geometry-unusual", 0, err,
+                                  "the length, %.4g mm, is less than the width, %.4g mm", 1e3 * length, 1e3 * width);
+    if (bent && width < thickness)
+        return an_remark_list_add(&points->remarks, "geometry-unusual", 0, err,
+                                  "the width, %.4g mm, is less than the thickness, %.4g mm", 1e3 * width,
+                                  1e3 * thickness);
+    return AN_OK;
 }
 
 an_status an_reducer_begin(an_reducer *reducer, const an_run *run, an_points *points, an_error *err)
@@ -56,6 +80,7 @@ an_status an_reducer_begin(an_reducer *reducer, const an_run *run, an_points *po
         AN_TRY(an_remark_list_add(&points->remarks, "apparatus-ideal", 0, err,
                                   "the frame's compliance is not given; the frame was taken as rigid"));
     AN_TRY(note_calibration(points, err));
+    AN_TRY(note_shape(points, err));
     return note_shear(points, err);
 }
 
@@ -63,9 +88,11 @@ an_status an_reducer_begin(an_reducer *reducer, const an_run *run, an_points *po
  * K' after the parallel elements below 0), and on the size of the modulus that the measured stiffness alone
  * would mean. */
 typedef struct votes {
-    int n, inverted, swapped, implausible;
-    double example_Pa; /* of the first implausible one */
-    int example;       /* its burst */
+    int n, inverted, swapped, implausible, strained;
+    double example_Pa;     /* of the first implausible one */
+    int example;           /* its burst */
+    double example_strain; /* of the first one strained too much */
+    int example_strained;  /* its burst */
 } votes;
 
 /* Size of the modulus without the apparatus: |K measured| over the form factor, which is |K_s| / |E|. */
@@ -106,6 +133,37 @@ static void vote(const an_point *p, const an_limits *l, votes *v)
     else if (lag < -3 * u)
         v->swapped++;
     vote_size(p, l, v);
+    if (p->state != AN_POINT_SKIPPED && p->strain > l->strain_most && !v->strained++) {
+        v->example_strain = p->strain;
+        v->example_strained = p->burst;
+    }
+}
+
+/* A unit that is none: below absolute zero, or so far from what was set that only another unit explains it. */
+static an_status judge_temperature_unit(const an_points *points, an_error *err)
+{
+    enum { FAR_K = 100 };
+    int n_below = 0, n_far = 0;
+    const an_point *below = NULL, *far = NULL;
+    for (int i = 0; i < points->n_point; i++) {
+        const an_point *p = &points->point[i];
+        if (p->temperature_K <= 0 && !n_below++)
+            below = p;
+        if (fabs(p->temperature_K - p->set_temperature_K) > FAR_K && !n_far++)
+            far = p;
+    }
+    if (2 * n_below > points->n_point)
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "burst %d: a temperature of %.1f °C is below absolute zero, and so in %d of %d bursts; check "
+                       "the unit of temperature in the layout",
+                       below->burst, below->temperature_K - 273.15, n_below, points->n_point);
+    if (2 * n_far > points->n_point)
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "burst %d: %.1f °C was measured where %.1f °C was set, more than %d K apart in %d of %d "
+                       "bursts; check the units of temperature in the layout",
+                       far->burst, far->temperature_K - 273.15, far->set_temperature_K - 273.15, FAR_K, n_far,
+                       points->n_point);
+    return AN_OK;
 }
 
 /* Skip the points of a stretch in which the temperature did not change by a bit. */
@@ -118,7 +176,8 @@ static an_status skip_frozen(an_points *points, int first, int last, double long
     for (int i = first; i <= last; i++) {
         an_point *p = &points->point[i];
         AN_TRY(an_remark_list_add(&p->remarks, "temperature-frozen", p->burst, err,
-                                  "the temperature stands at %.3f K for %.0f s", p->temperature_K, length));
+                                  "the temperature stands at %.2f °C for %.0f min without moving", p->temperature_K - 273.15,
+                                  length / 60));
         an_point_settle(p);
         ++*n_skipped;
     }
@@ -148,6 +207,33 @@ static const char *reason_of(const an_point *point)
     return "no reason stands with it";
 }
 
+/* What more than half of the bursts agree on refuses the run. */
+static an_status judge_votes(const votes *v, const an_limits *limits, an_error *err)
+{
+    if (v->n && 2 * v->inverted > v->n)
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "the phase is near 180 degrees in %d of %d bursts: one channel is inverted; "
+                       "correct its sign in the layout",
+                       v->inverted, v->n);
+    if (v->n && 2 * v->swapped > v->n)
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "the phase is negative in %d of %d bursts: force and displacement are swapped, "
+                       "or the channel delay has the wrong sign",
+                       v->swapped, v->n);
+    if (2 * v->implausible > v->n)
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "burst %d: a modulus of %.3g Pa is outside %.0e to %.0e Pa, and so in %d of %d "
+                       "bursts; check the units of force, displacement and dimensions",
+                       v->example, v->example_Pa, limits->modulus_least, limits->modulus_most, v->implausible,
+                       v->n);
+    if (2 * v->strained > v->n)
+        return an_fail(err, AN_E_SCIENCE, NULL,
+                       "burst %d: a strain amplitude of %.3g %% is above %.3g %%, and so in %d of %d bursts; "
+                       "check the unit of displacement and the dimensions",
+                       v->example_strained, 100 * v->example_strain, 100 * limits->strain_most, v->strained, v->n);
+    return AN_OK;
+}
+
 an_status an_points_judge(an_points *points, const an_procedure *procedure, an_error *err)
 {
     an_limits limits;
@@ -156,27 +242,13 @@ an_status an_points_judge(an_points *points, const an_procedure *procedure, an_e
     an_limits_read(&limits, procedure);
     for (int i = 0; i < points->n_point; i++)
         vote(&points->point[i], &limits, &v);
-    if (v.n && 2 * v.inverted > v.n)
-        return an_fail(err, AN_E_SCIENCE, NULL,
-                       "the phase is near 180 degrees in %d of %d bursts: one channel is inverted; "
-                       "correct its sign in the layout",
-                       v.inverted, v.n);
-    if (v.n && 2 * v.swapped > v.n)
-        return an_fail(err, AN_E_SCIENCE, NULL,
-                       "the phase is negative in %d of %d bursts: force and displacement are swapped, "
-                       "or the channel delay has the wrong sign",
-                       v.swapped, v.n);
-    if (2 * v.implausible > v.n)
-        return an_fail(err, AN_E_SCIENCE, NULL,
-                       "burst %d: a modulus of %.3g Pa is outside %.0e to %.0e Pa, and so in %d of %d "
-                       "bursts; check the units of force, displacement and dimensions",
-                       v.example, v.example_Pa, limits.modulus_least, limits.modulus_most, v.implausible,
-                       v.n);
+    AN_TRY(judge_votes(&v, &limits, err));
+    AN_TRY(judge_temperature_unit(points, err));
     AN_TRY(judge_temperature(points, limits.frozen_s, &n_skipped, err));
     for (int i = 0; i < points->n_point; i++)
         n_left += points->point[i].state != AN_POINT_SKIPPED;
     if (!n_left && points->n_point)
-        return an_fail(err, AN_E_SCIENCE, NULL, "none of %d bursts could be used; burst %d: %s",
-                       points->n_point, points->point[0].burst, reason_of(&points->point[0]));
+        return an_fail(err, AN_E_SCIENCE, NULL, "no burst of %d could be used; burst %d: %s", points->n_point,
+                       points->point[0].burst, reason_of(&points->point[0]));
     return n_skipped ? AN_DUBIOUS : AN_OK;
 }

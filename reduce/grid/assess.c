@@ -104,9 +104,10 @@ static void count_bursts(const an_points *points, int n_points, an_assessment *a
         }
 }
 
+/* Dropped, and not only because it stands in the dump a second time. */
 static int is_lost(const an_point *point)
 {
-    return point->state == AN_POINT_SKIPPED;
+    return point->state == AN_POINT_SKIPPED && !an_remark_list_has(&point->remarks, "duplicate-burst", -1);
 }
 
 /* Kept, but fitted around what the converter cut off. */
@@ -114,7 +115,7 @@ static int is_cut(const an_point *point)
 {
     for (size_t i = 0; i < point->remarks.n; i++)
         if (point->remarks.rows[i].severity == AN_FLAG && strcmp(point->remarks.rows[i].kind->code, "clipping") == 0)
-            return !is_lost(point);
+            return point->state != AN_POINT_SKIPPED;
     return 0;
 }
 

@@ -54,7 +54,7 @@ an_status an_model_set(an_model *m, const an_waveform *w, const an_sinefit_choic
     memset(m, 0, sizeof *m);
     m->n_used = span(w, &first, &last);
     if (m->n_used < 4 || !(last > first))
-        return an_fail(err, AN_E_VALUE, NULL, "sine fit: %d samples over %g s", m->n_used, last - first);
+        return an_fail(err, AN_E_VALUE, NULL, "only %d samples over %g s are left for the sine fit", m->n_used, last - first);
     double length = (last - first) * m->n_used / (m->n_used - 1);
     m->n_cycle = length * c->frequency_Hz;
     m->omega = 2 * M_PI * c->frequency_Hz;
@@ -69,7 +69,7 @@ an_status an_model_set(an_model *m, const an_waveform *w, const an_sinefit_choic
     m->rate[1] = 2.5 / length;
     m->n_column = 2 * m->n_harmonic + m->n_poly + m->n_decay;
     if (m->n_used < m->n_column + 2)
-        return an_fail(err, AN_E_VALUE, NULL, "sine fit: %d samples for %d unknowns", m->n_used,
+        return an_fail(err, AN_E_VALUE, NULL, "%d samples are too few for the %d unknowns of the sine fit", m->n_used,
                        m->n_column + 1);
     return AN_OK;
 }

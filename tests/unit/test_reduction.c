@@ -251,6 +251,74 @@ static void wrong_unit(void **state)
     assert_non_null(strstr(err.text, "check the units"));
 }
 
+/* Millimetres taken for metres: 10 um became 10 mm on a specimen 12.4 mm long, and the modulus a thousandth. */
+static void wrong_unit_of_displacement(void **state)
+{
+    bench *b = *state;
+    an_error err = {0};
+    for (int k = 1; k <= 6; k++) {
+        an_burst burst = make_burst(&b->run, k, 0.5 * k, &b->w, (unsigned long)k);
+        for (int i = 0; i < 512; i++)
+            samples(&burst.displacement)[i] *= 1e3;
+        expect(reduce(b, &burst), "strain-large", AN_POINT_FLAGGED);
+    }
+    assert_int_equal(an_points_judge(&b->points, &b->procedure, &err), AN_E_SCIENCE);
+    assert_non_null(strstr(err.text, "check the unit of displacement"));
+}
+
+/* A burst written twice is used once, whatever its number; a channel that was not connected is named. */
+static void repeated_and_still_bursts(void **state)
+{
+    bench *b = *state;
+    an_burst burst = make_burst(&b->run, 1, 2, &b->w, 1);
+    assert_int_equal(reduce(b, &burst)->state, AN_POINT_USED);
+    burst = make_burst(&b->run, 2, 2, &b->w, 2);
+    assert_int_equal(reduce(b, &burst)->state, AN_POINT_USED);
+    burst = make_burst(&b->run, 3, 2, &b->w, 1);
+    expect(reduce(b, &burst), "duplicate-burst", AN_POINT_SKIPPED);
+    burst = make_burst(&b->run, 4, 2, &b->w, 4);
+    for (int i = 0; i < 512; i++)
+        samples(&burst.force)[i] = 1.25;
+    const an_point *point = reduce(b, &burst);
+    expect(point, "no-signal", AN_POINT_SKIPPED);
+    assert_string_equal(point->remarks.rows[0].text, "force stands at 1.25 N in all 512 samples");
+    assert_true(fabs(point->temperature_K - 296.5) < 0.01); /* the technician is told which burst to measure again */
+}
+
+/* Thickness and width of a beam exchanged: the modulus would be off by the square of their ratio. */
+static void exchanged_dimensions(void **state)
+{
+    bench *b = *state;
+    an_geometry *g = &b->run.specimen.geometry;
+    g->kind = AN_CANTILEVER_GUIDED;
+    assert_int_equal(an_reducer_begin(b->reducer, &b->run, &b->points, NULL), AN_OK);
+    assert_false(an_remark_list_has(&b->points.remarks, "geometry-unusual", -1));
+    double thickness = g->thickness.value;
+    g->thickness.value = g->width.value;
+    g->width.value = thickness;
+    assert_int_equal(an_reducer_begin(b->reducer, &b->run, &b->points, NULL), AN_OK);
+    assert_true(an_remark_list_has(&b->points.remarks, "geometry-unusual", -1));
+}
+
+/* Kelvin taken for degrees Celsius shows where the set temperature is known; below absolute zero it always does. */
+static void wrong_unit_of_temperature(void **state)
+{
+    bench *b = *state;
+    an_error err = {0};
+    for (int k = 1; k <= 6; k++) {
+        an_burst burst = make_burst(&b->run, k, 1, &b->w, (unsigned long)k);
+        for (int i = 0; i < 512; i++)
+            samples(&burst.temperature)[i] += 273.15;
+        reduce(b, &burst);
+    }
+    assert_int_equal(an_points_judge(&b->points, &b->procedure, &err), AN_E_SCIENCE);
+    assert_non_null(strstr(err.text, "296.5 °C was measured where 23.0 °C was set"));
+    for (int i = 0; i < b->points.n_point; i++)
+        b->points.point[i].temperature_K -= 600;
+    assert_int_equal(an_points_judge(&b->points, &b->procedure, &err), AN_E_SCIENCE);
+    assert_non_null(strstr(err.text, "below absolute zero"));
+}
+
 static void frozen_thermometer(void **state)
 {
     bench *b = *state;
@@ -335,6 +403,10 @@ int main(void)
         TEST(inverted_channel),
         TEST(swapped_columns),
         TEST(wrong_unit),
+        TEST(wrong_unit_of_displacement),
+        TEST(repeated_and_still_bursts),
+        TEST(exchanged_dimensions),
+        TEST(wrong_unit_of_temperature),
         TEST(frozen_thermometer),
         TEST(document),
     };
