@@ -11,12 +11,13 @@
 
 #include "anelast/dense.h"
 #include "anelast/spectrum.h"
+#include "anelast/superpose.h"
 
 /* Points of the master curve as observations, E' and E'' of a burst correlated as their noise says. */
 typedef struct curve {
     an_observation *observation; /* [n] */
     size_t n;
-    double omega_range[2]; /* rad/s, reduced */
+    double omega_range[2]; /* rad/s, reduced, out to the last that know the modulus well */
 } curve;
 
 static void add_point(const an_master_point *point, curve *all)
@@ -32,8 +33,12 @@ static void add_point(const an_master_point *point, curve *all)
                            .correlation = point->noise[1] / (u_storage * u_loss)};
     all->observation[all->n++] = storage;
     all->observation[all->n++] = loss;
-    all->omega_range[0] = fmin(all->omega_range[0], point->reduced_omega);
-    all->omega_range[1] = fmax(all->omega_range[1], point->reduced_omega);
+}
+
+static void widen(double range[2], double omega)
+{
+    range[0] = fmin(range[0], omega);
+    range[1] = fmax(range[1], omega);
 }
 
 /* Points of an isotherm whose shift is not determined do not say where on the master curve they stand. */
@@ -49,12 +54,22 @@ static an_status gather(const an_master *master, curve *all, an_error *err)
     all->observation = calloc(2 * (size_t)master->n_point + 1, sizeof *all->observation);
     if (!all->observation)
         return an_fail_memory(err, "the observations of a spectrum");
-    for (int i = 0; i < master->n_point; i++)
-        if (stands_somewhere(master, &master->point[i]))
-            add_point(&master->point[i], all);
+    double widest[2] = {INFINITY, 0};
+    for (int i = 0; i < master->n_point; i++) {
+        const an_master_point *point = &master->point[i];
+        if (!stands_somewhere(master, point))
+            continue;
+        add_point(point, all);
+        widen(widest, point->reduced_omega);
+        if (an_modulus_is_sure(point->storage_Pa, point->loss_Pa, point->noise))
+            widen(all->omega_range, point->reduced_omega);
+    }
+    if (!(all->omega_range[0] < all->omega_range[1]))
+        memcpy(all->omega_range, widest, sizeof widest);
     if (all->n == 0)
-        return an_fail(err, AN_E_SCIENCE, "",
-                       "the master document holds no point that is not an outlier and whose shift is determined");
+        return an_fail(
+            err, AN_E_SCIENCE, "",
+            "the master document holds no point that is not an outlier and whose shift is determined");
     return AN_OK;
 }
 
@@ -250,13 +265,15 @@ static an_status fit_modes(const an_master *master, const an_spectrum_options *o
 {
     an_spectrum dense;
     an_prony prony;
+    double window_s[2];
     an_status status = AN_OK;
     an_spectrum_init(&dense);
     an_prony_init(&prony);
     AN_CLEAN(an_spectrum_dense(all->observation, all->n, options, &dense, err));
     AN_CLEAN(an_prony_fit(&dense.model, all->omega_range, options, &prony, err));
     AN_CLEAN(an_prony_uncertainty(all->observation, all->n, &prony, err));
-    AN_CLEAN(take_modes(&prony, dense.window_s, material, err));
+    an_spectrum_window(all->omega_range, window_s);
+    AN_CLEAN(take_modes(&prony, window_s, material, err));
     take_end_state(dense.end_state, material);
     AN_CLEAN(find_covariance(all, material, err));
     find_errors(master, material);

@@ -52,16 +52,29 @@ static an_status hand_out_spectrum(const an_joint *joint, an_superposition *resu
     return AN_OK;
 }
 
-/* Reduced frequencies that the data cover: those of isotherms whose shift is determined. */
+int an_modulus_is_sure(double storage_Pa, double loss_Pa, const double noise_Pa2[3])
+{
+    static const double sure = 0.01; /* the 1 % that the trade asks of the modulus */
+    return sqrt(noise_Pa2[0]) <= sure * hypot(storage_Pa, loss_Pa);
+}
+
+/* Reduced frequencies that the data cover: those of isotherms whose shift is determined, out to the last
+ * points that know the modulus well; where none does, to the last. */
 static void hand_out_range(const an_joint *joint, an_superposition *result)
 {
-    result->omega_range[0] = INFINITY;
-    result->omega_range[1] = 0;
-    for (size_t p = 0; p < joint->n_point; p++) {
-        if (!result->determined[joint->isotherm_of[p]])
-            continue;
-        result->omega_range[0] = fmin(result->omega_range[0], joint->omega[p]);
-        result->omega_range[1] = fmax(result->omega_range[1], joint->omega[p]);
+    for (int any = 0; any < 2; any++) {
+        result->omega_range[0] = INFINITY;
+        result->omega_range[1] = 0;
+        for (size_t p = 0; p < joint->n_point; p++) {
+            const an_superpose_point *point = &joint->input->point[p];
+            if (!result->determined[joint->isotherm_of[p]] ||
+                !(any || an_modulus_is_sure(point->storage_Pa, point->loss_Pa, point->noise)))
+                continue;
+            result->omega_range[0] = fmin(result->omega_range[0], joint->omega[p]);
+            result->omega_range[1] = fmax(result->omega_range[1], joint->omega[p]);
+        }
+        if (result->omega_range[0] < result->omega_range[1])
+            return;
     }
 }
 

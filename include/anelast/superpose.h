@@ -91,7 +91,7 @@ typedef struct an_superposition {
     char reason[320]; /* of the verdict, with the numbers */
     size_t n_point;
     double *residual;      /* [n_point][2] (measured - fitted)/u of E' and E'', owned */
-    double omega_range[2]; /* rad/s, least and greatest reduced frequency of determined isotherms */
+    double omega_range[2]; /* rad/s, least and greatest reduced frequency that the data cover */
 } an_superposition;
 
 /* an_superpose_defaults: what measurement and trade suggest; sources beside each value in superpose.c. */
@@ -108,6 +108,11 @@ void an_superposition_clear(an_superposition *result);
  * AN_E_SCIENCE naming the isotherms that cannot be joined; AN_E_NUMERIC; AN_E_MEMORY. */
 an_status an_superpose(const an_superpose_input *input, const an_superpose_options *options,
                        an_superposition *result, an_error *err);
+
+/* an_modulus_is_sure: whether a point knows the modulus within the 1 % that the trade asks: only such points
+ * widen the window. storage_Pa, loss_Pa [in] Pa noise_Pa2           [in] [3] Pa^2, variances and covariance:
+ * (E', E'), (E', E''), (E'', E'') Returns 1 or 0. */
+int an_modulus_is_sure(double storage_Pa, double loss_Pa, const double noise_Pa2[3]);
 
 /* What a pair of neighbours lacks for its area. */
 typedef enum an_area_lack { AN_LACKS_NOTHING = 0, AN_LACKS_OVERLAP, AN_LACKS_SLOPE } an_area_lack;
