@@ -7,10 +7,11 @@
 #define ANELAST_REPORT_PAGE_H
 
 #include "anelast/figure.h"
+#include "anelast/quantity.h"
 #include "anelast/report.h"
 #include "fit/report/markup.h"
 
-#define ZERO_CELSIUS_K 273.15 /* [K] */
+#define ZERO_CELSIUS_K AN_ZERO_CELSIUS_K /* [K] */
 #define PAGE_COVERAGE  2.0    /* [1] coverage factor of bars and bands, about 95 % */
 #define PAGE_BARS      "k = 2" /* what the bars are, in hover texts */
 

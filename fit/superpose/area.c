@@ -4,6 +4,8 @@
  * refused by name. */
 #include "anelast/superpose.h"
 
+#include "anelast/quantity.h"
+
 #include <math.h>
 #include <stdio.h>
 
@@ -190,9 +192,9 @@ an_status an_area_between(const an_superpose_input *input, size_t i_cold, an_ver
     }
     if (shift->lack != AN_LACKS_NOTHING)
         return an_fail(err, AN_E_SCIENCE, NULL,
-                       "isotherms %.2f K and %.2f K cannot be joined: no %s in storage modulus, loss modulus "
-                       "or loss factor",
-                       c->temperature_K, w->temperature_K,
+                       "isotherms %.1f °C and %.1f °C cannot be joined: no %s in storage modulus, loss modulus "
+                       "or loss factor; use smaller temperature steps or a wider range of frequencies",
+                       c->temperature_K - AN_ZERO_CELSIUS_K, w->temperature_K - AN_ZERO_CELSIUS_K,
                        shift->lack == AN_LACKS_SLOPE ? "slope" : "overlap");
     shift->log10_b = scale_between(&cold, &warm, shift->log10_a);
     return AN_OK;

@@ -2,6 +2,8 @@
  * Stage: superpose. Methods stand in the files that this one calls. */
 #include "fit/superpose/master_make.h"
 
+#include "anelast/quantity.h"
+
 #include <math.h>
 #include <stdlib.h>
 #include <stdio.h>
@@ -223,8 +225,8 @@ static an_status remark_shifts(const making *m, an_master *master, an_error *err
         const an_shift *s = &master->shift[i];
         if (!s->determined)
             AN_TRY(an_remark_list_add(&master->remarks, "shift-undetermined", 0, err,
-                                      "the shift at %.2f K is uncertain by %.2g decades (noise part)",
-                                      s->temperature_K, s->u_noise_log10_aT));
+                                      "the shift at %.1f °C is uncertain by %.2g decades (noise part)",
+                                      s->temperature_K - AN_ZERO_CELSIUS_K, s->u_noise_log10_aT));
         most = fmax(most, fabs(pow(10, s->log10_bT) - 1));
     }
     if (master->vertical == AN_VERTICAL_FREE && most > limit)
@@ -244,16 +246,17 @@ static an_status remark_gaps(const making *m, an_master *master, an_error *err)
         an_area_between(input, i, m->result.vertical, &shift, NULL);
         if (shift.lack == AN_LACKS_SLOPE)
             AN_TRY(an_remark_list_add(&master->remarks, "shift-undetermined", 0, err,
-                                      "isotherms at %.2f K and %.2f K run flat within their noise; the shift "
+                                      "isotherms at %.1f and %.1f °C run flat within their noise; the shift "
                                       "between them rests on the joint fit alone",
-                                      input->isotherm[i].temperature_K,
-                                      input->isotherm[i + 1].temperature_K));
+                                      input->isotherm[i].temperature_K - AN_ZERO_CELSIUS_K,
+                                      input->isotherm[i + 1].temperature_K - AN_ZERO_CELSIUS_K));
         if (shift.lack != AN_LACKS_NOTHING || shift.gap_decades < worth_saying)
             continue;
         AN_TRY(an_remark_list_add(
             &master->remarks, "gap-bridged", 0, err,
-            "isotherms at %.2f K and %.2f K do not meet; the spectrum bridges about %.2g decades",
-            input->isotherm[i].temperature_K, input->isotherm[i + 1].temperature_K, shift.gap_decades));
+            "isotherms at %.1f and %.1f °C do not meet; the spectrum bridges about %.2g decades",
+            input->isotherm[i].temperature_K - AN_ZERO_CELSIUS_K,
+            input->isotherm[i + 1].temperature_K - AN_ZERO_CELSIUS_K, shift.gap_decades));
     }
     return AN_OK;
 }
@@ -265,8 +268,8 @@ static an_status remark_law(an_status fitted, an_master *master, an_error *err)
                                   "no law follows the shift factors within their uncertainty"));
     for (int i = 0; i < master->n_trial; i++)
         if (master->trial[i].chosen && master->trial[i].law.kind == AN_LAW_CROSSOVER)
-            AN_TRY(an_remark_list_add(&master->remarks, "crossover", 0, err, "the law changes at %.2f K",
-                                      master->trial[i].law.constant[2]));
+            AN_TRY(an_remark_list_add(&master->remarks, "crossover", 0, err, "the law changes at %.1f °C",
+                                      master->trial[i].law.constant[2] - AN_ZERO_CELSIUS_K));
     return AN_OK;
 }
 

@@ -3,6 +3,8 @@
  * neighbours for free vertical shifts. Range: inside the isotherms. */
 #include "fit/superpose/master_make.h"
 
+#include "anelast/quantity.h"
+
 #include <math.h>
 #include <stdio.h>
 
@@ -84,12 +86,13 @@ an_status an_superposition_move(const an_superpose_input *input, const an_move *
     double by[2], variance[2];
     if (temperature_K < low_K || temperature_K > high_K)
         return an_fail(err, AN_E_SCIENCE, NULL,
-                       "reference temperature %.2f K, where %.2f to %.2f K is measured", temperature_K, low_K,
-                       high_K);
+                       "reference temperature %.1f °C (%.2f K), where %.1f to %.1f °C is measured",
+                       temperature_K - AN_ZERO_CELSIUS_K, temperature_K, low_K - AN_ZERO_CELSIUS_K,
+                       high_K - AN_ZERO_CELSIUS_K);
     if (!chosen)
         return an_fail(err, AN_E_SCIENCE, NULL,
-                       "reference temperature %.2f K is no isotherm's, and no law leads there",
-                       temperature_K);
+                       "reference temperature %.1f °C is no isotherm's, and no law leads there",
+                       temperature_K - AN_ZERO_CELSIUS_K);
     AN_TRY(an_law_log10_aT(&chosen->law, temperature_K, AN_RANGE_MARK, &by[0], err));
     double u = an_law_u_log10_aT(&chosen->law, temperature_K);
     variance[0] = isfinite(u) ? u * u : 0;

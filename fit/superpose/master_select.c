@@ -3,6 +3,8 @@
  */
 #include "fit/superpose/master_make.h"
 
+#include "anelast/quantity.h"
+
 #include <math.h>
 #include <stdlib.h>
 
@@ -90,7 +92,8 @@ an_status an_selection_make(const an_grid *grid, an_selection *selection, an_rem
             add_isotherm(selection, grid, i);
         else
             AN_TRY(an_remark_list_add(remarks, "isotherm-left-out", 0, err,
-                                      "the isotherm at %.2f K is left out: %s", isotherm->temperature_K,
+                                      "the isotherm at %.1f °C is left out: %s",
+                                      isotherm->temperature_K - AN_ZERO_CELSIUS_K,
                                       empty     ? "no cell of it can be used"
                                       : cooling ? "it was reached by heating, most others by cooling"
                                                 : "it was reached by cooling, most others by heating"));

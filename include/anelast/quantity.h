@@ -11,6 +11,9 @@
 #include <stdbool.h>
 #include <stddef.h>
 
+/* Zero of the Celsius scale [K], exact by definition. Documents hold kelvin; what people read says degrees Celsius. */
+#define AN_ZERO_CELSIUS_K 273.15
+
 /* A value and its standard uncertainty, k = 1, both in the SI unit that its holder states. */
 typedef struct an_measure {
     double value; /* [SI unit of the quantity]; NAN where not given */

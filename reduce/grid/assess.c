@@ -76,7 +76,7 @@ static void say_tallies(tally *tallies, int n, an_severity severity, an_assessme
             return;
         const an_remark *remark = most->first;
         if (most->n > 1 && remark->burst > 0)
-            say(assessment, "%d bursts, the first %ld: %s. %s", most->n, remark->burst, remark->text,
+            say(assessment, "%d bursts, such as burst %ld: %s. %s", most->n, remark->burst, remark->text,
                 remark->kind->action);
         else if (remark->burst > 0)
             say(assessment, "burst %ld: %s. %s", remark->burst, remark->text, remark->kind->action);
@@ -188,7 +188,7 @@ static void say_missing(const an_grid *grid, an_assessment *assessment)
             first = first < 0 ? i : first;
         }
     if (n_short > 0)
-        say(assessment, "%d of %d isotherms lack frequencies, the first at %.1f °C with %d of %d", n_short,
+        say(assessment, "%d of %d isotherms without all frequencies, the first at %.1f °C with %d of %d", n_short,
             grid->n_isotherm, degc(grid->isotherm[first].temperature_K), grid->isotherm[first].n_cell, most);
 }
 

@@ -4,6 +4,8 @@
  */
 #include "reduce/grid/average.h"
 
+#include "anelast/quantity.h"
+
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -71,9 +73,9 @@ static an_status check_drift(const an_member *member, int n, double limit, an_ce
             continue;
         AN_TRY(an_remark_list_add(
             &cell->remarks, "drift-check", member[i + m - 1].point->burst, err,
-            "at %.4g Hz and %.2f K burst %d reads %+.1f %% against burst %d; up to %.3g %% is allowed",
-            cell->frequency_Hz, cell->temperature_K, member[i + m - 1].point->burst, 100 * expm1(drift),
-            member[i].point->burst, 100 * limit));
+            "at %.4g Hz and %.1f °C burst %d reads %+.1f %% against burst %d; up to %.3g %% is allowed",
+            cell->frequency_Hz, cell->temperature_K - AN_ZERO_CELSIUS_K, member[i + m - 1].point->burst,
+            100 * expm1(drift), member[i].point->burst, 100 * limit));
     }
     return AN_OK;
 }

@@ -1,6 +1,8 @@
 /* grid.c: points documents to a grid, in order: isotherms, cells, outliers, readings, assessment. */
 #include "reduce/grid/parts.h"
 
+#include "anelast/quantity.h"
+
 #include <math.h>
 #include <stdlib.h>
 #include <stdio.h>
@@ -98,14 +100,15 @@ static an_status remark_motion(double rate_limit_K_s, an_grid *grid, an_error *e
         if (!isotherm->steady)
             AN_TRY(
                 an_remark_list_add(&grid->remarks, "temperature-unsteady", 0, err,
-                                   "the isotherm at %.2f K moves by %+.2f K/min; up to %.2g K/min is steady",
-                                   isotherm->temperature_K, 60 * isotherm->rate_K_s, 60 * rate_limit_K_s));
+                                   "the isotherm at %.1f °C moves by %+.2f K/min; up to %.2g K/min is steady",
+                                   isotherm->temperature_K - AN_ZERO_CELSIUS_K, 60 * isotherm->rate_K_s, 60 * rate_limit_K_s));
     }
     if (grid->n_ramp > 0)
         AN_TRY(an_remark_list_add(
             &grid->remarks, "temperature-ramp", 0, err,
-            "%d bursts from %.2f to %.2f K were taken while the temperature was passing through",
-            grid->n_ramp, grid->ramp[0].temperature_K, grid->ramp[grid->n_ramp - 1].temperature_K));
+            "%d bursts from %.1f to %.1f °C were taken while the temperature was passing through",
+            grid->n_ramp, grid->ramp[0].temperature_K - AN_ZERO_CELSIUS_K,
+            grid->ramp[grid->n_ramp - 1].temperature_K - AN_ZERO_CELSIUS_K));
     return AN_OK;
 }
 
@@ -124,11 +127,23 @@ static an_status sort_in(const an_points *points, int n_points, const an_procedu
     return an_outliers_mark(grid, err);
 }
 
+/* A run counted twice would make scatter and noise look smaller than they are. */
+static an_status check_runs(const an_points *points, int n_points, an_error *err)
+{
+    for (int i = 0; i < n_points; i++)
+        for (int k = 0; k < i; k++)
+            if (points[i].id[0] && strcmp(points[i].id, points[k].id) == 0)
+                return an_fail(err, AN_E_SCIENCE, points[i].id,
+                               "two of the points documents are of this run; replicates are different runs");
+    return AN_OK;
+}
+
 an_status an_grid_make(const an_points *points, int n_points, const an_procedure *procedure, an_grid *grid,
                        an_error *err)
 {
     if (n_points < 1)
         return an_fail(err, AN_E_USAGE, NULL, "a grid of no points document");
+    AN_TRY(check_runs(points, n_points, err));
     AN_TRY(carry_head(points, n_points, grid, err));
     AN_TRY(sort_in(points, n_points, procedure, grid, err));
     AN_TRY(an_readings_make(fmax(grid->apparatus.temperature_bias.u, 0), grid, err));

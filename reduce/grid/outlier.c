@@ -12,6 +12,8 @@
  */
 #include "reduce/grid/parts.h"
 
+#include "anelast/quantity.h"
+
 #include <math.h>
 #include <stdlib.h>
 
@@ -146,12 +148,12 @@ static an_status mark(an_cell *cell, int i_quantity, double by, an_error *err)
     cell->outlier = 1;
     if (i_quantity == 0)
         return an_remark_list_add(&cell->remarks, "outlier", cell->burst, err,
-                                  "at %.4g Hz and %.2f K |E*| lies %+.1f %% off the curve of its isotherm",
-                                  cell->frequency_Hz, cell->temperature_K, 100 * expm1(by));
+                                  "at %.4g Hz and %.1f °C |E*| lies %+.1f %% off the curve of its isotherm",
+                                  cell->frequency_Hz, cell->temperature_K - AN_ZERO_CELSIUS_K, 100 * expm1(by));
     return an_remark_list_add(
         &cell->remarks, "outlier", cell->burst, err,
-        "at %.4g Hz and %.2f K the phase lies %+.2f degrees off the curve of its isotherm",
-        cell->frequency_Hz, cell->temperature_K, by * 180 / M_PI);
+        "at %.4g Hz and %.1f °C the phase lies %+.2f degrees off the curve of its isotherm",
+        cell->frequency_Hz, cell->temperature_K - AN_ZERO_CELSIUS_K, by * 180 / M_PI);
 }
 
 static void judge_cell(judged *curve, int i, const an_cell *cell)

@@ -8,6 +8,8 @@
  */
 #include "reduce/grid/average.h"
 
+#include "anelast/quantity.h"
+
 #include <math.h>
 
 /* A difference beyond this is a clamp that let go rather than a material that changed (common practice). [1]
@@ -96,9 +98,9 @@ static an_status compare(const returning *pair, double limit, an_grid *grid, an_
     const an_point *point = last->point;
     return an_remark_list_add(
         &grid->remarks, fabs(expm1(most)) > slip_limit ? "clamp-slip" : "drift-check", point->burst, err,
-        "back at %.2f K and %.4g Hz burst %d reads %+.1f %% against burst %d; up to %.3g %% is allowed",
-        point->temperature_K, point->frequency_Hz, point->burst, 100 * expm1(most), first->point->burst,
-        100 * limit);
+        "back at %.1f °C and %.4g Hz burst %d reads %+.1f %% against burst %d; up to %.3g %% is allowed",
+        point->temperature_K - AN_ZERO_CELSIUS_K, point->frequency_Hz, point->burst, 100 * expm1(most),
+        first->point->burst, 100 * limit);
 }
 
 an_status an_returns_check(const an_gathering *gathering, const an_cell_rules *rules, an_grid *grid,

@@ -58,6 +58,8 @@ expect_code 0 "procedure" "$bin/anelast-grid" one/points.xml --procedure wide.xm
 grep -q 'name="isotherm_width" value="2.5"' wide.grid.xml || fail "the choice in force is not recorded"
 [ "$(grep -c '<isotherm ' wide.grid.xml)" -lt 12 ] || fail "a width of 2.5 K joins no neighbours"
 
+expect_code 1 "a run twice" "$bin/anelast-grid" one/points.xml two/points.xml one/points.xml --output none.xml
+grep -q 'two of the points documents are of this run' err.txt || fail "message: $(cat err.txt)"
 expect_code 3 "no such file" "$bin/anelast-grid" absent.xml --output none.xml
 expect_code 1 "another document" "$bin/anelast-grid" grid.xml --output none.xml
 grep -q '^anelast-grid: grid.xml:' err.txt || fail "message: $(cat err.txt)"

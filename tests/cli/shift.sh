@@ -63,7 +63,7 @@ grep -q '<remark code="complex" severity="hold"' complex.master.xml || fail "rem
 # Refusals: exit code, message, nothing left behind.
 choose far.xml reference_temperature 500 K
 expect_code 1 "reference out of range" "$bin/anelast-shift" simple/grid.xml --procedure far.xml --output none.xml
-grep -q 'reference temperature 500.00 K, where' err.txt || fail "message: $(cat err.txt)"
+grep -q 'reference temperature 226.9 °C (500.00 K), where' err.txt || fail "message: $(cat err.txt)"
 choose wrong.xml vertical sideways
 expect_code 1 "no such word" "$bin/anelast-shift" simple/grid.xml --procedure wrong.xml --output none.xml
 expect_code 3 "no such file" "$bin/anelast-shift" absent.xml --output none.xml
