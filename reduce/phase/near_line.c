@@ -14,6 +14,8 @@
 /* Bins each side, and the band that counts as near, in times the frequency. Common practice: half an octave
  * below to more than an octave above, wide enough for some 20 degrees of freedom in seven cycles. */
 enum { BINS_EACH_SIDE = 10 };
+/* A side of fewer bins can come out near zero by chance, and would take the geometric mean with it. */
+enum { LEAST_BINS_A_SIDE = 3 };
 static const double BAND_LOW = 0.45, BAND_HIGH = 2.3;
 
 /* Sums of one probing sine against model, slope and residuals. Both its phases, cosine and sine. */
@@ -103,10 +105,13 @@ void an_noise_near_line(const an_model *m, const an_waveform *w, const an_soluti
     probe probes[2 * BINS_EACH_SIDE];
     double omega[2 * BINS_EACH_SIDE];
     side below = {0}, above = {0};
-    int n = 0;
+    int n = 0, n_below = 0;
     for (int bin = -BINS_EACH_SIDE; bin <= BINS_EACH_SIDE; bin++)
-        if (bin_free(m, bin))
+        if (bin_free(m, bin)) {
             omega[n++] = m->omega * (1 + bin / m->n_cycle);
+            n_below += bin < 0;
+        }
+    int both = n_below >= LEAST_BINS_A_SIDE && n - n_below >= LEAST_BINS_A_SIDE;
     memset(probes, 0, sizeof probes);
     probe_all(probes, omega, n, m, w, s, residual);
     for (int k = 0; k < n; k++)
@@ -116,7 +121,6 @@ void an_noise_near_line(const an_model *m, const an_waveform *w, const an_soluti
         double low = below.power[c] / below.expected[c], high = above.power[c] / above.expected[c];
         double pooled = (below.power[c] + above.power[c]) / (below.expected[c] + above.expected[c]);
         near->level[c] = n > 0 ? sqrt(pooled) : NAN;
-        near->balanced[c] =
-            below.expected[c] > 0 && above.expected[c] > 0 ? sqrt(sqrt(low * high)) : near->level[c];
+        near->balanced[c] = both ? sqrt(sqrt(low * high)) : near->level[c];
     }
 }

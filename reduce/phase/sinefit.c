@@ -14,6 +14,9 @@
 /* Chance, each side, of replacing the residual's deviation by the level near the line although the noise is
  * white. */
 static const double COLOUR_RISK = 0.005;
+/* A level below the white one is believed from this many degrees of freedom on, some six cycles: in fewer it
+ * comes about by chance, where the start-up is cut until little is left near the line. */
+enum { LEAST_FREEDOM_BELOW = 16 };
 
 void an_sinefit_choice_init(an_sinefit_choice *choice)
 {
@@ -95,7 +98,8 @@ static void choose_level(const an_sinefit_choice *choice, const an_near_line *ne
         } else if (near->freedom > 0 && fit->deviation[c] > 0) {
             double ratio = near->level[c] / fit->deviation[c];
             fit->excess[c] = gsl_cdf_chisq_Q(near->freedom * ratio * ratio, near->freedom);
-            if (fit->excess[c] < COLOUR_RISK || fit->excess[c] > 1 - COLOUR_RISK)
+            int lower = fit->excess[c] > 1 - COLOUR_RISK && near->freedom >= LEAST_FREEDOM_BELOW;
+            if (fit->excess[c] < COLOUR_RISK || lower)
                 fit->level[c] = near->balanced[c];
         }
     }
