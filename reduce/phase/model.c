@@ -63,8 +63,9 @@ an_status an_model_set(an_model *m, const an_waveform *w, const an_sinefit_choic
     m->start = first;
     m->n_harmonic = harmonics_allowed(m->n_used / m->n_cycle, c->n_harmonic);
     m->n_poly = c->drift_degree + 1;
-    /* Below 4 cycles a slow decay can't be told from the drift; the fast one, half a cycle, always can. */
-    m->n_decay = m->n_cycle < 4 && c->n_decay > 1 ? 1 : c->n_decay;
+    /* Below 4 cycles a slow decay can't be told from the drift; the fast one, half a cycle, always can. A record of
+     * 4 cycles is one whatever the last digits of its frequency say. */
+    m->n_decay = m->n_cycle < 3.95 && c->n_decay > 1 ? 1 : c->n_decay;
     m->rate[0] = 2 * c->frequency_Hz;
     m->rate[1] = 2.5 / length;
     m->n_column = 2 * m->n_harmonic + m->n_poly + m->n_decay;

@@ -11,9 +11,10 @@
 #include <stdlib.h>
 #include <string.h>
 
-/* Chance, each side, of replacing the residual's deviation by the level near the line although the noise is
- * white. */
-static const double COLOUR_RISK = 0.005;
+/* Chance of replacing the residual's deviation by the level near the line although the noise is white: by a
+ * greater level, and by a smaller one. A level that chance alone made small would claim too much, twice over
+ * where one side of the line has few bins, so that much less of it is allowed. */
+static const double COLOUR_RISK = 0.005, CALM_RISK = 1e-5;
 /* A level below the white one is believed from this many degrees of freedom on, some six cycles: in fewer it
  * comes about by chance, where the start-up is cut until little is left near the line. */
 enum { LEAST_FREEDOM_BELOW = 16 };
@@ -98,9 +99,12 @@ static void choose_level(const an_sinefit_choice *choice, const an_near_line *ne
         } else if (near->freedom > 0 && fit->deviation[c] > 0) {
             double ratio = near->level[c] / fit->deviation[c];
             fit->excess[c] = gsl_cdf_chisq_Q(near->freedom * ratio * ratio, near->freedom);
-            int lower = fit->excess[c] > 1 - COLOUR_RISK && near->freedom >= LEAST_FREEDOM_BELOW;
-            if (fit->excess[c] < COLOUR_RISK || lower)
+            int calm = near->freedom >= LEAST_FREEDOM_BELOW &&
+                       gsl_cdf_chisq_P(near->freedom * ratio * ratio, near->freedom) < CALM_RISK;
+            if (fit->excess[c] < COLOUR_RISK)
                 fit->level[c] = near->balanced[c];
+            else if (calm)
+                fit->level[c] = fmax(near->balanced[c], near->level[c]);
         }
     }
 }
