@@ -51,6 +51,8 @@ static const an_remark_kind table[] = {
     /* ---- specimen and apparatus ---- */
     {"geometry-disagrees", AN_HOLD, "<dimension> is <value> in the dump and <value> in the document",
      "Measure the specimen again, and correct the one that is wrong."},
+    {"specimen-disagrees", AN_HOLD, "the dump is of specimen <id>, the specimen document of <id>",
+     "Give the document of the specimen that was clamped, or correct the one that is wrong."},
     {"geometry-stale", AN_HOLD, "the dimensions are those of the last <n> specimens",
      "Measure this specimen's own dimensions."},
     {"geometry-unusual", AN_HOLD, "the specimen is <dimension> long and <dimension> thick",
@@ -145,7 +147,8 @@ static const an_remark_kind table[] = {
     /* ---- superposition and spectrum ---- */
     {"no-overlap", AN_HOLD, "isotherms at <value> K and <value> K share no range",
      "Use smaller temperature steps."},
-    {"gap-bridged", AN_FLAG, "isotherms at <value> K and <value> K do not meet; the spectrum bridges <value> decades",
+    {"gap-bridged", AN_FLAG,
+     "isotherms at <value> K and <value> K do not meet; the spectrum bridges <value> decades",
      "Use smaller temperature steps or a wider range of frequencies there."},
     {"isotherm-left-out", AN_NOTE, "the isotherm at <value> K is left out: <reason>",
      "Superpose heating and cooling apart; measure again what could not be used."},

@@ -277,7 +277,13 @@ static void merge_dimension(const dimension *row, an_measure *base, const an_mea
 void an_specimen_merge(an_specimen *base, const an_specimen *over, an_remark_list *remarks)
 {
     for (int i = 0; i < N_LABELS; i++) {
-        const char *text = (const char *)over + labels[i].offset;
+        const char *text = (const char *)over + labels[i].offset,
+                   *own = (const char *)base + labels[i].offset;
+        if (text[0] && own[0] && strcmp(text, own) != 0 && strcmp(labels[i].name, "id") == 0)
+            an_remark_list_add(
+                remarks, "specimen-disagrees", 0, NULL,
+                "the dump is of specimen '%s', the specimen document of '%s'; the document is used", own,
+                text);
         if (text[0])
             memcpy((char *)base + labels[i].offset, text, labels[i].size);
     }
@@ -319,6 +325,20 @@ static int count_missing(const an_geometry *geometry, const char *names, size_t 
     return n_missing;
 }
 
+/* The words of a rule as a sentence has them: "length width|length area" as "length and width, or length and
+ * area". */
+static void spell_rule(const char *rule, char *text, size_t n_text)
+{
+    size_t used = 0;
+    text[0] = '\0';
+    for (; *rule && used + 8 < n_text; rule++)
+        used += (size_t)snprintf(text + used, n_text - used,
+                                 *rule == ' '   ? " and "
+                                 : *rule == '|' ? ", or "
+                                                : "%c",
+                                 *rule);
+}
+
 static an_status check_needed(const an_specimen *specimen, an_error *err)
 {
     const char *rule = needed[specimen->geometry.kind];
@@ -335,8 +355,10 @@ static an_status check_needed(const an_specimen *specimen, an_error *err)
         }
         at += length + (at[length] == '|');
     }
-    return an_fail(err, AN_E_VALUE, NULL, "specimen: %s is not given; %s needs one of: %s",
-                   missing ? missing->name : "a dimension", an_geometry_word(specimen->geometry.kind), rule);
+    char spelt[400];
+    spell_rule(rule, spelt, sizeof spelt);
+    return an_fail(err, AN_E_VALUE, NULL, "specimen: %s is not given; %s needs %s",
+                   missing ? missing->name : "a dimension", an_geometry_word(specimen->geometry.kind), spelt);
 }
 
 an_status an_specimen_check(const an_specimen *specimen, an_error *err)

@@ -63,7 +63,7 @@ static bool check_root(an_reader *r, const char *name, const char *uri)
         return false;
     }
     if (wanted && strcmp(wanted, name) != 0) {
-        an_reader_refuse(r, AN_E_DOCUMENT, "the document is a '%s'; wanted is a '%s'", name, wanted);
+        an_reader_refuse(r, AN_E_DOCUMENT, "the document is of the kind '%s'; wanted is '%s'", name, wanted);
         return false;
     }
     return true;
@@ -169,6 +169,7 @@ static int on_read(void *context, char *buffer, int n)
     }
     if (an_sha256_add(r->hash, buffer, got) < 0)
         return -1;
+    r->n_byte += got;
     return (int)got;
 }
 
@@ -206,6 +207,12 @@ static void check_parse(an_reader *r)
     if (r->parser->wellFormed && r->document->root && !r->open)
         return;
     const xmlError *error = xmlCtxtGetLastError(r->parser);
+    if (error && error->code == XML_ERR_DOCUMENT_EMPTY && r->n_byte == 0) {
+        r->status = an_fail(r->err, AN_E_DOCUMENT, r->document->file,
+                            r->stream == stdin ? "empty: the program before it in the pipe made no document"
+                                               : "empty: no document");
+        return;
+    }
     char place[512], text[600] = "it is not complete";
     if (error && error->message)
         an_reader_tidy(error->message, text, sizeof text);

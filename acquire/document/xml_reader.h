@@ -22,6 +22,7 @@ typedef struct an_reader {
     xmlSchemaSAXPlugStruct *plug;
     bool begun;           /* the root's start tag was seen */
     int depth;            /* open elements of our namespace */
+    size_t n_byte;        /* read so far */
     int n_started;        /* open elements of any namespace, as the schema counts them */
     int foreign;          /* open elements of another namespace, and all in them */
     an_xml_node *open;    /* the innermost open element */

@@ -93,10 +93,10 @@ static an_status make_time_from_column(an_rows *rows, an_burst *burst, const siz
         burst->has_time = 1;
         burst->clock.count = (long)n;
         if (status >= 0 && n > 2)
-            status = an_remark_list_add(
-                &burst->remarks, "clock-jitter", burst->n, err,
-                "the sampling times are uneven: no fixed interval fits them to their last digit; they are kept "
-                "as they are");
+            status = an_remark_list_add(&burst->remarks, "clock-jitter", burst->n, err,
+                                        "the sampling times are uneven: no fixed interval fits them to their "
+                                        "last digit; they are kept "
+                                        "as they are");
     }
     free(time);
     return status;
@@ -139,6 +139,19 @@ static an_status make_time(an_rows *rows, an_burst *burst, size_t n, an_error *e
     }
     free(index);
     return status;
+}
+
+/* A set value that changes within a burst: what parts the bursts is not what the layout says. */
+static an_status check_set(const an_channel_in *in, an_burst *burst, an_error *err)
+{
+    for (size_t i = 1; in->channel && i < in->column.n; i++)
+        if (an_channel_si(in, i) != an_channel_si(in, 0))
+            return an_remark_list_add_as(
+                &burst->remarks, "burst-unclear", AN_SKIP, burst->n, err,
+                "the set frequency changes within the burst, at sample %zu: the layout's step "
+                "column does not part the bursts",
+                i + 1);
+    return AN_OK;
 }
 
 /* What the step columns and headers say of the burst. */
@@ -196,6 +209,7 @@ an_status an_burst_make(an_rows *rows, an_burst *burst, an_error *err)
         return AN_OK;
     AN_TRY(drop_gaps(rows, burst, err));
     set_facts(rows, burst);
+    AN_TRY(check_set(&rows->in[AN_ROLE_SET_FREQUENCY], burst, err));
     AN_TRY(make_time(rows, burst, rows->n - rows->n_missing, err));
     return make_signals(rows, burst, err);
 }

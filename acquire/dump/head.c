@@ -165,6 +165,10 @@ static an_status set_field(an_head *head, const an_layout_field *field, an_cell 
         return an_fail(err, AN_E_LIMIT, NULL, "'%.*s': the value is longer than %zu bytes", shown(key.n),
                        key.text, sizeof text - 1);
     snprintf(text, sizeof text, "%.*s", (int)value.n, value.text);
+    for (size_t i = 0; i < value.n; i++)
+        if ((unsigned char)text[i] < 0x20 && text[i] != '\t')
+            return an_fail(err, AN_E_VALUE, NULL, "'%.*s': a control character stands in the value",
+                           shown(key.n), key.text);
     if (strcmp(field->name, "geometry") == 0)
         return set_geometry(head, field, text, err);
     if (strcmp(field->name, "started") == 0)
@@ -178,11 +182,15 @@ static an_status set_field(an_head *head, const an_layout_field *field, an_cell 
     return AN_OK;
 }
 
+enum { UNMAPPED_SHOWN = 5 };
+
 static void note_unmapped(an_head *head, an_cell key, long line)
 {
     size_t used = strlen(head->unmapped);
     if (head->n_unmapped++ == 0)
         head->first_line = line;
+    if (head->n_unmapped > UNMAPPED_SHOWN)
+        return;
     snprintf(head->unmapped + used, sizeof head->unmapped - used, "%s'%.*s' (line %ld)", used ? ", " : "",
              shown(key.n), key.text, line);
 }
@@ -244,6 +252,11 @@ an_status an_head_finish(const an_head *head, const char *path, an_error *err)
     if (head->n_unmapped == 0)
         return AN_OK;
     snprintf(place, sizeof place, "%.480s:%ld", path, head->first_line);
+    int n_more = head->n_unmapped - UNMAPPED_SHOWN;
+    if (n_more <= 0)
+        return an_fail(err, AN_E_FORMAT, place,
+                       "the layout maps no key %s; map it in <head>, or list it as ignored", head->unmapped);
     return an_fail(err, AN_E_FORMAT, place,
-                   "the layout maps no key %s; map it in <head>, or list it as ignored", head->unmapped);
+                   "the layout maps no key %s and %d more; is this dump of another layout?", head->unmapped,
+                   n_more);
 }

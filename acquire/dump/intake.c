@@ -7,9 +7,11 @@
 #include "anelast/dump.h"
 #include "anelast/output.h"
 
+#include <errno.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
+#include <sys/stat.h>
 
 typedef struct intake_state {
     const an_intake *intake;
@@ -57,6 +59,22 @@ static an_status add_file(an_made *made, const char *role, const char *path, an_
     return an_made_add_input(made, role, path, sha256, err);
 }
 
+/* A dump is read twice, once for its hash: it has to be a file. */
+static an_status check_dump(const char *path, an_error *err)
+{
+    struct stat about;
+    if (strcmp(path, "-") == 0)
+        return an_fail(err, AN_E_USAGE, NULL, "a dump cannot come from standard input: name its file");
+    if (stat(path, &about) != 0)
+        return an_fail(err, AN_E_IO, path, "cannot be opened: %s", strerror(errno));
+    if (S_ISDIR(about.st_mode))
+        return an_fail(err, AN_E_IO, path, "cannot be read: it is a folder, no dump");
+    if (!S_ISREG(about.st_mode))
+        return an_fail(err, AN_E_IO, path,
+                       "cannot be read: it is a pipe or a device; a dump has to be a file");
+    return AN_OK;
+}
+
 /* Read the written documents, and name all inputs. */
 static an_status read_inputs(intake_state *state, an_error *err)
 {
@@ -64,6 +82,7 @@ static an_status read_inputs(intake_state *state, an_error *err)
     an_made *made = &state->run.made;
     char sha256[AN_SHA256_SIZE];
     AN_TRY(an_made_init(made, "anelast-intake", err));
+    AN_TRY(check_dump(intake->dump, err));
     AN_TRY(an_layout_load(intake->layout, &state->layout, err));
     AN_TRY(add_file(made, "dump", intake->dump, err));
     if (intake->sidecar)

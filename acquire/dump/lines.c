@@ -230,8 +230,10 @@ static an_status read_mark(an_lines *lines, an_error *err)
     if (lines->encoding >= AN_ENCODING_UTF16 && lines->encoding <= AN_ENCODING_UTF16BE)
         AN_TRY(choose_utf16(lines, mark, n, &skip, err));
     else if (utf16)
-        return an_fail(err, AN_E_FORMAT, lines->path,
-                       "a mark of UTF-16 stands at its beginning; check the encoding");
+        return an_fail(
+            err, AN_E_FORMAT, lines->path,
+            "a mark of UTF-16 stands at its beginning, and the layout names another encoding; it can be "
+            "'UTF-16'");
     else if (n == 3 && memcmp(mark, "\xef\xbb\xbf", 3) == 0 && lines->encoding == AN_ENCODING_UTF8) {
         skip = 3;
         lines->mark = "UTF-8";

@@ -36,6 +36,8 @@ typedef struct text_reader {
     char step[96];      /* text of the step of the burst that is being read */
     char last_cell[48]; /* last field of the row before, to know a number that was cut */
     bool cut;           /* the file ends within a row */
+    long uneven_line;   /* of the first row with another number of fields than the header; 0: none */
+    int n_uneven;       /* fields of that row */
 } text_reader;
 
 static an_status place_error(const text_reader *reader, an_error *err)
@@ -193,6 +195,14 @@ static an_status look_for_step(text_reader *reader, const an_cell *cells, an_err
     return AN_OK;
 }
 
+static an_status refuse_uneven_row(const text_reader *reader, const char *hint, an_error *err)
+{
+    char place[512];
+    snprintf(place, sizeof place, "%.480s:%ld", reader->source->path, reader->uneven_line);
+    return an_fail(err, AN_E_FORMAT, place, "%d field%s where the header row names %d columns%s",
+                   reader->n_uneven, reader->n_uneven == 1 ? "" : "s", reader->header.n, hint);
+}
+
 /* Is a row that nothing ends, at the end of the file, whole? Its last number has as many digits behind the
  * mark, or, where there is none, as many in all, as the one above it. */
 static bool is_cut(const text_reader *reader, an_cell last)
@@ -206,6 +216,20 @@ static bool is_cut(const text_reader *reader, an_cell last)
     return !here || last.n - (size_t)(here - last.text) < decimals_before;
 }
 
+/* A short row that begins like a sample may be where the dump was cut off, which shows only when nothing
+ * follows. */
+static an_status note_uneven_row(text_reader *reader, const an_cell *cells, int n_cells, an_error *err)
+{
+    double number;
+    bool sample = an_number_parse(cells[0].text, cells[0].n, reader->layout->text.decimal_mark, &number);
+    reader->uneven_line = reader->line;
+    reader->n_uneven = n_cells;
+    if (sample && n_cells < reader->header.n)
+        return AN_OK;
+    return refuse_uneven_row(reader, sample ? "" : "; where a footer begins, the layout's 'footer' can say",
+                             err);
+}
+
 static an_status read_row(text_reader *reader, const an_line *line, const an_cell *cells, int n_cells,
                           an_error *err)
 {
@@ -216,8 +240,7 @@ static an_status read_row(text_reader *reader, const an_line *line, const an_cel
         return AN_OK;
     }
     if (n_cells != header->n && !spare)
-        return an_fail(err, AN_E_FORMAT, NULL, "%d fields where the header row names %d columns", n_cells,
-                       header->n);
+        return note_uneven_row(reader, cells, n_cells, err);
     AN_TRY(hand_head(reader, err));
     if (reader->layout->bursts_from == AN_BURSTS_STEP)
         AN_TRY(look_for_step(reader, cells, err));
@@ -311,6 +334,8 @@ static an_status read_line(text_reader *reader, const an_line *line, an_error *e
     reader->line = line->number;
     if (reader->where == BEHIND_FOOTER || an_cell_trim(line->text, line->n).n == 0)
         return AN_OK;
+    if (reader->uneven_line)
+        return refuse_uneven_row(reader, "", err);
     if (starts_with(line, reader->layout->text.comment))
         return read_comment(reader, line, err);
     if (is_block_mark(reader, line, &step))
@@ -326,14 +351,19 @@ static an_status read_line(text_reader *reader, const an_line *line, an_error *e
 static an_status refuse_headless(const text_reader *reader, an_error *err)
 {
     char names[400] = "";
+    if (reader->line == 0)
+        return an_fail(err, AN_E_FORMAT, reader->source->path, "the dump is empty");
     for (int i = 0; i < reader->layout->n_channel; i++) {
         const an_layout_channel *channel = &reader->layout->channels[i];
         size_t used = strlen(names);
         if (channel->columns.n)
             snprintf(names + used, sizeof names - used, "%s'%s'", used ? ", " : "", channel->columns.text[0]);
     }
-    return an_fail(err, AN_E_FORMAT, reader->source->path,
-                   "no row names the columns %s; check the layout's encoding, separator and columns", names);
+    return an_fail(
+        err, AN_E_FORMAT, reader->source->path,
+        "no row names the columns %s; check the layout's encoding, separator and columns, and whether "
+        "the dump is whole",
+        names);
 }
 
 /* The end of the file: is the last burst whole? */
@@ -342,6 +372,7 @@ static an_status end_dump(text_reader *reader, an_error *err)
     an_rows *rows = &reader->rows;
     if (reader->header.n == 0)
         return refuse_headless(reader, err);
+    reader->cut = reader->cut || reader->uneven_line;
     bool block_cut = reader->where == IN_BLOCK || reader->where == BELOW_HEADER;
     bool cut = reader->cut || block_cut || an_rows_last_is_short(rows);
     rows->truncated = cut;

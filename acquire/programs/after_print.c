@@ -4,6 +4,7 @@
  */
 #include "acquire/programs/after_run.h"
 
+#include "anelast/quantity.h"
 #include "anelast/xml.h"
 
 #include <math.h>
@@ -11,7 +12,9 @@
 #include <stdlib.h>
 #include <string.h>
 
-enum { COLUMNS = 100, INDENT = 14, TEXT = 2048 };
+/* HEAD_ID: columns of the run's name before the verdict. LINES: in all. TOP: head, bursts, correction, two of
+ * glass. */
+enum { COLUMNS = 100, INDENT = 14, TEXT = 2048, HEAD_ID = 64, LINES = 14, TOP = 5 };
 
 /* Bytes of the text that fit into some columns, cut at a blank where there is one. */
 static size_t fitting(const char *text, int n_column)
@@ -113,7 +116,7 @@ static void add_reading(const an_xml_node *reading, char *text)
         double part = number_of(reading, "temperature", parts[i]);
         u = hypot(u, isnan(part) ? 0 : part);
     }
-    append(text, "; ", "%s %.1f °C (u %.2g K)", text_of(reading, "kind"), temperature - 273.15, u);
+    append(text, "; ", "%s %.1f °C (u %.2g K)", text_of(reading, "kind"), temperature - AN_ZERO_CELSIUS_K, u);
 }
 
 static void print_glass(const an_xml_node *grid, FILE *out)
@@ -136,23 +139,61 @@ static void print_glass(const an_xml_node *grid, FILE *out)
 
 static const char before_unclamping[] = "before unclamping, ";
 
-/* Reasons, and apart from them what to do while the specimen is still in the clamps. */
-static void print_why(const an_xml_node *assessment, FILE *out)
+static int columns_of(const char *text)
 {
-    char why[TEXT] = "", redo[TEXT] = "";
+    int n = 0;
+    for (; *text; text++)
+        n += ((unsigned char)*text & 0xc0) != 0x80;
+    return n;
+}
+
+/* A reason with what to do about it, and without: where not all fits, what happened goes before what to do.
+ */
+static void append_reason(const char *reason, char *why, char *brief)
+{
+    const char *action = strstr(reason, ". ");
+    append(why, " | ", "%s", reason);
+    append(brief, " | ", "%.*s", action ? (int)(action - reason) : (int)strlen(reason), reason);
+}
+
+/* Reasons, and apart from them what to do while the specimen is still in the clamps; n_line lines for both.
+ */
+static void print_why(const an_xml_node *assessment, int n_line, FILE *out)
+{
+    char why[TEXT] = "", brief[TEXT] = "", redo[TEXT] = "";
     size_t n = sizeof before_unclamping - 1;
     for (const an_xml_node *reason = an_xml_child(assessment, "reason"); reason;
          reason = an_xml_next(reason, "reason"))
         if (strncmp(reason->text, before_unclamping, n) == 0)
             append(redo, "; ", "%s", reason->text + n);
         else
-            append(why, " | ", "%s", reason->text);
-    put_block(out, "why", 2, why[0] ? why : "nothing was noticed that speaks against it");
+            append_reason(reason->text, why, brief);
+    int n_redo = redo[0] ? 1 + (redo[fitting(redo, COLUMNS - INDENT)] != '\0') : 0;
+    if (columns_of(why) >
+        (n_line - n_redo) * (COLUMNS - INDENT - 8)) /* some columns are lost at every break */
+        memcpy(why, brief, sizeof why);
+    put_block(out, "why", n_line - n_redo, why[0] ? why : "nothing was noticed that speaks against it");
     if (redo[0])
-        put_block(out, "redo now", 2, redo);
+        put_block(out, "redo now", n_redo, redo);
 }
 
-static an_status print_grid(const an_xml_node *grid, FILE *out, an_error *err)
+/* The temperatures covered: a unit that is wrong is seen here first. */
+static void add_range(const an_xml_node *grid, char *text)
+{
+    double least = INFINITY, most = -INFINITY;
+    for (const an_xml_node *isotherm = an_xml_child(grid, "isotherm"); isotherm;
+         isotherm = an_xml_next(isotherm, "isotherm")) {
+        double temperature = number_of(isotherm, "temperature", "value");
+        least = fmin(least, temperature);
+        most = fmax(most, temperature);
+    }
+    if (most > least)
+        append(text, "", " from %.1f to %.1f °C", least - AN_ZERO_CELSIUS_K, most - AN_ZERO_CELSIUS_K);
+    else if (most == least)
+        append(text, "", " at %.1f °C", most - AN_ZERO_CELSIUS_K);
+}
+
+static an_status print_grid(const an_xml_node *grid, int n_why, FILE *out, an_error *err)
 {
     const an_xml_node *assessment;
     AN_TRY(an_xml_need(grid, "assessment", &assessment, err));
@@ -161,8 +202,9 @@ static an_status print_grid(const an_xml_node *grid, FILE *out, an_error *err)
     size_t n = an_xml_count_children(grid, "isotherm");
     append(text, "", "%s used, %s flagged, %s skipped; %zu isotherm%s", text_of(assessment, "used"),
            text_of(assessment, "flagged"), text_of(assessment, "skipped"), n, n == 1 ? "" : "s");
+    add_range(grid, text);
     put_block(out, "bursts", 1, text);
-    print_why(assessment, out);
+    print_why(assessment, n_why, out);
     put_block(out, "correction", 1, largest ? largest->text : "none");
     print_glass(grid, out);
     return AN_OK;
@@ -184,15 +226,32 @@ static an_status print_master(const an_after_run *run, FILE *out, an_error *err)
     char text[TEXT] = "";
     AN_TRY(read_document(run, "master.xml", &document, err));
     const an_xml_node *superposition = an_xml_child(document.root, "superposition");
+    const char *reason = text_of(superposition, "reason"), *numbers = strstr(reason, ": ");
+    double separation = number_of(superposition, "separation", "value") * 180 / M_PI;
     append(text, "", "%s (reduced chi-square %.3g", text_of(superposition, "verdict"),
            number_of(superposition, "reduced_chi_square", "value"));
-    if (isfinite(number_of(superposition, "separation", "value")))
-        append(text, "", ", isotherms %.2g° apart in phase",
-               number_of(superposition, "separation", "value") * 180 / M_PI);
-    append(text, "", "): %s", text_of(superposition, "reason"));
+    if (separation > 0)
+        append(text, "", ", isotherms %.2g° apart in phase", separation);
+    else if (separation == 0)
+        append(text, "", ", phases of isotherms alike within noise");
+    append(text, "", "): %.*s", numbers ? (int)(numbers - reason) : (int)strlen(reason), reason);
     put_block(out, "superposes", 2, text);
     an_xml_document_clear(&document);
     return AN_OK;
+}
+
+/* Laws of two or three men go by their letters. */
+static const char *law_phrase(const char *kind)
+{
+    static const char *const phrases[][2] = {{"wlf", "WLF law"},
+                                             {"vft", "VFT law"},
+                                             {"arrhenius", "Arrhenius law"},
+                                             {"crossover", "WLF and Arrhenius laws"},
+                                             {"polynomial", "polynomial law"}};
+    for (size_t i = 0; i < sizeof phrases / sizeof phrases[0]; i++)
+        if (strcmp(kind, phrases[i][0]) == 0)
+            return phrases[i][1];
+    return kind;
 }
 
 static an_status print_material(const an_after_run *run, FILE *out, an_error *err)
@@ -203,13 +262,14 @@ static an_status print_material(const an_after_run *run, FILE *out, an_error *er
     const an_xml_node *spectrum = an_xml_child(document.root, "spectrum"),
                       *valid = an_xml_child(document.root, "valid");
     const an_xml_node *law = an_xml_child(document.root, "law");
-    append(text, "", "%zu modes at %.1f °C, law %s, for %.2g to %.2g s and %.1f to %.1f °C",
+    append(text, "", "%zu modes at %.1f °C, %s, for %.2g to %.2g s and %.1f to %.1f °C",
            an_xml_count_children(spectrum, "mode"),
-           number_of(spectrum, "reference_temperature", "value") - 273.15,
-           law ? text_of(law, "kind") : "none", number_of(valid, "time_from", "value"),
-           number_of(valid, "time_to", "value"), number_of(valid, "temperature_from", "value") - 273.15,
-           number_of(valid, "temperature_to", "value") - 273.15);
-    put_block(out, "material", 1, text);
+           number_of(spectrum, "reference_temperature", "value") - AN_ZERO_CELSIUS_K,
+           law ? law_phrase(text_of(law, "kind")) : "no shift law", number_of(valid, "time_from", "value"),
+           number_of(valid, "time_to", "value"),
+           number_of(valid, "temperature_from", "value") - AN_ZERO_CELSIUS_K,
+           number_of(valid, "temperature_to", "value") - AN_ZERO_CELSIUS_K);
+    put_block(out, "material", 2, text);
     an_xml_document_clear(&document);
     return AN_OK;
 }
@@ -220,22 +280,26 @@ static an_status print_fit(const an_after_run *run, FILE *out, an_error *err)
     if (run->stopped_at[0]) {
         char text[TEXT] = "";
         append(text, "", "no master curve: %s", run->reason);
-        put_block(out, "superposes", 2, text);
+        put_block(out, "superposes", 3, text);
         return AN_OK;
     }
     AN_TRY(print_master(run, out, err));
     if (!run->no_material[0])
         return print_material(run, out, err);
     char text[TEXT] = "";
-    append(text, "", "none: %s", run->no_material);
-    put_block(out, "material", 1, text);
+    /* the verdict's own numbers, in brackets there, stand above already */
+    const char *from = strstr(run->no_material, " ("), *to = from ? strstr(from, "): ") : NULL;
+    append(text, "", "none: %.*s%s", to ? (int)(from - run->no_material) : (int)strlen(run->no_material),
+           run->no_material, to ? to + 1 : "");
+    put_block(out, "material", 2, text);
     return AN_OK;
 }
 
 static void print_head(const an_after_run *run, const char *verdict, FILE *out)
 {
     char text[TEXT] = "";
-    append(text, "", "%s: %s", run->id, verdict);
+    size_t n = fitting(run->id, HEAD_ID);
+    append(text, "", "%.*s%s: %s", (int)n, run->id, run->id[n] ? "..." : "", verdict);
     if (run->about[0])
         append(text, "", " (%s)", run->about);
     put_plain(out, text, fitting(text, COLUMNS));
@@ -278,6 +342,30 @@ static void print_other(const an_after_run *run, FILE *out)
     print_place(run, out);
 }
 
+/* What stands below the grid's lines, so that these can have the room it leaves; to be freed. */
+static an_status print_below(const an_after_run *run, char **text, an_error *err)
+{
+    size_t n;
+    FILE *out = open_memstream(text, &n);
+    if (!out)
+        return an_fail_memory(err, "the summary");
+    an_status status = print_fit(run, out, err);
+    print_place(run, out);
+    if (fclose(out) == 0 && status >= 0)
+        return AN_OK;
+    free(*text);
+    *text = NULL;
+    return status < 0 ? status : an_fail_memory(err, "the summary");
+}
+
+static int count_lines(const char *text)
+{
+    int n = 0;
+    for (; *text; text++)
+        n += *text == '\n';
+    return n;
+}
+
 an_status an_after_run_print(const an_after_run *run, FILE *out, an_error *err)
 {
     an_xml_document grid = {0};
@@ -291,14 +379,16 @@ an_status an_after_run_print(const an_after_run *run, FILE *out, an_error *err)
         print_place(run, out);
         return AN_OK;
     }
+    char *below = NULL;
+    AN_TRY(print_below(run, &below, err));
     an_status status = read_document(run, "grid.xml", &grid, err);
     if (status >= 0) {
         print_head(run, text_of(an_xml_child(grid.root, "assessment"), "verdict"), out);
-        status = print_grid(grid.root, out, err);
+        status = print_grid(grid.root, LINES - TOP - count_lines(below), out, err);
     }
     an_xml_document_clear(&grid);
-    AN_TRY(status);
-    AN_TRY(print_fit(run, out, err));
-    print_place(run, out);
-    return AN_OK;
+    if (status >= 0)
+        fputs(below, out);
+    free(below);
+    return status;
 }

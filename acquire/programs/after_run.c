@@ -103,13 +103,14 @@ static an_status take_in(job *one, an_error *err)
     const an_after_options *options = one->options;
     const an_after_run *run = one->run;
     char output[PATH_MAX + 64];
-    const char *arguments[ARGUMENTS + 1] = {"anelast-intake", one->dump};
+    const char *arguments[ARGUMENTS + 1] = {"anelast-intake"};
     an_stage_end end;
     path_in(one, "run.xml", output, sizeof output);
     add(arguments, "--layout", options->layout ? options->layout : run->layout);
     add(arguments, "--specimen", options->specimen ? options->specimen : run->specimen);
     add(arguments, "--apparatus", options->apparatus ? options->apparatus : run->apparatus);
     add(arguments, "--output", output);
+    add(arguments, "--", one->dump); /* its name may begin with a dash */
     AN_TRY(run_stage(one, arguments, &end, err));
     if (end.exit_code != 0)
         return refuse(&end, err);

@@ -84,6 +84,10 @@ int main(int argc, char **argv)
     an_after_options options = {an_argument(&arguments, "layout"),    an_argument(&arguments, "specimen"),
                                 an_argument(&arguments, "apparatus"), an_argument(&arguments, "procedure"),
                                 an_argument(&arguments, "override"),  into ? into : "."};
+    if (!options.into[0]) {
+        an_fail(&err, AN_E_USAGE, NULL, "--into names no folder");
+        return an_program_refuse(&program, &err);
+    }
     int worst = 0;
     for (int i = 0; i < arguments.n_files; i++) {
         int exit_code = reduce_one(programs, arguments.files[i], &options, arguments.quiet);

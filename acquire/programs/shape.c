@@ -45,15 +45,26 @@ static const an_option *option_row(const an_program *program, size_t i)
 
 /* ---- printing ---- */
 
+/* Messages quote dumps, documents and names of files: no control character of theirs reaches the terminal. */
+static void put_plain(FILE *out, const char *text)
+{
+    for (const unsigned char *at = (const unsigned char *)text; *at; at++)
+        fputc((*at < 0x20 && *at != '\n') || *at == 0x7f ? '?' : *at, out);
+}
+
 void an_program_say(const an_program *program, const char *place, const char *format, ...)
 {
+    char text[2048];
     va_list args;
     fprintf(stderr, "%s: ", program->name);
-    if (place && *place)
-        fprintf(stderr, "%s: ", place);
+    if (place && *place) {
+        put_plain(stderr, place);
+        fputs(": ", stderr);
+    }
     va_start(args, format);
-    vfprintf(stderr, format, args);
+    vsnprintf(text, sizeof text, format, args);
     va_end(args);
+    put_plain(stderr, text);
     fputc('\n', stderr);
 }
 
@@ -267,10 +278,10 @@ bool an_program_begin(const an_program *program, int argc, char **argv, an_argum
     if (program->takes & AN_TAKES_PROCEDURE && !take_procedure(program, arguments))
         return false;
     if (arguments->n_files < program->files_least)
-        return refuse_usage(program, arguments, "%d operand%s; at least %d needed: %s", arguments->n_files,
+        return refuse_usage(program, arguments, "%d file%s named; at least %d wanted: %s", arguments->n_files,
                             arguments->n_files == 1 ? "" : "s", program->files_least, program->operands);
     if (program->files_most >= 0 && arguments->n_files > program->files_most)
-        return refuse_usage(program, arguments, "'%s' is one operand too many",
+        return refuse_usage(program, arguments, "'%s' is one file too many",
                             arguments->files[program->files_most]);
     return true;
 }

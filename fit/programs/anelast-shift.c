@@ -9,7 +9,8 @@ static const char *const about[] = {
     "Shifts all isotherms of a grid together with one non-negative Maxwell spectrum, so that E*(omega, T) = "
     "b_T E*(omega a_T, "
     "T0), and gives every shift factor with its uncertainty, noise and common parts apart.",
-    "Says whether one shift a temperature brings the isotherms together at all (simple, doubtful, complex), "
+    "Says whether one shift per temperature brings the isotherms together at all (simple, doubtful, "
+    "complex), "
     "with the numbers "
     "that say so, fits laws to the shift factors and chooses one by an information criterion.",
     NULL};

@@ -40,9 +40,9 @@ static void fill_residuals(const an_joint *joint, double floor, an_superposition
 
 static void describe(const an_superpose_options *o, an_superposition *r)
 {
-    static const char *const lead[] = {"one shift a temperature brings all isotherms together",
-                                       "one shift a temperature brings the isotherms together only roughly",
-                                       "no single shift a temperature brings the isotherms together"};
+    static const char *const lead[] = {"one shift per temperature brings all isotherms together",
+                                       "one shift per temperature brings the isotherms together only roughly",
+                                       "no single shift per temperature brings the isotherms together"};
     snprintf(r->reason, sizeof r->reason,
              "%s: reduced chi-square %.3g (%.3g with a model floor of %.2g %%; limits %g, %g), isotherms "
              "%.2f degrees apart in phase angle at equal |E*| (limits %g, %g)",

@@ -1,5 +1,5 @@
-/* anelast/points.h: the points document: the complex modulus of every burst, its quality and its uncertainty, noise and
- * common parts apart. Written by anelast-phase.
+/* anelast/points.h: the points document: the complex modulus of every burst, its quality and its uncertainty,
+ * noise and common parts apart. Written by anelast-phase.
  *
  *   <points version="1.0" id="...">  made, specimen, apparatus, remark (of the run), then for every burst
  *     <point burst="1" state="used|flagged|skipped"> ... </point>
@@ -13,7 +13,8 @@
 #include "anelast/remark.h"
 #include "anelast/specimen.h"
 
-/* Sources of common uncertainty: one unknown each for the whole run, so that each shifts all points of a run together. */
+/* Sources of common uncertainty: one unknown each for the whole run, so that each shifts all points of a run
+ * together. */
 typedef enum an_source {
     AN_SOURCE_LENGTH = 0,
     AN_SOURCE_WIDTH,
@@ -22,15 +23,15 @@ typedef enum an_source {
     AN_SOURCE_HEIGHT,
     AN_SOURCE_AREA,
     AN_SOURCE_ADDED_LENGTH,
-    AN_SOURCE_SHEAR_TERM,    /* Poisson ratio or E/G */
-    AN_SOURCE_CONSTRAINT,    /* shape factor and bulk modulus of a bonded block */
+    AN_SOURCE_SHEAR_TERM, /* Poisson ratio or E/G */
+    AN_SOURCE_CONSTRAINT, /* shape factor and bulk modulus of a bonded block */
     AN_SOURCE_FORCE_GAIN,
     AN_SOURCE_DISPLACEMENT_GAIN,
-    AN_SOURCE_DELAY,         /* of one channel against the other */
+    AN_SOURCE_DELAY, /* of one channel against the other */
     AN_SOURCE_MOVING_MASS,
     AN_SOURCE_SHAFT,
     AN_SOURCE_COMPLIANCE,
-    AN_SOURCE_TRANSDUCER,    /* its stiffness and the fixture's mass, force at the fixed end */
+    AN_SOURCE_TRANSDUCER, /* its stiffness and the fixture's mass, force at the fixed end */
     AN_SOURCE_COUNT
 } an_source;
 
@@ -47,7 +48,9 @@ typedef enum an_rung {
     AN_RUNG_COUNT
 } an_rung;
 
+/* an_rung_word: the word of a rung in documents. an_rung_phrase: what it corrects, in words for people. */
 const char *an_rung_word(an_rung rung);
+const char *an_rung_phrase(an_rung rung);
 
 typedef enum an_point_state { AN_POINT_USED = 0, AN_POINT_FLAGGED, AN_POINT_SKIPPED } an_point_state;
 
@@ -55,31 +58,31 @@ typedef enum an_point_state { AN_POINT_USED = 0, AN_POINT_FLAGGED, AN_POINT_SKIP
 typedef struct an_point {
     int burst, step;
     an_point_state state;
-    double start_s;               /* [s] since the run's start */
-    double temperature_K;         /* [K] mean over the samples kept, bias taken off */
-    double u_temperature_K;       /* [K] noise part, standard */
-    double temperature_rate_K_s;  /* [K/s] */
-    double set_temperature_K;     /* [K] NAN: not said */
-    double frequency_Hz;          /* [Hz] found */
-    double u_frequency_Hz;        /* [Hz] */
-    double set_frequency_Hz;      /* [Hz] NAN: not said */
-    int n_sample;                 /* kept */
-    double n_cycle;               /* kept */
-    double n_cycle_dropped;       /* of the start-up */
-    double displacement_m;        /* [m] amplitude, zero to peak */
-    double force_N;               /* [N] amplitude */
-    double static_force_N;        /* [N] mean */
-    double strain;                /* [1] amplitude */
-    double static_strain;         /* [1] mean displacement over the geometry's length */
-    double measured_stiffness[2]; /* [N/m] K', K'' as the channels say */
-    double specimen_stiffness[2]; /* [N/m] K_s', K_s'' after the ladder */
-    double rung[AN_RUNG_COUNT][2];/* [1] (change of K', change of K'') / |K| before the rung */
-    double stiffness_compliance;  /* [1] |K_s| C */
-    double storage_Pa, loss_Pa;   /* [Pa] E', E'' (G', G'' for a shear geometry) */
-    double noise[3];              /* [Pa2] var E', cov(E', E''), var E'': independent from burst to burst */
+    double start_s;                /* [s] since the run's start */
+    double temperature_K;          /* [K] mean over the samples kept, bias taken off */
+    double u_temperature_K;        /* [K] noise part, standard */
+    double temperature_rate_K_s;   /* [K/s] */
+    double set_temperature_K;      /* [K] NAN: not said */
+    double frequency_Hz;           /* [Hz] found */
+    double u_frequency_Hz;         /* [Hz] */
+    double set_frequency_Hz;       /* [Hz] NAN: not said */
+    int n_sample;                  /* kept */
+    double n_cycle;                /* kept */
+    double n_cycle_dropped;        /* of the start-up */
+    double displacement_m;         /* [m] amplitude, zero to peak */
+    double force_N;                /* [N] amplitude */
+    double static_force_N;         /* [N] mean */
+    double strain;                 /* [1] amplitude */
+    double static_strain;          /* [1] mean displacement over the geometry's length */
+    double measured_stiffness[2];  /* [N/m] K', K'' as the channels say */
+    double specimen_stiffness[2];  /* [N/m] K_s', K_s'' after the ladder */
+    double rung[AN_RUNG_COUNT][2]; /* [1] (change of K', change of K'') / |K| before the rung */
+    double stiffness_compliance;   /* [1] |K_s| C */
+    double storage_Pa, loss_Pa;    /* [Pa] E', E'' (G', G'' for a shear geometry) */
+    double noise[3];               /* [Pa2] var E', cov(E', E''), var E'': independent from burst to burst */
     double common[AN_SOURCE_COUNT][2]; /* [Pa] (dE', dE'') for one standard uncertainty of the source */
-    double snr_dB;                /* [dB] the worse channel */
-    double harmonic[2];           /* [1] I2/I1, I3/I1 of force, the drive's own share taken off */
+    double snr_dB;                     /* [dB] the worse channel */
+    double harmonic[2];                /* [1] I2/I1, I3/I1 of force, the drive's own share taken off */
     an_remark_list remarks;
 } an_point;
 

@@ -14,7 +14,7 @@
 #include "anelast/maxwell.h"
 #include "anelast/smooth.h"
 
-/* Does one shift a temperature bring all isotherms together? */
+/* Does one shift per temperature bring all isotherms together? */
 typedef enum an_simplicity { AN_SIMPLE = 0, AN_DOUBTFUL, AN_COMPLEX } an_simplicity;
 
 /* The law of b_T: 1; T/T0 (rubber elasticity, the density taken as constant); one free factor an isotherm. */

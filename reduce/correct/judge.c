@@ -67,7 +67,8 @@ static an_status judge_still(an_reduction *r, an_error *err)
         while (i < r->samples.n && y[i] == y[0])
             i++;
         if (i == r->samples.n)
-            REMARK(r, "no-signal", "%s stands at %.4g %s in all %d samples", CHANNEL[c], y[0], unit_of(r, c), i);
+            REMARK(r, "no-signal", "%s stands at %.4g %s in all %d samples", CHANNEL[c], y[0], unit_of(r, c),
+                   i);
     }
     return AN_OK;
 }
@@ -106,7 +107,8 @@ an_status an_judge_clipping(an_reduction *r, an_error *err)
                    CHANNEL[c], clipped, r->clipping.n_run[c]);
         else if (clipped)
             REMARK_AS(r, "clipping", AN_NOTE,
-                      "%s: %d single samples at the converter's end were left out of the fit", CHANNEL[c], clipped);
+                      "%s: %d single samples at the converter's end were left out of the fit", CHANNEL[c],
+                      clipped);
     }
     return AN_OK;
 }
@@ -151,17 +153,20 @@ static an_status judge_linearity(an_reduction *r, an_error *err)
     double second = q->harmonic[0], third = q->harmonic[1], sure = 3 * q->u_harmonic;
     int slack = second - sure > l->second_flag;
     if (third - sure > l->third_flag)
-        REMARK(r, "nonlinear", "I3/I1 %.2f %%, limit %.2f %%", 100 * third, 100 * l->third_flag);
+        REMARK(r, "nonlinear", "the third harmonic of force is %.2f %% of the first, limit %.2f %%",
+               100 * third, 100 * l->third_flag);
     else if (third - sure > l->third_note)
-        REMARK(r, "third-harmonic", "I3/I1 %.2f %%", 100 * third);
+        REMARK(r, "third-harmonic", "the third harmonic of force is %.2f %% of the first", 100 * third);
     if (slack)
-        REMARK(r, "even-harmonics", "I2/I1 %.2f %%, limit %.2f %%", 100 * second, 100 * l->second_flag);
+        REMARK(r, "even-harmonics", "the second harmonic of force is %.2f %% of the first, limit %.2f %%",
+               100 * second, 100 * l->second_flag);
     if (!q->n_cycle_reversed || an_geometry_is_shear(r->chain.geometry.kind) ||
         r->chain.geometry.kind == AN_COMPRESSION_BONDED)
         return AN_OK;
     if (slack)
-        REMARK(r, "slack", "force changes sign in %d of %d cycles, and I2/I1 is %.2f %%", q->n_cycle_reversed,
-               q->n_cycle, 100 * second);
+        REMARK(r, "slack",
+               "force changes sign in %d of %d cycles, and its second harmonic is %.2f %% of the first",
+               q->n_cycle_reversed, q->n_cycle, 100 * second);
     else
         REMARK(r, "preload-sign", "force changes sign in %d of %d cycles (mean %.3g N, amplitude %.3g N)",
                q->n_cycle_reversed, q->n_cycle, r->fit.mean[AN_FORCE], r->point->force_N);
@@ -172,7 +177,8 @@ static an_status judge_frequency(an_reduction *r, an_error *err)
 {
     double set = r->burst->set_frequency_Hz, off = fabs(r->fit.frequency_Hz / set - 1);
     if (!r->startup.settled)
-        REMARK(r, "not-settled", "no two successive cycles agree, or the start-up still shows beside the sine");
+        REMARK(r, "not-settled",
+               "no two successive cycles agree, or the start-up still shows beside the sine");
     if (r->startup.n_kept < r->limits->startup.least_cycles - 0.02)
         REMARK(r, "few-cycles", "%.1f cycles, at least %d wanted", r->startup.n_kept,
                r->limits->startup.least_cycles);
@@ -180,8 +186,8 @@ static an_status judge_frequency(an_reduction *r, an_error *err)
         REMARK(r, "few-samples", "%.1f samples in a cycle, at least %.0f wanted",
                r->fit.n_used / r->fit.n_cycle, r->limits->samples_flag);
     if (off > r->limits->frequency_skip)
-        REMARK(r, "frequency-wrong", "found %.6g Hz, set %.6g Hz, more than %.3g %% apart", r->fit.frequency_Hz, set,
-               100 * r->limits->frequency_skip);
+        REMARK(r, "frequency-wrong", "found %.6g Hz, set %.6g Hz, more than %.3g %% apart",
+               r->fit.frequency_Hz, set, 100 * r->limits->frequency_skip);
     else if (off > r->limits->frequency_flag)
         REMARK(r, "frequency-off", "found %.6g Hz, set %.6g Hz; the found one was used", r->fit.frequency_Hz,
                set);
@@ -223,8 +229,8 @@ static an_status judge_modulus(an_reduction *r, an_error *err)
         REMARK_AS(r, "negative-loss", AN_FLAG, "E'' is %.3g Pa, zero within its uncertainty", p->loss_Pa);
     for (int i = 0; i < AN_RUNG_COUNT; i++)
         if (hypot(p->rung[i][0], p->rung[i][1]) > l->correction_flag)
-            REMARK(r, "correction-large", "the %s rung changes the stiffness by %.0f %%",
-                   an_rung_word((an_rung)i), 100 * hypot(p->rung[i][0], p->rung[i][1]));
+            REMARK(r, "correction-large", "the correction for %s changes the stiffness by %.0f %%",
+                   an_rung_phrase((an_rung)i), 100 * hypot(p->rung[i][0], p->rung[i][1]));
     if (p->strain > l->strain_flag)
         REMARK(r, "strain-large", "the strain amplitude is %.3g %%, above %.3g %%", 100 * p->strain,
                100 * l->strain_flag);
@@ -238,8 +244,8 @@ an_status an_judge_burst(an_reduction *r, an_error *err)
     for (int c = 0; c < AN_CHANNELS; c++) {
         double amplitude = cabs(r->fit.amplitude[c][0]);
         if (amplitude < 6 * r->fit.u_amplitude[c])
-            REMARK(r, "no-signal", "the sine in %s, %.3g %s, does not stand above its noise, %.3g %s", CHANNEL[c],
-                   amplitude, unit_of(r, c), r->fit.u_amplitude[c], unit_of(r, c));
+            REMARK(r, "no-signal", "the sine in %s, %.3g %s, does not stand above its noise, %.3g %s",
+                   CHANNEL[c], amplitude, unit_of(r, c), r->fit.u_amplitude[c], unit_of(r, c));
     }
     AN_TRY(judge_samples(r, err));
     AN_TRY(judge_signal(r, err));

@@ -32,6 +32,13 @@ static const char *const RUNGS[AN_RUNG_COUNT] = {
     [AN_RUNG_END] = "end",
 };
 
+static const char *const RUNG_PHRASES[AN_RUNG_COUNT] = {
+    [AN_RUNG_CHANNEL] = "channel gain and delay",
+    [AN_RUNG_PARALLEL] = "mass and shaft",
+    [AN_RUNG_SERIES] = "frame compliance",
+    [AN_RUNG_END] = "end, shear and constraint terms",
+};
+
 const char *an_source_word(an_source source)
 {
     return SOURCES[source];
@@ -48,6 +55,11 @@ an_source an_source_find(const char *word)
 const char *an_rung_word(an_rung rung)
 {
     return RUNGS[rung];
+}
+
+const char *an_rung_phrase(an_rung rung)
+{
+    return RUNG_PHRASES[rung];
 }
 
 void an_points_init(an_points *points)

@@ -114,14 +114,15 @@ static int is_lost(const an_point *point)
 static int is_cut(const an_point *point)
 {
     for (size_t i = 0; i < point->remarks.n; i++)
-        if (point->remarks.rows[i].severity == AN_FLAG && strcmp(point->remarks.rows[i].kind->code, "clipping") == 0)
+        if (point->remarks.rows[i].severity == AN_FLAG &&
+            strcmp(point->remarks.rows[i].kind->code, "clipping") == 0)
             return point->state != AN_POINT_SKIPPED;
     return 0;
 }
 
 /* The bursts that a test picks, as the technician sets them: temperature and frequencies. */
-static void say_what_to_redo(const an_points *points, int n_points, int (*picks)(const an_point *), const char *what,
-                             an_assessment *assessment)
+static void say_what_to_redo(const an_points *points, int n_points, int (*picks)(const an_point *),
+                             const char *what, an_assessment *assessment)
 {
     char list[160] = "";
     size_t used = 0;
@@ -149,9 +150,6 @@ static void say_what_to_redo(const an_points *points, int n_points, int (*picks)
             used > sizeof list - 40 ? ", and more" : "");
 }
 
-static const char *const rung_phrases[AN_RUNG_COUNT] = {
-    "channel gain and delay", "mass and shaft", "frame compliance", "end, shear and constraint terms"};
-
 static void find_largest_correction(const an_points *points, int n_points, an_assessment *assessment)
 {
     const an_point *most = NULL;
@@ -173,8 +171,8 @@ static void find_largest_correction(const an_points *points, int n_points, an_as
     else
         snprintf(assessment->largest_correction, sizeof assessment->largest_correction,
                  "%s: %.*f %% of stiffness at burst %d (%.3g Hz, %.1f °C); K_s C = %.2g",
-                 rung_phrases[i_rung], size < 0.1 ? 1 : 0, 100 * size, most->burst, most->frequency_Hz,
-                 degc(most->temperature_K), most->stiffness_compliance);
+                 an_rung_phrase((an_rung)i_rung), size < 0.1 ? 1 : 0, 100 * size, most->burst,
+                 most->frequency_Hz, degc(most->temperature_K), most->stiffness_compliance);
 }
 
 static void say_missing(const an_grid *grid, an_assessment *assessment)
@@ -188,8 +186,9 @@ static void say_missing(const an_grid *grid, an_assessment *assessment)
             first = first < 0 ? i : first;
         }
     if (n_short > 0)
-        say(assessment, "%d of %d isotherms without all frequencies, the first at %.1f °C with %d of %d", n_short,
-            grid->n_isotherm, degc(grid->isotherm[first].temperature_K), grid->isotherm[first].n_cell, most);
+        say(assessment, "%d of %d isotherms without all frequencies, the first at %.1f °C with %d of %d",
+            n_short, grid->n_isotherm, degc(grid->isotherm[first].temperature_K),
+            grid->isotherm[first].n_cell, most);
 }
 
 void an_assess(const an_points *points, int n_points, an_grid *grid)

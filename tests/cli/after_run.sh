@@ -40,10 +40,11 @@ expect_code 0 "simple" "$bin/anelast" simple/strip.csv --into results/night
 run=results/night/RP-0612-1_strip
 holds "simple" "$run" $all
 says "simple" "RP-0612-1_strip: usable (specimen RP-0612-1, rail pad compound 22, lot 0612)"
-says "simple" "bursts      .* 0 skipped; 12 isotherms"
+says "simple" "bursts      .* 0 skipped; 12 isotherms from -[0-9.]* to [0-9.]* °C"
 says "simple" "correction  frame compliance: "
 says "simple" "loss peak -13\.[0-9] °C"
-says "simple" "superposes  simple (reduced chi-square "
+says "simple" "superposes  simple (reduced chi-square .*"
+says "simple" "isotherms together$"
 says "simple" "beside the dump: layout.xml, specimen.xml, apparatus.xml"
 says "simple" "page        results/night/RP-0612-1_strip/report.html"
 short "simple"
@@ -117,7 +118,17 @@ holds "one bad" results/RP-0615-1_strip run.xml points.xml grid.xml report.html
 [ ! -e results/RP-0615-1_bad ] || fail "a refused dump left a folder"
 clean "one bad" results
 
+# Names that look like options, and names longer than a line: the verdict is still said.
+(cd few && cp strip.csv ./-d.csv && "$bin/anelast" --into ../results/dash -- -d.csv >../out.txt 2>../err.txt) || fail "-d.csv: $(cat err.txt)"
+holds "a dash" results/dash/RP-0615-1_-d run.xml points.xml grid.xml report.html
+long=$(printf 'x%.0s' {1..90})
+cp few/strip.csv "few/$long.csv"
+expect_code 0 "a long name" "$bin/anelast" "few/$long.csv" --into results/long
+says "a long name" "^RP-0615-1_xxx.*x\.\.\.: [a-z]* "
+
 # Usage and input.
+expect_code 2 "no folder named" "$bin/anelast" simple/strip.csv --into ""
+complains "no folder named" "^anelast: --into names no folder"
 expect_code 2 "no dump" "$bin/anelast"
 expect_code 3 "absent" "$bin/anelast" absent.csv --into results
 complains "absent" "^anelast: absent.csv: "

@@ -74,6 +74,12 @@ sed '12s/,/;/g' good.csv >separator.csv
 refuse 1 separator.csv "separator.csv: no row names the columns 'Step', 'Time', 'Position', 'Load'"
 sed '100s/$/,7/' good.csv >ragged.csv
 refuse 1 ragged.csv "ragged.csv:100: " "7 fields where the header row names 6 columns"
+awk -F, 'NR == 100 { print $1 "," $2; next } 1' good.csv >short_row.csv
+refuse 1 short_row.csv "short_row.csv:100: " "2 fields where the header row names 6 columns"
+(cat good.csv; echo "End of test") >footer.csv
+refuse 1 footer.csv "footer.csv:526: 1 field where" "the layout's 'footer' can say"
+sed '1,11s/^/X/' good.csv >keys.csv
+refuse 1 keys.csv "keys.csv:1: the layout maps no key 'XLower Quay Works' (line 1)" "and 6 more; is this dump of another layout?"
 
 # units
 sed '13s/,N,/,kN,/' good.csv >factor.csv
@@ -102,6 +108,19 @@ refuse 1 thickness.csv "thickness.csv: specimen: thickness is not given"
 sed '8s/15.02/15020000/' good.csv >long.csv
 refuse 1 long.csv "specimen: length 15020 m is outside"
 
+sed '2s/RP-0522-1/RP-\x1b[31m1/' good.csv >escape.csv
+refuse 1 escape.csv "escape.csv:2: 'Specimen': a control character stands in the value"
+grep -q $'\x1b' err.txt && fail "escape.csv: a control character reaches the terminal"
+sed 's/<specimen /<specimen id="RP-0417-2" /' "$pads/specimen.xml" >another.xml
+specimen=another.xml accept good.csv 'code="specimen-disagrees" severity="hold"' "the dump is of specimen 'RP-0522-1'"
+
+# what is no file
+mkdir folder
+refuse 3 folder "folder: cannot be read: it is a folder, no dump"
+refuse 2 - "a dump cannot come from standard input: name its file"
+mkfifo pipe.csv
+refuse 3 pipe.csv "pipe.csv: cannot be read: it is a pipe or a device; a dump has to be a file"
+
 # encodings
 printf 'Operator,Pr\374fer\n' | cat - good.csv >latin.csv
 refuse 1 latin.csv "latin.csv:1: bytes that are no UTF-8"
@@ -110,9 +129,13 @@ refuse 1 wide.csv "a mark of UTF-16 stands at its beginning"
 printf '\0\0\0\0' | cat good.csv - >zero.csv
 refuse 1 zero.csv "zero.csv:526: a zero byte"
 : >empty.csv
-refuse 1 empty.csv "empty.csv: no row names the columns"
+refuse 1 empty.csv "empty.csv: the dump is empty"
 head -n 13 good.csv >headonly.csv
 refuse 1 headonly.csv "headonly.csv: no row of samples"
+
+# a step column that does not part the bursts
+awk -F, -v OFS=, 'NR > 13 { $1 = 1 } 1' good.csv >steps.csv
+accept steps.csv 'code="burst-unclear" severity="skip" burst="1"' "the set frequency changes within the burst, at sample 129"
 
 # cut dumps: the complete bursts stay, the last is to be skipped, the run is held
 head -c -30 good.csv >cut.csv
@@ -122,6 +145,8 @@ grep -qF "cut.csv: held: the dump ends within a row" err.txt || fail "cut.csv: n
 head -c -3 good.csv >digit.csv # "...,0.3" became "...,0"
 sed -n '$p' digit.csv | grep -q ',3$' && head -c -4 good.csv >digit.csv
 accept digit.csv 'code="truncated" severity="hold"'
+(head -c -30 good.csv; echo) >ended.csv # cut, and the line ended by whoever copied it
+accept ended.csv 'code="truncated" severity="hold"' "the dump ends within a row at line 525, 127 samples into burst 4"
 head -n 500 good.csv >short.csv
 accept short.csv "the dump ends too early at line 500, 103 samples into burst 4; 3 bursts are complete"
 head -c -1 good.csv >unended.csv

@@ -103,8 +103,8 @@ static void wrong_usage_goes_to_standard_error(void **state)
                                            {"trial -z a", "'-z' is not known"},
                                            {"trial a --span", "'--span' wants an argument"},
                                            {"trial --wet=yes a", "--wet=yes"},
-                                           {"trial", "at least 1 needed"},
-                                           {"trial a b c", "'c' is one operand too many"},
+                                           {"trial", "at least 1 wanted"},
+                                           {"trial a b c", "'c' is one file too many"},
                                            {"trial --span 12.4 a", "option '--span'"},
                                            {"trial --span 12,4mm a", "comma"},
                                            {"trial --span 3N a", "'N'"}};

@@ -182,7 +182,7 @@ static void other_versions_are_refused_by_name(void **state)
     refused("<trial" NS " version=\"2.0\"/>", AN_E_DOCUMENT, "'2.0'");
     refused("<trial" NS " version=\"1\"/>", AN_E_DOCUMENT, "'1'");
     refused("<trial" NS " version=\"1.-1\"/>", AN_E_DOCUMENT, "'1.-1'");
-    refused("<verdict" NS " version=\"1.0\"/>", AN_E_DOCUMENT, "wanted is a 'trial'");
+    refused("<verdict" NS " version=\"1.0\"/>", AN_E_DOCUMENT, "wanted is 'trial'");
 }
 
 static void a_root_without_schema_is_refused(void **state)
