@@ -71,7 +71,7 @@ static an_status gather(const an_report *r, gathered *all, an_error *err)
 /* Numbers of the bursts of rows first..last, runs of neighbours shortened. */
 static void write_bursts(FILE *out, const an_remark *const *rows, size_t n)
 {
-    fputs("<td>", out);
+    fputs("<td class=\"b\">", out);
     long written = 0, start = -1, end = -1;
     for (size_t i = 0; i <= n; i++) {
         long burst = i < n ? rows[i]->burst : -1;

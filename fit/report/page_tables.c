@@ -103,8 +103,9 @@ static void table_isotherms(page *p)
 
 static void table_readings(page *p)
 {
-    static const char *const heads[] = {"Reading",      "Frequency (Hz)", "T_{g} (°C)",      "u noise (K)",
-                                        "u common (K)", "From",           "Refused because", NULL};
+    static const char *const heads[] = {"Reading",    "Frequency (Hz)", "T_{g} (°C)", "u noise (K)",
+                                        "u form (K)", "u common (K)",   "From",       "Refused because",
+                                        NULL};
     const an_grid *grid = &p->report->grid;
     if (grid->n_reading == 0) {
         page_absent(p, "No glass-transition readings.",
@@ -119,7 +120,8 @@ static void table_readings(page *p)
         cell_number(p->out, reading->frequency_Hz, 4);
         cell_fixed(p->out, reading->temperature_K - ZERO_CELSIUS_K, 2);
         bool stands = isfinite(reading->temperature_K);
-        cell_number(p->out, stands ? hypot(reading->u_noise_K, reading->u_form_K) : NAN, 2);
+        cell_number(p->out, stands ? reading->u_noise_K : NAN, 2);
+        cell_number(p->out, stands ? reading->u_form_K : NAN, 2); /* of the curve between isotherms */
         cell_number(p->out, stands ? reading->u_common_K : NAN, 2);
         cell_text(p->out, reading->on_ramp ? "ramp" : "isotherms");
         cell_words(p->out, reading->reason);

@@ -52,6 +52,7 @@ static void put_constant_name(FILE *out, const char *name)
 static void cell_constants(FILE *out, const an_law *law)
 {
     fputs("<td>", out);
+    double wlf_K = law->kind == AN_LAW_CROSSOVER ? law->constant[2] : law->reference_temperature_K;
     for (size_t k = 0; k < law->n_constant; k++) {
         const char *unit = unit_shown(an_law_constant_unit(law->kind, k));
         fputs(k ? "<br/>" : "", out);
@@ -59,6 +60,11 @@ static void cell_constants(FILE *out, const an_law *law)
         fputs(" = ", out);
         markup_with_u(out, law->constant[k], sqrt(law->covariance[k * law->n_constant + k]));
         fprintf(out, "%s%s", unit[0] ? " " : "", unit);
+        if (an_law_constant_name(law->kind, k)[0] == 'c') {
+            fputs(" at ", out);
+            markup_fixed(out, wlf_K - ZERO_CELSIUS_K, 2);
+            fputs(" °C", out);
+        }
     }
     fputs("</td>", out);
 }
@@ -131,7 +137,7 @@ void table_modes(page *p)
     }
     fputs("<tr><td>long-term</td>", p->out);
     cell_number(p->out, m->long_term_Pa / 1e6, 5);
-    fputs("<td></td>", p->out);
+    cell_number(p->out, m->long_term_Pa > 0 ? m->u_long_term_Pa / 1e6 : NAN, 2);
     cell_number(p->out, m->long_term_Pa / m->instantaneous_Pa, 5);
     fputs("<td></td></tr>\n", p->out);
     table_end(p->out);

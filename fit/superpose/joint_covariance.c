@@ -11,6 +11,8 @@
 #include <string.h>
 
 static const double ln10 = 2.302585092994046;
+/* Decades; a source that scales all moduli alike moves no shift, and what rounding makes of that stays below. */
+static const double LEAST_CHANGE = 1e-8;
 
 typedef struct work {
     size_t n_outer, n_source, n_positive, n_penalty;
@@ -140,7 +142,7 @@ static void hand_out_sources(work *w, const an_joint *joint, an_superposition *r
             w->shift[i] = an_dot(w->inverse + i * w->n_outer, w->scratch, w->n_outer);
         for (size_t i = 0; i < n; i++) {
             size_t place, slot = slot_of(joint, i, &place);
-            change[place] = slot < w->n_outer ? w->shift[slot] : 0;
+            change[place] = slot < w->n_outer && fabs(w->shift[slot]) > LEAST_CHANGE ? w->shift[slot] : 0;
         }
         add_common(change, n, result->common_covariance);
     }
