@@ -42,6 +42,10 @@ static an_status read_constant(const an_xml_node *node, const char *name, const 
     return AN_OK;
 }
 
+/* Channels of one converter stand microseconds apart, those of two instruments milliseconds (common
+ * practice). */
+static const double delay_most = 0.1; /* [s] */
+
 static an_status read_response(const an_xml_node *node, const char *channel, an_channel_response *response,
                                an_error *err)
 {
@@ -52,7 +56,11 @@ static an_status read_response(const an_xml_node *node, const char *channel, an_
     if (!(response->gain.value > 0))
         return an_xml_fail(child, err, AN_E_VALUE, "gain %g is not positive; a sign belongs into the layout",
                            response->gain.value);
-    return read_constant(child, "delay", "s", ideal, &response->delay, err);
+    AN_TRY(read_constant(child, "delay", "s", ideal, &response->delay, err));
+    if (!(fabs(response->delay.value) <= delay_most))
+        return an_xml_fail(child, err, AN_E_VALUE, "delay %g s is outside -%g .. %g s; check the unit",
+                           response->delay.value, delay_most, delay_most);
+    return AN_OK;
 }
 
 /* The compliance of a torsional bench has another unit than that of a linear one. */
@@ -98,6 +106,18 @@ static an_status read_compliances(const an_xml_node *node, an_apparatus *apparat
     return AN_OK;
 }
 
+/* What an actuator moves weighs grams to some kilograms (common practice); a grip's mass is never below zero.
+ */
+static an_status read_mass(const an_xml_node *node, const char *name, an_measure *mass, an_error *err)
+{
+    static const double mass_most = 20; /* [kg] */
+    AN_TRY(read_constant(node, name, "kg", ideal, mass, err));
+    if (!(mass->value >= 0 && mass->value <= mass_most))
+        return an_xml_fail(an_xml_child(node, name), err, AN_E_VALUE,
+                           "%g kg is outside 0 .. %g kg; check the unit", mass->value, mass_most);
+    return AN_OK;
+}
+
 /* Where the force is sensed, and the constants of the chain of that architecture. */
 static an_status read_chain(const an_xml_node *node, an_apparatus *apparatus, an_error *err)
 {
@@ -106,12 +126,12 @@ static an_status read_chain(const an_xml_node *node, an_apparatus *apparatus, an
     if (an_xml_attribute_of(node, "force_at"))
         AN_TRY(an_xml_word(node, "force_at", places, &place, err));
     apparatus->force_at = place == 0 ? AN_FORCE_AT_DRIVE : AN_FORCE_AT_FIXED_END;
-    AN_TRY(read_constant(node, "moving_mass", "kg", ideal, &apparatus->moving_mass, err));
+    AN_TRY(read_mass(node, "moving_mass", &apparatus->moving_mass, err));
     AN_TRY(read_constant(node, "shaft_stiffness", "N/m", ideal, &apparatus->shaft_stiffness, err));
     AN_TRY(read_constant(node, "shaft_damping", "N.s/m", ideal, &apparatus->shaft_damping, err));
     AN_TRY(read_constant(node, "transducer_stiffness", "N/m", AN_MEASURE_NONE,
                          &apparatus->transducer_stiffness, err));
-    return read_constant(node, "fixture_mass", "kg", ideal, &apparatus->fixture_mass, err);
+    return read_mass(node, "fixture_mass", &apparatus->fixture_mass, err);
 }
 
 /* A bias is a difference of temperatures; degC would bring the zero of a scale in, and is refused. */

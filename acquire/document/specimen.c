@@ -287,8 +287,13 @@ void an_specimen_merge(an_specimen *base, const an_specimen *over, an_remark_lis
         if (text[0])
             memcpy((char *)base + labels[i].offset, text, labels[i].size);
     }
-    if (over->geometry.kind != AN_GEOMETRY_NONE)
-        base->geometry.kind = over->geometry.kind;
+    an_geometry_kind own = base->geometry.kind, kind = over->geometry.kind;
+    if (own != AN_GEOMETRY_NONE && kind != AN_GEOMETRY_NONE && own != kind)
+        an_remark_list_add(remarks, "geometry-disagrees", 0, NULL,
+                           "the dump says geometry '%s', the specimen document '%s'; the document is used",
+                           an_geometry_word(own), an_geometry_word(kind));
+    if (kind != AN_GEOMETRY_NONE)
+        base->geometry.kind = kind;
     for (int i = 0; i < N_DIMENSIONS; i++)
         merge_dimension(&dimensions[i], measure_at(&base->geometry, &dimensions[i]),
                         measure_of(&over->geometry, &dimensions[i]), remarks);
@@ -369,10 +374,16 @@ an_status an_specimen_check(const an_specimen *specimen, an_error *err)
             "specimen: the kind of geometry is not given, neither by the dump nor by a specimen document");
     for (int i = 0; i < N_DIMENSIONS; i++) {
         const dimension *row = &dimensions[i];
-        double value = measure_of(&specimen->geometry, row)->value;
+        double value = measure_of(&specimen->geometry, row)->value,
+               u = measure_of(&specimen->geometry, row)->u;
         if (!isnan(value) && !(value >= row->least && value <= row->most))
             return an_fail(err, AN_E_VALUE, NULL, "specimen: %s %g %s is outside %g .. %g %s; check the unit",
                            row->name, value, row->unit, row->least, row->most, row->unit);
+        if (row->least > 0 && u > 0.5 * value)
+            return an_fail(err, AN_E_VALUE, NULL,
+                           "specimen: the standard uncertainty of %s, %g %s, is more than half of its %g %s; "
+                           "check its unit",
+                           row->name, u, row->unit, value, row->unit);
     }
     return check_needed(specimen, err);
 }

@@ -37,7 +37,9 @@ void an_reader_tidy(const char *message, char *text, size_t n_text)
 {
     size_t n = 0;
     for (const char *s = message; *s && *s != '\n' && n + 1 < n_text; s++) {
-        if (strncmp(s, "{" AN_XML_NAMESPACE "}", strlen(AN_XML_NAMESPACE) + 2) == 0)
+        if (strncmp(s, "[facet '", 8) == 0 && strstr(s, "'] ")) /* the library's word for the kind of rule */
+            s = strstr(s, "'] ") + 2;
+        else if (strncmp(s, "{" AN_XML_NAMESPACE "}", strlen(AN_XML_NAMESPACE) + 2) == 0)
             s += strlen(AN_XML_NAMESPACE) + 1;
         else
             text[n++] = *s;

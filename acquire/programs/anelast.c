@@ -89,9 +89,14 @@ int main(int argc, char **argv)
         return an_program_refuse(&program, &err);
     }
     int worst = 0;
+    sigset_t before;
+    an_stage_hold_signals(&before);
     for (int i = 0; i < arguments.n_files; i++) {
         int exit_code = reduce_one(programs, arguments.files[i], &options, arguments.quiet);
         worst = exit_code > worst ? exit_code : worst;
+        /* a signal that waited ends the program here, with nothing half done */
+        sigprocmask(SIG_SETMASK, &before, NULL);
+        an_stage_hold_signals(&before);
     }
     int end = an_program_end(&program);
     return end > worst ? end : worst;

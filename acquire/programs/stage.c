@@ -6,6 +6,7 @@
 #include <errno.h>
 #include <fcntl.h>
 #include <limits.h>
+#include <signal.h>
 #include <spawn.h>
 #include <stdio.h>
 #include <string.h>
@@ -55,14 +56,81 @@ static void collect(int said, an_stage_end *end)
         end->said[--length] = '\0';
 }
 
+/* Signals that end a program, but for those that whoever started it had ignored. */
+static void ending_signals(sigset_t *set)
+{
+    static const int signals[] = {SIGHUP, SIGINT, SIGTERM};
+    struct sigaction now;
+    sigemptyset(set);
+    for (size_t i = 0; i < sizeof signals / sizeof signals[0]; i++)
+        if (sigaction(signals[i], NULL, &now) == 0 && now.sa_handler != SIG_IGN)
+            sigaddset(set, signals[i]);
+}
+
+void an_stage_hold_signals(sigset_t *before)
+{
+    sigset_t held;
+    ending_signals(&held);
+    sigaddset(&held, SIGCHLD);
+    sigprocmask(SIG_BLOCK, &held, before);
+}
+
+/* Wait for a child or for a signal that ends this program: it ends the child too, and stays pending. */
+static pid_t wait_or_end(pid_t child, int *state)
+{
+    sigset_t awaited;
+    ending_signals(&awaited);
+    sigaddset(&awaited, SIGCHLD);
+    for (;;) {
+        pid_t ended = waitpid(child, state, WNOHANG);
+        int caught = ended == 0 ? sigwaitinfo(&awaited, NULL) : 0;
+        if (ended != 0)
+            return ended;
+        if (caught <= 0 || caught == SIGCHLD)
+            continue;
+        kill(child, SIGTERM);
+        ended = waitpid(child, state, 0);
+        raise(caught);
+        return ended;
+    }
+}
+
+static an_status check_interrupted(an_error *err)
+{
+    sigset_t pending, ending;
+    ending_signals(&ending);
+    sigpending(&pending);
+    for (int i = 1; i < NSIG; i++)
+        if (sigismember(&ending, i) == 1 && sigismember(&pending, i) == 1)
+            return an_fail(err, AN_E_IO, NULL, "ended by signal %d; nothing of this dump is left behind", i);
+    return AN_OK;
+}
+
 static an_status wait_for(pid_t child, const char *name, an_stage_end *end, an_error *err)
 {
     int state;
-    while (waitpid(child, &state, 0) < 0)
-        if (errno != EINTR)
-            return an_fail(err, AN_E_IO, name, "cannot be waited for: %s", strerror(errno));
+    if (wait_or_end(child, &state) < 0)
+        return an_fail(err, AN_E_IO, name, "cannot be waited for: %s", strerror(errno));
+    AN_TRY(check_interrupted(err));
     end->exit_code = WIFEXITED(state) ? WEXITSTATUS(state) : 128 + WTERMSIG(state);
     return AN_OK;
+}
+
+/* A stage starts with no signal blocked. */
+static int start(const char *path, const posix_spawn_file_actions_t *actions, const char *const *arguments,
+                 pid_t *child)
+{
+    posix_spawnattr_t how;
+    sigset_t none;
+    int failed = posix_spawnattr_init(&how);
+    if (failed)
+        return failed;
+    sigemptyset(&none);
+    posix_spawnattr_setsigmask(&how, &none);
+    posix_spawnattr_setflags(&how, POSIX_SPAWN_SETSIGMASK);
+    failed = posix_spawn(child, path, actions, &how, (char *const *)arguments, environ);
+    posix_spawnattr_destroy(&how);
+    return failed;
 }
 
 an_status an_stage_run(const char *folder, const char *const *arguments, an_stage_end *end, an_error *err)
@@ -77,7 +145,7 @@ an_status an_stage_run(const char *folder, const char *const *arguments, an_stag
         return an_fail(err, AN_E_IO, path, "cannot be started: %s", strerror(errno));
     int failed = prepare(&actions, said);
     if (!failed) {
-        failed = posix_spawn(&child, path, &actions, NULL, (char *const *)arguments, environ);
+        failed = start(path, &actions, arguments, &child);
         posix_spawn_file_actions_destroy(&actions);
     }
     an_status status = failed ? an_fail(err, AN_E_IO, path, "cannot be started: %s", strerror(failed))

@@ -175,6 +175,21 @@ stand_in anelast-report 'echo "anelast-report: master.xml:3: something is wrong"
 expect_code 1 "no page" stages/anelast few/strip.csv --into results/stages
 holds "no page" results/stages/RP-0615-1_strip run.xml points.xml grid.xml
 complains "no page" "^anelast-report: master.xml:3: something is wrong"
+# Ended from outside while a stage runs: the stage ends too, and no work folder is left. (A script's background jobs
+# ignore SIGINT; SIGTERM takes the same way.)
+rm stages/anelast-grid
+stand_in anelast-grid 'echo $$ >stage.pid; exec sleep 60'
+rm -f stage.pid
+stages/anelast simple/strip.csv --into results/ended >out.txt 2>err.txt &
+job=$!
+for _ in $(seq 100); do [ -s stage.pid ] && break; sleep 0.1; done
+kill -TERM $job
+wait $job
+[ $? -eq 143 ] || fail "ended: exit $?"
+empty "ended" results/ended
+complains "ended" "ended by signal 15; nothing of this dump is left behind"
+kill -0 "$(cat stage.pid)" 2>/dev/null && fail "ended: the stage still runs"
+rm stages/anelast-grid && ln -s "$bin/anelast-grid" stages/
 rm stages/anelast-phase
 expect_code 3 "a stage is absent" stages/anelast few/strip.csv --into results/absent
 complains "a stage is absent" "anelast-phase: cannot be started"

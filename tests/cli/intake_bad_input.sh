@@ -18,7 +18,7 @@ head -n 525 "$pads/RP-0522-1.csv" >good.csv
 
 take() {
     "$ANELAST_BIN/anelast-intake" "$1" --layout "${layout:-$pads/layout.xml}" --specimen "${specimen:-$pads/specimen.xml}" \
-        --apparatus "$pads/apparatus.xml" -o out.xml >out.txt 2>err.txt
+        --apparatus "${apparatus:-$pads/apparatus.xml}" -o out.xml >out.txt 2>err.txt
 }
 
 # refuse CODE DUMP TEXT...: taking DUMP in ends with CODE, says each TEXT, and leaves no file.
@@ -113,6 +113,18 @@ refuse 1 escape.csv "escape.csv:2: 'Specimen': a control character stands in the
 grep -q $'\x1b' err.txt && fail "escape.csv: a control character reaches the terminal"
 sed 's/<specimen /<specimen id="RP-0417-2" /' "$pads/specimen.xml" >another.xml
 specimen=another.xml accept good.csv 'code="specimen-disagrees" severity="hold"' "the dump is of specimen 'RP-0522-1'"
+
+sed 's/<geometry>/<geometry kind="cantilever, guided end">/' "$pads/specimen.xml" >clamped.xml
+specimen=clamped.xml accept good.csv 'code="geometry-disagrees" severity="hold"' "the dump says geometry 'tension'"
+sed 's/u="0.05"/u="50"/' "$pads/specimen.xml" >doubtful.xml
+specimen=doubtful.xml refuse 1 good.csv "the standard uncertainty of length, 0.05 m, is more than half of its 0.01502 m"
+sed 's/unit="us"/unit="s"/' "$pads/apparatus.xml" >late.xml
+apparatus=late.xml refuse 1 good.csv "late.xml:3: force: delay 12 s is outside -0.1 .. 0.1 s; check the unit"
+sed 's/unit="g"/unit="kg"/' "$pads/apparatus.xml" >heavy.xml
+apparatus=heavy.xml refuse 1 good.csv "heavy.xml:10: moving_mass: 34 kg is outside 0 .. 20 kg; check the unit"
+sed 's/force_at="drive"/force_at="top"/' "$pads/apparatus.xml" >top.xml
+apparatus=top.xml refuse 1 good.csv "top.xml:2: " "'force_at': The value 'top' is not an element of the set {'drive', 'fixed end'}"
+grep -q facet err.txt && fail "top.xml: the library's own words: $(cat err.txt)"
 
 # what is no file
 mkdir folder
