@@ -162,12 +162,20 @@ def common_difference(point, stiffness, frequency, constants, u):
     return max(worst, abs(total - listed) / max(listed, 1e-300) if total > 0 else 0.0)
 
 
+def loss_factor_u(point):
+    """Noise of E''/E' from the noise matrix."""
+    storage, loss, noise = value(point, "storage"), value(point, "loss"), one(point, "noise")
+    slope = np.array([-loss / storage ** 2, 1 / storage])
+    ss, sl, ll = (float(noise.get(name)) for name in ("storage_storage", "storage_loss", "loss_loss"))
+    return math.sqrt(slope @ np.array([[ss, sl], [sl, ll]]) @ slope)
+
+
 def moduli(run_path, points_path):
     document = ElementTree.parse(points_path).getroot()
     points = {point.get("burst"): point for point in all_of(document, "point")}
     choice = {row.get("name"): row.get("value") for row in all_of(document, "made/choice")}
     constants, u = constants_of(document)
-    error, spread, common, temperatures = [], [], [], []
+    error, spread, common, angle, temperatures = [], [], [], [], []
     for element in all_of(ElementTree.parse(run_path).getroot(), "burst"):
         point = points[element.get("n")]
         clipped = any(row.get("code") == "clipping" for row in all_of(point, "remark"))
@@ -186,6 +194,7 @@ def moduli(run_path, points_path):
             stated = float(one(point, name).get("u_noise"))
             error.append(abs(value(point, name) - ours) / stated)
             spread.append(stated / u_ours)
+        angle.append(abs(float(one(point, "loss_factor").get("u_noise")) / loss_factor_u(point) - 1))
         common.append(common_difference(point, stiffness, frequency, constants, u))
         temperatures.append(abs(np.mean(burst["temperature"][kept]) - value(point, "temperature")))
     check("bursts reduced twice", len(common), max(1, 0.8 * len(points)), len(points))
@@ -196,6 +205,7 @@ def moduli(run_path, points_path):
     check("stated noise over white noise's, least", min(spread), 0.9, 1.01)
     # One side here, both sides there: they part by the curvature over one u
     check("shared uncertainties, greatest relative difference", max(common), 0, 0.02)
+    check("u of the loss factor from the noise of E', E'': greatest relative difference", max(angle), 0, 1e-6)
     check("temperature, greatest difference in K", max(temperatures), 0, 1e-6)
 
 

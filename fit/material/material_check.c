@@ -120,6 +120,16 @@ static int caution_window(const an_material *material, char *text, size_t size)
         material->window_temperature_K[0], material->window_temperature_K[1]);
 }
 
+static int caution_long_term(const an_material *material, char *text, size_t size)
+{
+    if (!(material->long_term_Pa > 0))
+        return 0;
+    return snprintf(text, size,
+                    "The long-term modulus %.6g Pa is what is left after the slow end of the trusted window; "
+                    "its uncertainty is that of the noise, and relaxation slower than %.4g s would lower it",
+                    material->long_term_Pa, material->window_time_s[1]);
+}
+
 static int caution_strain(const an_material *material, char *text, size_t size)
 {
     if (!isfinite(material->strain_limit))
@@ -169,8 +179,9 @@ static int caution_simplicity(const an_material *material, char *text, size_t si
 
 int an_material_caution(const an_material *material, int i_caution, char text[AN_CAUTION_SIZE])
 {
-    static const caution cautions[] = {caution_simplicity, caution_weights, caution_basis,   caution_window,
-                                       caution_strain,     caution_law,     caution_scaling, caution_end};
+    static const caution cautions[] = {caution_simplicity, caution_weights,   caution_basis,
+                                       caution_window,     caution_long_term, caution_strain,
+                                       caution_law,        caution_scaling,   caution_end};
     int n_found = 0;
     for (size_t i = 0; i < sizeof cautions / sizeof cautions[0]; i++)
         if (cautions[i](material, text, AN_CAUTION_SIZE) > 0 && n_found++ == i_caution)

@@ -32,7 +32,7 @@ static const char style[] =
     ".scroll{overflow-x:auto;background:#fff;border:1px solid #d9dee1;margin:.8rem 0 1.2rem}\n"
     ".tall{max-height:34rem;overflow:auto}\n"
     "table{border-collapse:collapse;font-size:.88rem}\n"
-    "caption{text-align:left;font-weight:600;padding:8px 10px}\n"
+    "caption{text-align:left;font-weight:600;padding:8px 10px;break-after:avoid}\n"
     "th,td{padding:4px 10px;text-align:left;vertical-align:top;border-top:1px solid #e4e8ea}\n"
     "th{white-space:nowrap;background:#eef1f2;font-weight:600}\n"
     "td{white-space:nowrap}td.w{white-space:normal;min-width:15rem;max-width:34rem}"

@@ -25,6 +25,7 @@ typedef struct mode_set {
     const an_maxwell *modes;
     const int *trusted;   /* [n_mode]; NULL: by the window */
     const double *window; /* [2] [s] */
+    bool is_refused;      /* the data refuse the fit: nothing of it is trusted */
 } mode_set;
 
 /* Modes that are trusted, or those that are not. */
@@ -34,7 +35,7 @@ static void add_modes(an_figure *figure, const mode_set *set, bool wanted)
     for (size_t i = 0; i < modes->n_mode; i++) {
         double tau = modes->time_s[i], strength = modes->modulus_Pa[i] / 1e6;
         bool inside = tau >= set->window[0] && tau <= set->window[1];
-        bool is_trusted = set->trusted ? set->trusted[i] != 0 : inside;
+        bool is_trusted = !set->is_refused && (set->trusted ? set->trusted[i] != 0 : inside);
         if (is_trusted != wanted || !(strength > 0))
             continue;
         an_figure_style style = {.color = wanted ? AN_COLOR_FIRST : AN_COLOR_MUTED,
@@ -62,7 +63,8 @@ static void figure_modes(page *p, const an_figure_spec *spec, const mode_set *se
     an_figure_add_panel(
         figure,
         &(an_figure_axis){.label = label, .symbol = "strength", .unit = "MPa", .scale = AN_AXIS_LOG10}, 200);
-    add_window(figure, set->window);
+    if (!set->is_refused)
+        add_window(figure, set->window);
     add_modes(figure, set, true);
     add_modes(figure, set, false);
     page_figure_end(p, &figure, caption);
@@ -189,7 +191,7 @@ void section_spectrum(page *p)
         an_figure_spec spec = {.id = "modes",
                                .title = "Handed-over relaxation spectrum with its trusted window",
                                .x = {.label = label, .symbol = "τ", .unit = "s", .scale = AN_AXIS_LOG10}};
-        mode_set set = {&m->modes, m->trusted, m->window_time_s};
+        mode_set set = {&m->modes, m->trusted, m->window_time_s, false};
         figure_modes(p, &spec, &set,
                      "The modes that are handed over. Crosses in the hatched range only close the fit at its "
                      "edges and carry no "
@@ -199,11 +201,12 @@ void section_spectrum(page *p)
     if (r->has_master && r->master.spectrum.n_mode > 0) {
         time_label(label, sizeof label, "Relaxation time τ", r->master.reference_temperature_K);
         an_figure_spec spec = {.id = "dense",
-                               .title = "Relaxation spectrum of the joint fit with its trusted window",
+                               .title = "Relaxation spectrum of the joint fit",
                                .x = {.label = label, .symbol = "τ", .unit = "s", .scale = AN_AXIS_LOG10}};
-        mode_set set = {&r->master.spectrum, NULL, r->master.window_s};
+        bool is_refused = r->master.simplicity == AN_COMPLEX;
+        mode_set set = {&r->master.spectrum, NULL, r->master.window_s, is_refused};
         figure_modes(p, &spec, &set,
-                     r->master.simplicity == AN_COMPLEX
+                     is_refused
                          ? "The dense spectrum of the joint fit. It belongs to a fit that the data refuse: "
                            "shown to judge by, not "
                            "to be used."

@@ -256,6 +256,7 @@ static void cautions_follow_the_material(void **state)
     make(&material);
     assert_true(has_caution(&material, "instantaneous modulus 6.4e+07 Pa"));
     assert_true(has_caution(&material, "tension moduli E"));
+    assert_int_equal(has_caution(&material, "left after the slow end of the trusted window"), material.long_term_Pa > 0);
     assert_true(has_caution(&material, "strain amplitude of the measurement is not known"));
     assert_false(has_caution(&material, "does NOT apply"));
     assert_false(has_caution(&material, "solid or a liquid"));
