@@ -10,8 +10,10 @@
 #include "acquire/programs/run_facts.h"
 #include "acquire/programs/stage.h"
 
+#include <fcntl.h>
 #include <stdlib.h>
 #include <string.h>
+#include <sys/file.h>
 #include <unistd.h>
 
 /* One dump on its way. */
@@ -227,6 +229,21 @@ static an_status make_page(const job *one, an_error *err)
     return end.exit_code <= 1 ? AN_OK : refuse(&end, err);
 }
 
+/* Another run may have taken the name since it was looked at; from here on nobody else puts anything there.
+ */
+static an_status put_in_place(job *one, const char *name, an_error *err)
+{
+    int lock = open(one->options->into, O_RDONLY | O_DIRECTORY | O_CLOEXEC);
+    if (lock >= 0)
+        flock(lock, LOCK_EX);
+    an_status status = check_place(one, name, err);
+    if (status >= 0)
+        status = an_folder_publish(&one->work, one->options->into, name, err);
+    if (lock >= 0)
+        close(lock);
+    return status;
+}
+
 static an_status make_all(job *one, an_error *err)
 {
     an_after_run *run = one->run;
@@ -248,7 +265,7 @@ static an_status make_all(job *one, an_error *err)
         AN_TRY(status);
     }
     AN_TRY(make_page(one, err));
-    AN_TRY(an_folder_publish(&one->work, one->options->into, name, err));
+    AN_TRY(put_in_place(one, name, err));
     return run->no_page[0] ? AN_DUBIOUS : status;
 }
 

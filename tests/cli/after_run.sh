@@ -74,6 +74,17 @@ complains "identity" "run id 'RP-0612-1_strip' stands for another dump already"
 (cd "$run" && sha256sum --quiet -c) <sums.txt || fail "a refused run touched the old one"
 clean "identity" results/night
 
+# Two dumps of one run id at the same time: one stands, the other is refused.
+"$bin/anelast" simple/strip.csv --into results/race >/dev/null 2>one.txt &
+first=$!
+"$bin/anelast" other/strip.csv --into results/race >/dev/null 2>two.txt
+second=$?
+wait $first
+[ "$(($? + second))" -eq 1 ] || fail "two at once: $(cat one.txt two.txt)"
+grep -q "stands for another dump already" one.txt two.txt || fail "two at once: $(cat one.txt two.txt)"
+holds "two at once" results/race/RP-0612-1_strip $all
+clean "two at once" results/race
+
 # What a killed program left there goes, but not what is fresh, and not what people have put there.
 mkdir -p results/night/.anelast-old001 results/night/.anelast-old002 results/night/.anelast-new001
 touch results/night/.anelast-old001/run.xml results/night/.anelast-old002/note.txt
