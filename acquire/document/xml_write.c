@@ -1,5 +1,6 @@
 /* Writing documents: own escaping and indentation on a stream; errors stick until the end. */
 #include "anelast/number.h"
+#include "anelast/output.h"
 #include "anelast/xml.h"
 
 #include <errno.h>
@@ -228,4 +229,22 @@ void an_xml_put_node(an_xml_writer *writer, const an_xml_node *node)
     for (const an_xml_node *child = node->child; child; child = child->next)
         an_xml_put_node(writer, child);
     an_xml_end(writer);
+}
+
+an_status an_xml_save(const char *path, const char *root, an_xml_body *body, const void *content,
+                      an_error *err)
+{
+    an_output *output;
+    AN_TRY(an_output_open(path, &output, err));
+    an_xml_writer *writer = an_xml_writer_new(an_output_stream(output), root);
+    an_status status = writer ? AN_OK : an_fail_memory(err, "a document to be written");
+    if (writer) {
+        body(writer, content);
+        status = an_xml_writer_finish(writer, err);
+    }
+    an_xml_writer_free(&writer);
+    if (status >= 0)
+        return an_output_commit(&output, err);
+    an_output_discard(&output);
+    return status;
 }

@@ -1,6 +1,6 @@
 /* Columns: decimals become integers with a scale, which is lossless, half the size and quicker to read than
  * doubles. The integers stay below 2^53, so that the double a text means is its integer divided once by a
- * power of ten: the correctly rounded value as long as there are at most 22 decimals [CLINGER90, section 3].
+ * power of ten: the correctly rounded value as long as there are at most 22 decimals [CL90, section 3].
  */
 #include "acquire/dump/column.h"
 

@@ -1,7 +1,7 @@
 /* anelast-prony: a master document to a material. */
 #include "acquire/programs/shape.h"
 #include "anelast/handover.h"
-#include "anelast/output.h"
+#include "anelast/xml.h"
 
 #include <gsl/gsl_errno.h>
 
@@ -45,21 +45,9 @@ static an_status record(const an_arguments *arguments, const an_master *master, 
     return reason ? an_made_add_word(made, "override", reason, err) : AN_OK;
 }
 
-static an_status write_material(const char *path, const an_material *material, an_error *err)
+static void write_material(an_xml_writer *writer, const void *material)
 {
-    an_output *output;
-    AN_TRY(an_output_open(path, &output, err));
-    an_xml_writer *writer = an_xml_writer_new(an_output_stream(output), "material");
-    an_status status = writer ? AN_OK : an_fail_memory(err, "a material document");
-    if (writer) {
-        an_material_write(writer, material);
-        status = an_xml_writer_finish(writer, err);
-        an_xml_writer_free(&writer);
-    }
-    if (status >= 0)
-        return an_output_commit(&output, err);
-    an_output_discard(&output);
-    return status;
+    an_material_write(writer, material);
 }
 
 static an_status work(const an_arguments *arguments, an_error *err)
@@ -74,7 +62,7 @@ static an_status work(const an_arguments *arguments, an_error *err)
     AN_CLEAN(
         an_handover_make(&master, &arguments->procedure, an_argument(arguments, "override"), &material, err));
     AN_CLEAN(record(arguments, &master, sha256, &material.made, err));
-    status = write_material(arguments->output, &material, err);
+    status = an_xml_save(arguments->output, "material", write_material, &material, err);
 cleanup:
     an_master_clear(&master);
     an_material_clear(&material);

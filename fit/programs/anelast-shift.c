@@ -1,7 +1,7 @@
 /* anelast-shift: a grid to a master curve. */
 #include "acquire/programs/shape.h"
 #include "anelast/master.h"
-#include "anelast/output.h"
+#include "anelast/xml.h"
 
 #include <gsl/gsl_errno.h>
 
@@ -28,21 +28,9 @@ static const an_program program = {
     .files_most = 1,
 };
 
-static an_status write_master(const char *path, const an_master *master, an_error *err)
+static void write_master(an_xml_writer *writer, const void *master)
 {
-    an_output *output;
-    AN_TRY(an_output_open(path, &output, err));
-    an_xml_writer *writer = an_xml_writer_new(an_output_stream(output), "master");
-    an_status status = writer ? AN_OK : an_fail_memory(err, "a master document");
-    if (writer) {
-        an_master_write(writer, master);
-        status = an_xml_writer_finish(writer, err);
-        an_xml_writer_free(&writer);
-    }
-    if (status >= 0)
-        return an_output_commit(&output, err);
-    an_output_discard(&output);
-    return status;
+    an_master_write(writer, master);
 }
 
 static an_status make_master(const an_arguments *arguments, an_grid *grid, an_master *master, an_error *err)
@@ -55,7 +43,7 @@ static an_status make_master(const an_arguments *arguments, an_grid *grid, an_ma
     AN_TRY(an_made_extend(&master->made, &grid->made, sha256, err));
     AN_TRY(an_procedure_record(&arguments->procedure, "superpose", &master->made, err));
     AN_TRY(an_master_make(grid, &arguments->procedure, master, err));
-    return write_master(arguments->output, master, err);
+    return an_xml_save(arguments->output, "master", write_master, master, err);
 }
 
 static void tell(const an_master *master)

@@ -181,6 +181,18 @@ an_status an_xml_writer_finish(an_xml_writer *writer, an_error *err);
 /* an_xml_writer_free: release; *writer becomes NULL. */
 void an_xml_writer_free(an_xml_writer **writer);
 
+/* Writes what stands within the root element. content [in] what an_xml_save was given */
+typedef void an_xml_body(an_xml_writer *writer, const void *content);
+
+/* an_xml_save: write a whole document, which appears at its place whole or not at all.
+ *   path    [in] where; "-" or NULL: standard output
+ *   root    [in] name of the root element
+ *   body    [in] writes the rest from content
+ *   content [in] for body alone; may be NULL where body allows it
+ * Returns AN_OK; AN_E_MEMORY; AN_E_IO or AN_E_VALUE as an_xml_writer_finish and an_output_commit. */
+an_status an_xml_save(const char *path, const char *root, an_xml_body *body, const void *content,
+                      an_error *err);
+
 /* an_xml_start, an_xml_end: an element, indented by two blanks a level; one without content becomes
  * `<name/>`. */
 void an_xml_start(an_xml_writer *writer, const char *name);

@@ -1,7 +1,7 @@
 /* anelast-grid: points documents to a grid. */
 #include "acquire/programs/shape.h"
 #include "anelast/grid.h"
-#include "anelast/output.h"
+#include "anelast/xml.h"
 
 #include <gsl/gsl_errno.h>
 #include <stdlib.h>
@@ -37,21 +37,9 @@ static an_status read_points(const an_arguments *arguments, an_points *points, i
     return an_procedure_record(&arguments->procedure, "grid", made, err);
 }
 
-static an_status write_grid(const char *path, const an_grid *grid, an_error *err)
+static void write_grid(an_xml_writer *writer, const void *grid)
 {
-    an_output *output;
-    AN_TRY(an_output_open(path, &output, err));
-    an_xml_writer *writer = an_xml_writer_new(an_output_stream(output), "grid");
-    an_status status = writer ? AN_OK : an_fail_memory(err, "a grid document");
-    if (writer) {
-        an_grid_write(writer, grid);
-        status = an_xml_writer_finish(writer, err);
-        an_xml_writer_free(&writer);
-    }
-    if (status >= 0)
-        return an_output_commit(&output, err);
-    an_output_discard(&output);
-    return status;
+    an_grid_write(writer, grid);
 }
 
 static an_status make_grid(const an_arguments *arguments, an_points *points, int n, an_error *err)
@@ -64,7 +52,7 @@ static an_status make_grid(const an_arguments *arguments, an_points *points, int
     if (status >= 0)
         status = an_grid_make(points, n, &arguments->procedure, &grid, err);
     if (status >= 0)
-        status = write_grid(arguments->output, &grid, err);
+        status = an_xml_save(arguments->output, "grid", write_grid, &grid, err);
     an_grid_clear(&grid);
     return status;
 }

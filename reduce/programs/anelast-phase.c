@@ -1,8 +1,8 @@
 /* anelast-phase: run document to points document: the complex modulus of every burst, with quality and
  * uncertainty. */
 #include "acquire/programs/shape.h"
-#include "anelast/output.h"
 #include "anelast/reduction.h"
+#include "anelast/xml.h"
 
 #include <gsl/gsl_errno.h>
 
@@ -32,21 +32,9 @@ static const an_program program = {
     .files_most = 1,
 };
 
-static an_status write_points(const an_points *points, const char *path, an_error *err)
+static void write_points(an_xml_writer *writer, const void *points)
 {
-    an_output *output = NULL;
-    AN_TRY(an_output_open(path, &output, err));
-    an_xml_writer *writer = an_xml_writer_new(an_output_stream(output), "points");
-    an_status status = writer ? AN_OK : an_fail_memory(err, "the writer");
-    if (writer) {
-        an_points_write(writer, points);
-        status = an_xml_writer_finish(writer, err);
-    }
-    an_xml_writer_free(&writer);
-    if (status >= 0)
-        return an_output_commit(&output, err);
-    an_output_discard(&output);
-    return status;
+    an_points_write(writer, points);
 }
 
 static void tell(const an_points *points)
@@ -70,7 +58,7 @@ int main(int argc, char **argv)
     an_status status =
         an_points_make(an_argument_file(&arguments, 0), &arguments.procedure, program.name, &points, &err);
     if (status >= 0)
-        status = write_points(&points, arguments.output, &err);
+        status = an_xml_save(arguments.output, "points", write_points, &points, &err);
     if (status >= 0 && !arguments.quiet)
         tell(&points);
     an_points_clear(&points);
