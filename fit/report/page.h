@@ -11,9 +11,8 @@
 #include "anelast/report.h"
 #include "fit/report/markup.h"
 
-#define ZERO_CELSIUS_K AN_ZERO_CELSIUS_K /* [K] */
-#define PAGE_COVERAGE  2.0    /* [1] coverage factor of bars and bands, about 95 % */
-#define PAGE_BARS      "k = 2" /* what the bars are, in hover texts */
+#define PAGE_COVERAGE 2.0     /* [1] coverage factor of bars and bands, about 95 % */
+#define PAGE_BARS     "k = 2" /* what the bars are, in hover texts */
 
 enum { PAGE_CURVE = 240 }; /* points of a drawn curve */
 
@@ -97,6 +96,9 @@ void cell_number(FILE *out, double value, int digits);
 void cell_fixed(FILE *out, double value, int decimals);
 void cell_with_u(FILE *out, double value, double u);
 void cell_integer(FILE *out, long value);
+
+/* term_text: a term of a list and what is said of it, both plain; nothing where that is NULL or empty. */
+void term_text(FILE *out, const char *name, const char *text);
 
 /* table_begin: a table that scrolls in its own box.
  *   caption [in] plain; heads [in] label text, ended by NULL; @ stands for the modulus's letter */

@@ -50,7 +50,7 @@ static void from_grid(page_cells *cells, const an_grid *grid)
         *cell = (page_cell){.burst = c->burst,
                             .isotherm = c->isotherm,
                             .doubtful = c->outlier != 0,
-                            .temperature_C = c->temperature_K - ZERO_CELSIUS_K,
+                            .temperature_C = c->temperature_K - AN_ZERO_CELSIUS_K,
                             .frequency_Hz = c->frequency_Hz};
         double common[3];
         sum_common(common, c->common);
@@ -69,7 +69,7 @@ static void from_points(page_cells *cells, const an_points *points)
         page_cell *cell = &cells->cell[cells->n++];
         *cell = (page_cell){.burst = point->burst,
                             .doubtful = point->state == AN_POINT_FLAGGED,
-                            .temperature_C = point->temperature_K - ZERO_CELSIUS_K,
+                            .temperature_C = point->temperature_K - AN_ZERO_CELSIUS_K,
                             .frequency_Hz = point->frequency_Hz};
         double common[3];
         an_point_common(point, common);
@@ -147,8 +147,8 @@ static void range_from_master(page_cells *cells, const an_master *master)
 {
     if (master->n_shift == 0)
         return;
-    cells->temperature_C[0] = master->shift[0].temperature_K - ZERO_CELSIUS_K;
-    cells->temperature_C[1] = master->shift[master->n_shift - 1].temperature_K - ZERO_CELSIUS_K;
+    cells->temperature_C[0] = master->shift[0].temperature_K - AN_ZERO_CELSIUS_K;
+    cells->temperature_C[1] = master->shift[master->n_shift - 1].temperature_K - AN_ZERO_CELSIUS_K;
 }
 
 an_status page_cells_make(page_cells *cells, const an_report *report, an_error *err)

@@ -139,7 +139,7 @@ static void write_transition(FILE *out, const an_grid *grid)
             continue;
         fprintf(out, "%s%s ", n_written++ ? "; " : "", an_reading_word(r->kind));
         double u = hypot(hypot(r->u_noise_K, r->u_form_K), r->u_common_K);
-        markup_with_u(out, r->temperature_K - ZERO_CELSIUS_K, u);
+        markup_with_u(out, r->temperature_K - AN_ZERO_CELSIUS_K, u);
         fputs(" °C at ", out);
         markup_number(out, r->frequency_Hz, 3);
         fputs(" Hz", out);
@@ -187,15 +187,6 @@ void section_verdict(page *p)
         write_before_unclamping(p->out, assessment);
     }
     fputs("</section>\n", p->out);
-}
-
-static void term(FILE *out, const char *name, const char *value)
-{
-    if (!value || !value[0])
-        return;
-    fprintf(out, "<dt>%s</dt><dd>", name);
-    markup_plain(out, value);
-    fputs("</dd>\n", out);
 }
 
 typedef struct dimension_row {
@@ -251,20 +242,20 @@ void section_identity(page *p)
     fputs("<section aria-label=\"What was tested\">\n<h1>", p->out);
     markup_plain(p->out, specimen->material[0] ? specimen->material : "Material not named");
     fputs("</h1>\n<dl>\n", p->out);
-    term(p->out, "Specimen", specimen->id[0] ? specimen->id : "not named");
-    term(p->out, "Lot", specimen->lot[0] ? specimen->lot : "not named");
-    term(p->out, "Run", run_id(p->report));
-    term(p->out, "Tested", specimen->started);
-    term(p->out, "Operator", specimen->operator_name);
-    term(p->out, "Rig", specimen->rig);
-    term(p->out, "Geometry", an_geometry_word(specimen->geometry.kind));
+    term_text(p->out, "Specimen", specimen->id[0] ? specimen->id : "not named");
+    term_text(p->out, "Lot", specimen->lot[0] ? specimen->lot : "not named");
+    term_text(p->out, "Run", run_id(p->report));
+    term_text(p->out, "Tested", specimen->started);
+    term_text(p->out, "Operator", specimen->operator_name);
+    term_text(p->out, "Rig", specimen->rig);
+    term_text(p->out, "Geometry", an_geometry_word(specimen->geometry.kind));
     write_geometry(p->out, &specimen->geometry);
     if (p->report->has_points) {
         const an_apparatus *apparatus = &p->report->points.apparatus;
-        term(p->out, "Apparatus", apparatus->id);
-        term(p->out, "Calibrated", apparatus->calibrated);
-        term(p->out, "Calibration ends", apparatus->valid_until);
-        term(p->out, "Certificate", apparatus->certificate);
+        term_text(p->out, "Apparatus", apparatus->id);
+        term_text(p->out, "Calibrated", apparatus->calibrated);
+        term_text(p->out, "Calibration ends", apparatus->valid_until);
+        term_text(p->out, "Certificate", apparatus->certificate);
     }
     fputs("</dl>\n</section>\n", p->out);
 }

@@ -175,7 +175,7 @@ static void add_reading(const page *p, an_figure *figure)
     markup_number(out, r->frequency_Hz, 3);
     fputs(" Hz", out);
     fclose(out);
-    an_figure_add_rule(figure, r->temperature_K - ZERO_CELSIUS_K, name);
+    an_figure_add_rule(figure, r->temperature_K - AN_ZERO_CELSIUS_K, name);
 }
 
 static void figure_along(page *p, strand *s, direction way)

@@ -180,6 +180,15 @@ void cell_integer(FILE *out, long value)
     fprintf(out, "<td class=\"n\">%ld</td>", value);
 }
 
+void term_text(FILE *out, const char *name, const char *text)
+{
+    if (!text || !text[0])
+        return;
+    fprintf(out, "<dt>%s</dt><dd>", name);
+    markup_plain(out, text);
+    fputs("</dd>\n", out);
+}
+
 /* A head with the modulus's letter put in. */
 static void write_head_text(page *p, const char *head)
 {

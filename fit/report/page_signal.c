@@ -232,7 +232,7 @@ static void write_which(page *p)
         fputs(": ", p->out);
         markup_number(p->out, point->frequency_Hz, 4);
         fputs(" Hz at ", p->out);
-        markup_fixed(p->out, point->temperature_K - ZERO_CELSIUS_K, 1);
+        markup_fixed(p->out, point->temperature_K - AN_ZERO_CELSIUS_K, 1);
         fputs(" °C, signal-to-noise ratio ", p->out);
         markup_number(p->out, point->snr_dB, 3);
         fputs(" dB", p->out);

@@ -76,7 +76,7 @@ static void time_label(char *label, size_t size, const char *what, double refere
     if (!out)
         return;
     fprintf(out, "%s (s) at ", what);
-    markup_fixed(out, reference_K - ZERO_CELSIUS_K, 1);
+    markup_fixed(out, reference_K - AN_ZERO_CELSIUS_K, 1);
     fputs(" °C", out);
     fclose(out);
 }
@@ -143,35 +143,26 @@ static void range_term(FILE *out, const char *name, double from, double to, cons
     fprintf(out, " %s</dd>\n", unit);
 }
 
-static void text_term(FILE *out, const char *name, const char *text)
-{
-    if (!text[0])
-        return;
-    fprintf(out, "<dt>%s</dt><dd>", name);
-    markup_plain(out, text);
-    fputs("</dd>\n", out);
-}
-
 static void write_summary(page *p, const an_material *m)
 {
     fputs("<dl>\n", p->out);
-    text_term(p->out, "Modulus", m->is_shear ? "shear, G" : "tension, E");
+    term_text(p->out, "Modulus", m->is_shear ? "shear, G" : "tension, E");
     number_term(p->out, "Instantaneous, inside the window", m->instantaneous_Pa / 1e6, "MPa");
     number_term(p->out, "Long-term", m->long_term_Pa / 1e6, "MPa");
-    text_term(p->out, "End state", m->end_state);
+    term_text(p->out, "End state", m->end_state);
     fputs("<dt>Reference temperature</dt><dd>", p->out);
-    markup_fixed(p->out, m->reference_temperature_K - ZERO_CELSIUS_K, 2);
+    markup_fixed(p->out, m->reference_temperature_K - AN_ZERO_CELSIUS_K, 2);
     fputs(" °C</dd>\n", p->out);
     number_term(p->out, "Off the data, rms", 100 * m->fit_error, "%");
     number_term(p->out, "Off the data, worst", 100 * m->fit_error_worst, "%");
     number_term(p->out, "Common uncertainty of all moduli", 100 * m->u_common_relative, "%");
     range_term(p->out, "Trusted times", m->window_time_s[0], m->window_time_s[1], "s");
-    range_term(p->out, "Measured temperatures", m->window_temperature_K[0] - ZERO_CELSIUS_K,
-               m->window_temperature_K[1] - ZERO_CELSIUS_K, "°C");
+    range_term(p->out, "Measured temperatures", m->window_temperature_K[0] - AN_ZERO_CELSIUS_K,
+               m->window_temperature_K[1] - AN_ZERO_CELSIUS_K, "°C");
     number_term(p->out, "Greatest strain amplitude", 100 * m->strain_limit, "%");
-    text_term(p->out, "Shift law", page_law_name(m->law.kind));
-    text_term(p->out, "Vertical shift", m->vertical);
-    text_term(p->out, "Handed over in spite of its verdict", m->override_reason);
+    term_text(p->out, "Shift law", page_law_name(m->law.kind));
+    term_text(p->out, "Vertical shift", m->vertical);
+    term_text(p->out, "Handed over in spite of its verdict", m->override_reason);
     fputs("</dl>\n", p->out);
 }
 

@@ -37,7 +37,7 @@ static bool shift_arrays_new(page *p, shift_arrays *s)
     const an_law *law = chosen_law(master);
     for (size_t i = 0; i < n; i++) {
         const an_shift *shift = &master->shift[i];
-        s->T[i] = shift->temperature_K - ZERO_CELSIUS_K;
+        s->T[i] = shift->temperature_K - AN_ZERO_CELSIUS_K;
         s->log_a[i] = shift->log10_aT;
         s->bar_a[i] = PAGE_COVERAGE * shift->u_log10_aT;
         s->noise_a[i] = PAGE_COVERAGE * shift->u_noise_log10_aT;
@@ -95,7 +95,7 @@ static void add_law(page *p, an_figure *figure)
     for (int i = 0; i < PAGE_CURVE; i++) {
         double kelvin = from + (to - from) * i / (PAGE_CURVE - 1);
         double u = PAGE_COVERAGE * an_law_u_log10_aT(law, kelvin);
-        T[i] = kelvin - ZERO_CELSIUS_K;
+        T[i] = kelvin - AN_ZERO_CELSIUS_K;
         if (an_law_log10_aT(law, kelvin, AN_RANGE_MARK, &y[i], NULL) < 0)
             y[i] = NAN;
         low[i] = y[i] - u;
@@ -134,7 +134,7 @@ static void figure_shifts(page *p)
         an_figure_add_panel(figure, &(an_figure_axis){.label = "log_{10} a_{T}", .symbol = "log a"}, 190);
         add_law(p, figure);
         add_shifts(p, figure, s.T, &(shift_column){s.log_a, s.bar_a, "log a"});
-        an_figure_add_rule(figure, master->reference_temperature_K - ZERO_CELSIUS_K, "reference");
+        an_figure_add_rule(figure, master->reference_temperature_K - AN_ZERO_CELSIUS_K, "reference");
         an_figure_add_panel(figure, &(an_figure_axis){.label = "off law", .symbol = "log a − law"}, 80);
         an_figure_add_level(figure, 0);
         add_shifts(p, figure, s.T, &(shift_column){s.miss, s.noise_a, "log a off law"});
@@ -202,7 +202,7 @@ static double isotherm_temperature(const an_master *master, int isotherm)
 {
     for (int i = 0; i < master->n_point; i++)
         if (master->point[i].isotherm == isotherm)
-            return master->point[i].temperature_K - ZERO_CELSIUS_K;
+            return master->point[i].temperature_K - AN_ZERO_CELSIUS_K;
     return NAN;
 }
 
@@ -332,7 +332,7 @@ void section_superposition(page *p)
         fprintf(p->out, "<p><b>Verdict: %s.</b> ", an_simplicity_word(master->simplicity));
         page_sentence(p->out, master->simplicity_reason);
         fputs(" Reference temperature ", p->out);
-        markup_fixed(p->out, master->reference_temperature_K - ZERO_CELSIUS_K, 2);
+        markup_fixed(p->out, master->reference_temperature_K - AN_ZERO_CELSIUS_K, 2);
         fprintf(p->out, " °C; vertical shift: %s.</p>\n<div class=\"figures\">\n",
                 an_vertical_word(master->vertical));
         figure_master(p);

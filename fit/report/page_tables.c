@@ -42,7 +42,7 @@ static void point_row(FILE *out, const an_point *point)
     fprintf(out, "<tr%s>", point->state == AN_POINT_SKIPPED ? " class=\"muted\"" : "");
     cell_integer(out, point->burst);
     cell_text(out, state_word(point->state));
-    cell_fixed(out, point->temperature_K - ZERO_CELSIUS_K, 2);
+    cell_fixed(out, point->temperature_K - AN_ZERO_CELSIUS_K, 2);
     cell_number(out, point->frequency_Hz, 4);
     cell_number(out, point->storage_Pa / 1e6, 5);
     cell_number(out, u_noise(point, 0) / 1e6, 2);
@@ -88,9 +88,9 @@ static void table_isotherms(page *p)
     for (int i = 0; i < grid->n_isotherm; i++) {
         const an_isotherm *isotherm = &grid->isotherm[i];
         fputs("<tr>", p->out);
-        cell_fixed(p->out, isotherm->temperature_K - ZERO_CELSIUS_K, 2);
+        cell_fixed(p->out, isotherm->temperature_K - AN_ZERO_CELSIUS_K, 2);
         cell_number(p->out, isotherm->u_temperature_K, 2);
-        cell_fixed(p->out, isotherm->set_temperature_K - ZERO_CELSIUS_K, 2);
+        cell_fixed(p->out, isotherm->set_temperature_K - AN_ZERO_CELSIUS_K, 2);
         cell_integer(p->out, isotherm->n_cell);
         cell_number(p->out, isotherm->drift_K, 2);
         cell_number(p->out, 60 * isotherm->rate_K_s, 2);
@@ -118,7 +118,7 @@ static void table_readings(page *p)
         fputs("<tr>", p->out);
         cell_text(p->out, an_reading_word(reading->kind));
         cell_number(p->out, reading->frequency_Hz, 4);
-        cell_fixed(p->out, reading->temperature_K - ZERO_CELSIUS_K, 2);
+        cell_fixed(p->out, reading->temperature_K - AN_ZERO_CELSIUS_K, 2);
         bool stands = isfinite(reading->temperature_K);
         cell_number(p->out, stands ? reading->u_noise_K : NAN, 2);
         cell_number(p->out, stands ? reading->u_form_K : NAN, 2); /* of the curve between isotherms */
@@ -241,7 +241,7 @@ static void table_corrections(page *p)
         if (worst) {
             cell_integer(p->out, worst->burst);
             cell_number(p->out, worst->frequency_Hz, 4);
-            cell_fixed(p->out, worst->temperature_K - ZERO_CELSIUS_K, 2);
+            cell_fixed(p->out, worst->temperature_K - AN_ZERO_CELSIUS_K, 2);
         } else {
             fputs("<td></td><td></td><td></td>", p->out);
         }

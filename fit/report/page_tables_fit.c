@@ -15,7 +15,7 @@ static void table_shifts(page *p)
     for (int i = 0; i < master->n_shift; i++) {
         const an_shift *s = &master->shift[i];
         fprintf(p->out, "<tr%s>", s->determined ? "" : " class=\"muted\"");
-        cell_fixed(p->out, s->temperature_K - ZERO_CELSIUS_K, 2);
+        cell_fixed(p->out, s->temperature_K - AN_ZERO_CELSIUS_K, 2);
         cell_with_u(p->out, s->log10_aT, s->u_log10_aT);
         cell_number(p->out, s->u_noise_log10_aT, 2);
         cell_number(p->out, s->u_common_log10_aT, 2);
@@ -62,7 +62,7 @@ static void cell_constants(FILE *out, const an_law *law)
         fprintf(out, "%s%s", unit[0] ? " " : "", unit);
         if (an_law_constant_name(law->kind, k)[0] == 'c') {
             fputs(" at ", out);
-            markup_fixed(out, wlf_K - ZERO_CELSIUS_K, 2);
+            markup_fixed(out, wlf_K - AN_ZERO_CELSIUS_K, 2);
             fputs(" °C", out);
         }
     }
@@ -78,12 +78,12 @@ static void cell_range(FILE *out, const an_law *law)
         return;
     }
     if (law->valid_from_K > 0)
-        markup_fixed(out, law->valid_from_K - ZERO_CELSIUS_K, 1);
+        markup_fixed(out, law->valid_from_K - AN_ZERO_CELSIUS_K, 1);
     else
         fputs("open", out);
     fputs(" to ", out);
     if (isfinite(law->valid_to_K))
-        markup_fixed(out, law->valid_to_K - ZERO_CELSIUS_K, 1);
+        markup_fixed(out, law->valid_to_K - AN_ZERO_CELSIUS_K, 1);
     else
         fputs("open", out);
     fputs("</td>", out);

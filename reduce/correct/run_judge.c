@@ -156,13 +156,13 @@ static an_status judge_temperature_unit(const an_points *points, an_error *err)
         return an_fail(err, AN_E_SCIENCE, NULL,
                        "burst %d: a temperature of %.1f °C is below absolute zero, and so in %d of %d bursts; check "
                        "the unit of temperature in the layout",
-                       below->burst, below->temperature_K - 273.15, n_below, points->n_point);
+                       below->burst, below->temperature_K - AN_ZERO_CELSIUS_K, n_below, points->n_point);
     if (2 * n_far > points->n_point)
         return an_fail(err, AN_E_SCIENCE, NULL,
                        "burst %d: %.1f °C was measured where %.1f °C was set, more than %d K apart in %d of %d "
                        "bursts; check the units of temperature in the layout",
-                       far->burst, far->temperature_K - 273.15, far->set_temperature_K - 273.15, FAR_K, n_far,
-                       points->n_point);
+                       far->burst, far->temperature_K - AN_ZERO_CELSIUS_K,
+                       far->set_temperature_K - AN_ZERO_CELSIUS_K, FAR_K, n_far, points->n_point);
     return AN_OK;
 }
 
@@ -176,8 +176,8 @@ static an_status skip_frozen(an_points *points, int first, int last, double long
     for (int i = first; i <= last; i++) {
         an_point *p = &points->point[i];
         AN_TRY(an_remark_list_add(&p->remarks, "temperature-frozen", p->burst, err,
-                                  "the temperature stands at %.2f °C for %.0f min without moving", p->temperature_K - 273.15,
-                                  length / 60));
+                                  "the temperature stands at %.2f °C for %.0f min without moving",
+                                  p->temperature_K - AN_ZERO_CELSIUS_K, length / 60));
         an_point_settle(p);
         ++*n_skipped;
     }

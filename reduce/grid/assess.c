@@ -10,7 +10,7 @@
 
 static double degc(double temperature_K)
 {
-    return temperature_K - 273.15;
+    return temperature_K - AN_ZERO_CELSIUS_K;
 }
 
 __attribute__((format(printf, 2, 3))) static void say(an_assessment *assessment, const char *format, ...)
