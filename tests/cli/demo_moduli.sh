@@ -21,7 +21,7 @@ sys.path.insert(0, sys.argv[1])
 import make_dumps
 
 failed = False
-for table, material, n in (("RP-0522-1.csv.csv", make_dumps.PAD, 66), ("HL-0140.bin.csv", make_dumps.RESIN, 55)):
+for table, material, n in (("RP-0522-1.csv.csv", make_dumps.PAD, 66), ("HL-0140.bin.csv", make_dumps.RESIN, 70)):
     normalised, relative = [], []
     for row in csv.DictReader(open(table)):
         truth = material.modulus(float(row["frequency_Hz"]), float(row["temperature_K"]))

@@ -205,7 +205,7 @@ cp "$laminates/HL-0140.txt" .
 layout=$laminates/layout.xml
 specimen=$laminates/specimen.xml
 cp "$laminates/HL-0140.bin" .
-accept HL-0140.bin '<end bursts="55"/>'
+accept HL-0140.bin '<end bursts="70"/>'
 head -c -1001 "$laminates/HL-0140.bin" >HL-0140.bin
 refuse 1 HL-0140.bin "HL-0140.bin: " "one channel after the other"
 cp "$laminates/HL-0140.bin" .
