@@ -3,11 +3,12 @@
  * over the cycles it kept. Of a long oscillation the last whole cycles are drawn, of a long hold or pull
  * every few samples.
  */
-#include "anelast/sinefit.h"
+#include "anelast/quality.h"
 #include "fit/report/page.h"
 
 #include <math.h>
 #include <stdlib.h>
+#include <string.h>
 
 enum { DRAWN = 2000, QUANTITIES = 7 }; /* most samples of a figure; arrays of a sketch */
 
@@ -75,6 +76,23 @@ static choice_of_samples choose_samples(const an_report_wave *w, double frequenc
     return (choice_of_samples){cycles >= 1 && first > w->n - DRAWN ? first : w->n - DRAWN, 1};
 }
 
+/* The fit of the phase stage: without clipped samples, nor those that only their noise kept from the end. */
+static an_status fit_unclipped(an_waveform *waveform, unsigned char *use, double frequency_Hz, an_sinefit *fit,
+                               double *residual)
+{
+    an_sinefit_choice choice;
+    an_clipping clipping;
+    memset(use, 1, (size_t)waveform->n);
+    waveform->use = use;
+    an_clip_find(waveform, frequency_Hz, NULL, use, &clipping);
+    an_sinefit_choice_init(&choice);
+    choice.frequency_Hz = frequency_Hz;
+    AN_TRY(an_sinefit_run(waveform, &choice, fit, residual, NULL));
+    if (!an_clip_guard(waveform, 0, &clipping, fit->deviation, residual, use))
+        return AN_OK;
+    return an_sinefit_run(waveform, &choice, fit, residual, NULL);
+}
+
 /* Residuals of both channels over the kept cycles, [2][n - start]; NULL where the fit is refused or memory is
  * short, since the data are shown all the same. amplitude [out] [2] [SI]. */
 static double *fit_residuals(const an_report_wave *w, size_t start, double frequency_Hz, double amplitude[2])
@@ -83,16 +101,16 @@ static double *fit_residuals(const an_report_wave *w, size_t start, double frequ
     double *residual = calloc(2 * n + 1, sizeof *residual);
     an_waveform waveform = {
         .n = (int)n, .time_s = w->time_s + start, .y = {w->displacement + start, w->force + start}};
-    an_sinefit_choice choice;
+    unsigned char *use = malloc(n + 1);
     an_sinefit fit;
-    an_sinefit_choice_init(&choice);
-    choice.frequency_Hz = frequency_Hz;
-    if (!residual || an_sinefit_run(&waveform, &choice, &fit, residual, NULL) < 0) {
+    bool fitted = residual && use && fit_unclipped(&waveform, use, frequency_Hz, &fit, residual) >= 0;
+    for (int k = 0; k < 2 && fitted; k++)
+        amplitude[k] = cabs(fit.amplitude[k][0]);
+    free(use);
+    if (!fitted) {
         free(residual);
         return NULL;
     }
-    for (int k = 0; k < 2; k++)
-        amplitude[k] = cabs(fit.amplitude[k][0]);
     return residual;
 }
 

@@ -99,11 +99,11 @@ an_status an_judge_clipping(an_reduction *r, an_error *err)
     for (int c = 0; c < AN_CHANNELS; c++) {
         int clipped = r->clipping.n_end[c];
         if (clipped > r->limits->clipped_most * r->samples.n)
-            REMARK_AS(r, "clipping", AN_SKIP, "%s stands at its end for %d of %d samples, more than %.0f %%",
+            REMARK_AS(r, "clipping", AN_SKIP, "%s stands at the end of its range for %d of %d samples, more than %.0f %%",
                       CHANNEL[c], clipped, r->samples.n, 100 * r->limits->clipped_most);
         else if (r->clipping.n_run[c] >= r->limits->clipped_least)
             REMARK(r, "clipping",
-                   "%s stands at its end for %d samples, up to %d in a row; they were left out of the fit",
+                   "%s stands at the end of its range for %d samples, up to %d in a row; they were left out of the fit",
                    CHANNEL[c], clipped, r->clipping.n_run[c]);
         else if (clipped)
             REMARK_AS(r, "clipping", AN_NOTE,
