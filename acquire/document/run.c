@@ -12,11 +12,6 @@
 
 static const char *const kinds[] = {"oscillation", "hold", "pull", NULL};
 
-const char *an_burst_kind_word(an_burst_kind kind)
-{
-    return kinds[kind];
-}
-
 void an_run_init(an_run *run)
 {
     memset(run, 0, sizeof *run);

@@ -56,11 +56,6 @@ bool an_signal_quantity_find(const char *name, an_signal_quantity *quantity)
     return false;
 }
 
-const char *an_coding_name(an_signal_coding coding)
-{
-    return codings[coding].name;
-}
-
 size_t an_coding_size(an_signal_coding coding)
 {
     return codings[coding].size;

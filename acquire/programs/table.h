@@ -28,9 +28,6 @@ typedef struct an_table {
     size_t n_columns;
 } an_table;
 
-/* an_table_row: the i_row-th table of all, NULL past the end. */
-const an_table *an_table_row(size_t i_row);
-
 /* an_table_find: a table of a kind of document by name; NULL: its main table. NULL where there is none. */
 const an_table *an_table_find(const char *root, const char *name);
 

@@ -270,11 +270,6 @@ static const an_table tables[] = {
      COLUMNS(makers)},
 };
 
-const an_table *an_table_row(size_t i_row)
-{
-    return i_row < sizeof tables / sizeof tables[0] ? &tables[i_row] : NULL;
-}
-
 const an_table *an_table_find(const char *root, const char *name)
 {
     for (size_t i = 0; i < sizeof tables / sizeof tables[0]; i++) {

@@ -66,9 +66,6 @@ void an_run_clear(an_run *run);
 void an_burst_init(an_burst *burst);
 void an_burst_clear(an_burst *burst);
 
-/* an_burst_kind_word: the kind in documents: "oscillation", "hold", "pull". */
-const char *an_burst_kind_word(an_burst_kind kind);
-
 /* an_run_write_head / _burst / _end: write the document piece by piece, root element open; errors of the
  * stream show when it is committed. The head sets run->n_written; bursts are numbered by the caller, who sets
  * run->n_burst before the end. an_run_write_burst returns AN_OK or AN_E_MEMORY. */

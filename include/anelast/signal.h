@@ -52,8 +52,7 @@ const char *an_signal_quantity_unit(an_signal_quantity quantity);
 /* an_signal_quantity_find: the quantity of a word. Returns false where there is none. */
 bool an_signal_quantity_find(const char *name, an_signal_quantity *quantity);
 
-/* an_coding_name, an_coding_size: word in documents ("int16") and bytes of one sample. */
-const char *an_coding_name(an_signal_coding coding);
+/* an_coding_size: bytes of one sample. */
 size_t an_coding_size(an_signal_coding coding);
 
 /* an_signal_allocate: room for count samples of a coding, zeros. Returns AN_OK or AN_E_MEMORY. */
