@@ -1,5 +1,5 @@
-/* Where the schemas are: the folder named in the environment, the source while programs are built and tested,
- * or the place where they were installed.
+/* Where the schemas are: the folder named in the environment; the one installed with the running program, wherever that
+ * was put; the source while programs are built and tested; or the place they were configured for.
  */
 #include "anelast/xml.h"
 
@@ -14,14 +14,33 @@ static bool is_plain(const char *root)
     return n > 0 && n < 32 && root[n] == '\0';
 }
 
+/* The schemas of the prefix that the running program stands in: PREFIX/bin/program, PREFIX/include/anelast/schema. Empty
+ * where the program's own place is not known. */
+static void beside_program(char *folder, size_t n_folder)
+{
+    char program[4096];
+    ssize_t n = readlink("/proc/self/exe", program, sizeof program - 1);
+    *folder = '\0';
+    if (n <= 0)
+        return;
+    program[n] = '\0';
+    char *slash = strrchr(program, '/');
+    if (slash)
+        *slash = '\0';
+    if (snprintf(folder, n_folder, "%s/../include/anelast/schema", program) >= (int)n_folder || access(folder, X_OK) != 0)
+        *folder = '\0';
+}
+
 an_status an_xml_schema_path(const char *root, char *path, size_t n_path, an_error *err)
 {
-    const char *folders[] = {getenv("ANELAST_SCHEMA_DIR"), ANELAST_SOURCE_SCHEMA, ANELAST_INSTALLED_SCHEMA};
+    char installed[4096];
+    const char *folders[] = {getenv("ANELAST_SCHEMA_DIR"), installed, ANELAST_SOURCE_SCHEMA, ANELAST_INSTALLED_SCHEMA};
     const char *looked = NULL;
+    beside_program(installed, sizeof installed);
     if (!is_plain(root))
         return an_fail(err, AN_E_DOCUMENT, NULL, "element '%.40s' is not the root of a document known here",
                        root);
-    for (size_t i = 0; i < 3; i++) {
+    for (size_t i = 0; i < sizeof folders / sizeof *folders; i++) {
         if (!folders[i] || !*folders[i])
             continue;
         looked = folders[i];

@@ -100,7 +100,7 @@ void an_xml_document_clear(an_xml_document *document);
 bool an_xml_sniff(const char *head, char *name, size_t n_name);
 
 /* an_xml_schema_path: the path of the schema of a root element, from ANELAST_SCHEMA_DIR in the environment,
- * the source, or where it was installed. Returns AN_OK or AN_E_IO with the folders that were looked at. */
+ * the prefix that the running program was installed in, the source, or the place they were configured for. Returns AN_OK or AN_E_IO with the folders that were looked at. */
 an_status an_xml_schema_path(const char *root, char *path, size_t n_path, an_error *err);
 
 /* ---- finding things in a node ---- */

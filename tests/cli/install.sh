@@ -46,9 +46,14 @@ CMAKE
 built/tree/uses || fail "the program built by find_package ends with $?"
 
 lab=$ANELAST_SOURCE/fixtures/lower_quay/rail_pad
-export ANELAST_SCHEMA_DIR=$PWD/prefix/include/anelast/schema
-diff -r "$ANELAST_SOURCE/include/anelast/schema" "$ANELAST_SCHEMA_DIR" >/dev/null || fail "the installed schemas are other ones"
+schemas=$PWD/prefix/include/anelast/schema
+diff -r "$ANELAST_SOURCE/include/anelast/schema" "$schemas" >/dev/null || fail "the installed schemas are other ones"
 prefix/bin/anelast "$lab/RP-0522-1.csv" --layout "$lab/layout.xml" --specimen "$lab/specimen.xml" \
     --apparatus "$lab/apparatus.xml" --into results >out.txt 2>err.txt || fail "the installed anelast: $(cat err.txt)"
 [ -s "$(find results -name material.xml)" ] || fail "the installed anelast made no material"
+
+# it is the installed schemas that the installed programs read, not the source's
+rm "$schemas/grid.xsd"
+prefix/bin/anelast-table "$(find results -name grid.xml)" >out.txt 2>err.txt && fail "a schema that is gone was not missed"
+grep -q "no schema grid.xsd in .*prefix" err.txt || fail "where the schema was looked for: $(cat err.txt)"
 exit $failed
