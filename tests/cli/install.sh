@@ -41,7 +41,7 @@ find_package(anelast REQUIRED)
 add_executable(uses uses.c)
 target_link_libraries(uses PRIVATE anelast::anelast m)
 CMAKE
-{ cmake -S built/source -B built/tree -DCMAKE_PREFIX_PATH="$PWD/prefix" && cmake --build built/tree; } >built.log 2>&1 ||
+{ cmake -G Ninja -S built/source -B built/tree -DCMAKE_PREFIX_PATH="$PWD/prefix" && cmake --build built/tree; } >built.log 2>&1 ||
     { cat built.log; fail "a program by find_package does not build"; }
 built/tree/uses || fail "the program built by find_package ends with $?"
 
