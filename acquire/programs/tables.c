@@ -5,22 +5,10 @@
 
 #include <string.h>
 
-#define COLUMNS(columns) columns, sizeof columns / sizeof columns[0]
+#define COLUMNS(columns)           columns, sizeof columns / sizeof columns[0]
+#define COLUMNS_BUT_FIRST(columns) columns + 1, sizeof columns / sizeof columns[0] - 1
 
-static const an_column points[] = {
-    {"burst", "@burst", NULL},
-    {"temperature_K", "temperature/@value", "K"},
-    {"frequency_Hz", "frequency/@value", "Hz"},
-    {"storage_Pa", "storage/@value", "Pa"},
-    {"loss_Pa", "loss/@value", "Pa"},
-    {"loss_factor", "loss_factor/@value", "1"},
-    {"u_noise_storage_Pa", "storage/@u_noise", "Pa"},
-    {"u_noise_loss_Pa", "loss/@u_noise", "Pa"},
-    {"u_common_storage_Pa", "storage/@u_common", "Pa"},
-    {"u_common_loss_Pa", "loss/@u_common", "Pa"},
-    {"remarks", "codes()", NULL},
-};
-
+/* The grid's table of cells; a table of points is the same without the isotherm. */
 static const an_column cells[] = {
     {"isotherm", "../@n", NULL},
     {"burst", "@burst", NULL},
@@ -228,7 +216,7 @@ static const an_column makers[] = {
 };
 
 static const an_table tables[] = {
-    {"points", "points", "point", "one burst reduced: its complex modulus", COLUMNS(points)},
+    {"points", "points", "point", "one burst reduced: its complex modulus", COLUMNS_BUT_FIRST(cells)},
     {"points", "covariance", "point/noise", "noise covariance of one burst", COLUMNS(covariance)},
     {"points", "budget", "point/common", "what one source of common uncertainty does to one burst",
      COLUMNS(budget)},
@@ -237,7 +225,7 @@ static const an_table tables[] = {
     {"points", "quality", "point", "the record of one burst", COLUMNS(quality)},
     {"grid", "cells", "isotherm/cell", "one temperature and frequency: the complex modulus", COLUMNS(cells)},
     {"grid", "isotherms", "isotherm", "one isotherm", COLUMNS(isotherms)},
-    {"grid", "ramp", "ramp/cell", "one burst on a ramp", COLUMNS(points)},
+    {"grid", "ramp", "ramp/cell", "one burst on a ramp", COLUMNS_BUT_FIRST(cells)},
     {"grid", "readings", "reading", "one glass-transition reading", COLUMNS(readings)},
     {"grid", "reasons", "assessment/reason", "one reason of the assessment", COLUMNS(reasons)},
     {"grid", "covariance", "isotherm/cell/noise", "noise covariance of one cell", COLUMNS(covariance)},

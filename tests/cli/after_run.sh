@@ -1,16 +1,6 @@
 #!/usr/bin/env bash
 # anelast: the folder after a run, what the terminal says, replacing and refusing, stages that refuse, nothing left behind.
-set -u
-bin=$ANELAST_BIN
-failed=0
-fail() { echo "FAIL $*"; failed=1; }
-expect_code() { # code, what, command...
-    local code=$1 what=$2
-    shift 2
-    "$@" >out.txt 2>err.txt
-    local got=$?
-    [ "$got" -eq "$code" ] || { fail "$what: exit $got, expected $code"; cat out.txt err.txt; }
-}
+. "$ANELAST_SOURCE/tests/command_line.bash"
 says() { grep -q -- "$2" out.txt || { fail "$1: the terminal does not say '$2'"; cat out.txt; }; }
 complains() { grep -q -- "$2" err.txt || { fail "$1: no word of '$2'"; cat err.txt; }; }
 short() { [ "$(wc -l <out.txt)" -lt 15 ] || fail "$1: $(wc -l <out.txt) lines on the terminal"; }

@@ -1,16 +1,6 @@
 #!/usr/bin/env bash
 # anelast-grid: files and pipes, replicates, the same bytes twice, refusals with their exit codes and nothing left behind.
-set -u
-bin=$ANELAST_BIN
-failed=0
-fail() { echo "FAIL $*"; failed=1; }
-expect_code() { # code, what, command...
-    local code=$1 what=$2
-    shift 2
-    "$@" >out.txt 2>err.txt
-    local got=$?
-    [ "$got" -eq "$code" ] || { fail "$what: exit $got, expected $code"; cat err.txt; }
-}
+. "$ANELAST_SOURCE/tests/command_line.bash"
 points_of() { # folder, options of made_dump.py...
     local folder=$1
     shift

@@ -1,9 +1,7 @@
 #!/usr/bin/env bash
 # An installation under a prefix of its own: a program that links it by pkg-config and one by find_package, and the
 # installed anelast with the installed schemas.
-set -u
-failed=0
-fail() { echo "FAIL $*"; failed=1; }
+. "$ANELAST_SOURCE/tests/command_line.bash"
 rm -rf prefix built results
 cmake --install "$ANELAST_BIN/.." --prefix "$PWD/prefix" >install.log 2>&1 || { cat install.log; exit 1; }
 

@@ -1,17 +1,11 @@
 #!/bin/bash
 # Bad dumps: each gives its message with program, file, line and what is allowed, its exit code, and no output file; what can
 # be saved of a cut dump is saved, and held. The dumps are pieces of the demo lab's, each broken in one way.
-set -u
-failed=0
+. "$ANELAST_SOURCE/tests/command_line.bash"
 lab=$ANELAST_SOURCE/fixtures/lower_quay
 pads=$lab/rail_pad
 laminates=$lab/hull_laminate
 rm -rf work && mkdir work && cd work || exit 1
-
-fail() {
-    echo "FAIL: $*" >&2
-    failed=1
-}
 
 # The first four bursts of a good dump: 12 lines of head, 1 of units, 128 rows a burst.
 head -n 525 "$pads/RP-0522-1.csv" >good.csv

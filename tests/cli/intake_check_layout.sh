@@ -1,13 +1,7 @@
 #!/bin/bash
 # A layout's self-test: met as it stands, and each change that reads the excerpt otherwise is found and named.
-set -u
-failed=0
+. "$ANELAST_SOURCE/tests/command_line.bash"
 layout=$ANELAST_SOURCE/fixtures/lower_quay/rail_pad/layout.xml
-
-fail() {
-    echo "FAIL: $*" >&2
-    failed=1
-}
 
 "$ANELAST_BIN/anelast-intake" --check-layout "$layout" >out.txt 2>err.txt || fail "the layout as it stands: $(cat err.txt)"
 grep -q "2 bursts in the excerpt, 11 expectations met" out.txt || fail "$(cat out.txt)"

@@ -1,15 +1,9 @@
 #!/bin/bash
 # One dump in many dialects: encodings and marks, separators, decimal marks, line ends, comments, quotes, repeated headers,
 # footers, units in the layout or in the dump, no header at all. Each must give the same bursts, bit for bit, as the plain one.
-set -u
-failed=0
+. "$ANELAST_SOURCE/tests/command_line.bash"
 pads=$ANELAST_SOURCE/fixtures/lower_quay/rail_pad
 rm -rf work && mkdir work && cd work || exit 1
-
-fail() {
-    echo "FAIL: $*" >&2
-    failed=1
-}
 
 # Six bursts; the operator's name is beyond ASCII, so that a wrong decoding shows.
 head -n 781 "$pads/RP-0522-1.csv" | sed '5s/late shift/Jörg Müller/' >plain.csv

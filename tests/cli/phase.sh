@@ -1,17 +1,7 @@
 #!/usr/bin/env bash
 # anelast-phase: file and pipe, the same bytes twice, valid by its schema, choices taken and recorded; refusals with their
 # exit codes, and nothing left behind.
-set -u
-bin=$ANELAST_BIN
-failed=0
-fail() { echo "FAIL $*"; failed=1; }
-expect_code() { # code, what, command...
-    local code=$1 what=$2
-    shift 2
-    "$@" >out.txt 2>err.txt
-    local got=$?
-    [ "$got" -eq "$code" ] || { fail "$what: exit $got, expected $code"; cat err.txt; }
-}
+. "$ANELAST_SOURCE/tests/command_line.bash"
 expect_text() { grep -q -- "$2" err.txt || { fail "$1: no '$2' in the message"; cat err.txt; }; }
 expect_absent() { [ ! -e "$2" ] || { fail "$1: $2 was left behind"; rm -f "$2"; }; }
 run_of() { # layout, name: a run document of the made dump under another layout

@@ -1,18 +1,8 @@
 #!/usr/bin/env bash
 # anelast-prony: a made material against its closed form, a complex one refused unless overridden in writing, bad input.
-set -u
-bin=$ANELAST_BIN
+. "$ANELAST_SOURCE/tests/command_line.bash"
 schema=$ANELAST_SOURCE/include/anelast/schema/material.xsd
 export SOURCE_DATE_EPOCH=1772487600
-failed=0
-fail() { echo "FAIL $*"; failed=1; }
-expect_code() { # code, what, command...
-    local code=$1 what=$2
-    shift 2
-    "$@" >out.txt 2>err.txt
-    local got=$?
-    [ "$got" -eq "$code" ] || { fail "$what: exit $got, expected $code"; cat err.txt; }
-}
 expect_words() { # what, words in err.txt...
     local what=$1
     shift

@@ -1,15 +1,9 @@
 #!/bin/bash
 # The page of a run, from a fixture dump through the stage programs: opened in a headless browser without a word on its
 # console, well-formed, nothing loaded from outside, the same bytes twice, and refusals with their exit codes.
-set -u
-failed=0
+. "$ANELAST_SOURCE/tests/command_line.bash"
 export SOURCE_DATE_EPOCH=1795000000
 lab=$ANELAST_SOURCE/fixtures/lower_quay/rail_pad
-
-fail() {
-    echo "FAIL: $*" >&2
-    failed=1
-}
 
 # refuse CODE WORDS COMMAND...: the exit code, WORDS on standard error, no page left behind.
 refuse() {

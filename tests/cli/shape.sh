@@ -1,14 +1,8 @@
 #!/bin/bash
 # The shape that all programs share: help and version on standard output, wrong usage on standard error with exit code 2, a
 # standard output that cannot be written found with exit code 3, and nothing left behind by a refusal.
-set -u
-failed=0
+. "$ANELAST_SOURCE/tests/command_line.bash"
 n_programs=0
-
-fail() {
-    echo "FAIL: $*" >&2
-    failed=1
-}
 
 # expect CODE COMMAND...: run with streams in out and err.
 expect() {

@@ -1,17 +1,7 @@
 #!/usr/bin/env bash
 # anelast-shift: a made solid's shift factors and law against its closed form, pipe and file, choices, a complex material, refusals.
-set -u
-bin=$ANELAST_BIN
+. "$ANELAST_SOURCE/tests/command_line.bash"
 export SOURCE_DATE_EPOCH=1772487600
-failed=0
-fail() { echo "FAIL $*"; failed=1; }
-expect_code() { # code, what, command...
-    local code=$1 what=$2
-    shift 2
-    "$@" >out.txt 2>err.txt
-    local got=$?
-    [ "$got" -eq "$code" ] || { fail "$what: exit $got, expected $code"; cat err.txt; }
-}
 grid_of() { # folder, options of made_dump.py...
     local folder=$1
     shift

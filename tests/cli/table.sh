@@ -1,16 +1,6 @@
 #!/usr/bin/env bash
 # anelast-table: the fixed heads, escaping, units, other tables, refusals with their exit codes.
-set -u
-bin=$ANELAST_BIN
-failed=0
-fail() { echo "FAIL $*"; failed=1; }
-expect_code() { # code, what, command...
-    local code=$1 what=$2
-    shift 2
-    "$@" >out.txt 2>err.txt
-    local got=$?
-    [ "$got" -eq "$code" ] || { fail "$what: exit $got, expected $code"; cat err.txt; }
-}
+. "$ANELAST_SOURCE/tests/command_line.bash"
 same() { # what, expected: against out.txt
     [ "$(cat out.txt)" = "$2" ] || { fail "$1:"; diff <(echo "$2") out.txt; }
 }

@@ -1,12 +1,7 @@
 #!/bin/bash
 # The written documents: those of the demo lab and of the shared dumps are valid; the demo lab's dumps are what their script makes;
 # putting the truth's constants into the documents of the shared dumps changes no byte, and another bench's constants arrive.
-set -u
-failed=0
-fail() {
-    echo "FAIL: $*" >&2
-    failed=1
-}
+. "$ANELAST_SOURCE/tests/command_line.bash"
 schemas=$ANELAST_SOURCE/include/anelast/schema
 
 for document in "$ANELAST_SOURCE"/fixtures/lower_quay/*/*.xml "$ANELAST_SOURCE"/tests/shared/*/*.xml; do
