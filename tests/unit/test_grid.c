@@ -90,17 +90,24 @@ static void a_chain_is_cut(void **state)
     an_points_clear(&points);
 }
 
+/* A made sweep of seven isotherms, one burst of the third (250 K, 2 Hz) with a remark, and its grid. */
+static void grid_with_one_remark(an_points *points, an_grid *grid, an_point_state state_of_it, const char *code,
+                                 const char *text)
+{
+    made_begin(points, "RP-0412-4");
+    made_sweep(points, 240, 5, 7, sweep, N_SWEEP, 0.001);
+    an_point *point = &points->point[2 * N_SWEEP + 3];
+    point->state = state_of_it;
+    an_remark_list_add(&point->remarks, code, point->burst, NULL, "%s", text);
+    grid_of(points, 1, grid);
+}
+
 static void a_skipped_burst_leaves_a_hole(void **state)
 {
     (void)state;
     an_points points;
     an_grid grid;
-    made_begin(&points, "RP-0412-4");
-    made_sweep(&points, 240, 5, 7, sweep, N_SWEEP, 0.001);
-    an_point *point = &points.point[2 * N_SWEEP + 3];
-    point->state = AN_POINT_SKIPPED;
-    an_remark_list_add(&point->remarks, "missing-values", point->burst, NULL, "9 of 640 samples are marked");
-    grid_of(&points, 1, &grid);
+    grid_with_one_remark(&points, &grid, AN_POINT_SKIPPED, "missing-values", "9 of 640 samples are marked");
     assert_int_equal(grid.n_isotherm, 7);
     assert_int_equal(grid.n_cell, 7 * N_SWEEP - 1);
     assert_int_equal(grid.isotherm[2].n_cell, N_SWEEP - 1);
@@ -118,12 +125,7 @@ static void a_cut_burst_is_kept_and_asked_for_again(void **state)
     (void)state;
     an_points points;
     an_grid grid;
-    made_begin(&points, "RP-0412-4");
-    made_sweep(&points, 240, 5, 7, sweep, N_SWEEP, 0.001);
-    an_point *point = &points.point[2 * N_SWEEP + 3];
-    point->state = AN_POINT_FLAGGED;
-    an_remark_list_add(&point->remarks, "clipping", point->burst, NULL, "force stands at its end for 9 samples");
-    grid_of(&points, 1, &grid);
+    grid_with_one_remark(&points, &grid, AN_POINT_FLAGGED, "clipping", "force stands at the end of its range");
     assert_int_equal(grid.n_cell, 7 * N_SWEEP);
     assert_int_equal(grid.assessment.verdict, AN_USABLE);
     assert_non_null(strstr(grid.assessment.reason[0], "measure again with a wider range: -23.1 °C: 2 Hz"));
