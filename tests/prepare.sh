@@ -24,6 +24,13 @@ need_packages() {
 packages_to_build=(gcc libc6-dev cmake ninja-build pkg-config libxml2-dev libgsl-dev libfftw3-dev libssl-dev)
 packages_to_test=(libcmocka-dev libxml2-utils python3 python3-numpy python3-scipy python3-lxml chromium)
 
+# testing_of BUILD: ON or OFF as the folder was configured, OFF where it was not yet.
+testing_of() {
+    local testing
+    testing=$(sed -n 's/^BUILD_TESTING:BOOL=//p' "$1/CMakeCache.txt" 2>/dev/null) || true
+    echo "${testing:-OFF}"
+}
+
 # build SOURCE BUILD TESTING: configure where it was not yet, then bring everything up to date.
 build() {
     local source=$1 build=$2 testing=$3

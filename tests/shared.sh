@@ -1,6 +1,7 @@
 #!/usr/bin/env bash
 # tests/shared.sh DIR [DUMPS]: reduce every shared dump, each with the layout, specimen and apparatus documents written
-# for it, into DIR/<dump name>/. DUMPS: the folder of dumps with their truth (default: the one beside the project).
+# for it, into DIR/<dump name>/. Installs and builds first what is missing, as tests/run.sh does; with ANELAST_BIN set, the
+# programs of that folder are used. DUMPS: the folder of dumps with their truth (default: the one beside the project).
 #
 # The documents are those of tests/shared/<dump name>/ with the constants that the truth gives (dimensions, compliance,
 # mass, delay) put in, so that dumps of other constants are reduced with their own; for the shared dumps nothing changes.
@@ -8,12 +9,18 @@
 set -eu
 [ $# -ge 1 ] || { echo "usage: tests/shared.sh DIR [DUMPS]" >&2; exit 2; }
 top=$(cd "$(dirname "$0")/.." && pwd)
-bin=${ANELAST_BIN:-$top/build/bin}
+bin=${ANELAST_BIN:-}
+if [ -z "$bin" ]; then
+    . "$top/tests/prepare.sh"
+    need_packages "${packages_to_build[@]}" python3
+    build "$top" "$top/build" "$(testing_of "$top/build")"
+    bin=$top/build/bin
+fi
 mkdir -p "$1"
 into=$(cd "$1" && pwd)
 dumps=${2:-$top/../shared/dumps}
 [ -d "$dumps" ] || { echo "tests/shared.sh: $dumps: no such folder" >&2; exit 3; }
-[ -x "$bin/anelast" ] || { echo "tests/shared.sh: $bin/anelast is not built; run tests/run.sh or fixtures/demo.sh first" >&2; exit 3; }
+[ -x "$bin/anelast" ] || { echo "tests/shared.sh: $bin/anelast: no such program" >&2; exit 3; }
 
 truth_of() {
     case $1 in
