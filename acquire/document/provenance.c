@@ -208,16 +208,11 @@ an_status an_made_read(const an_xml_node *root, an_made *made, an_error *err)
     return status;
 }
 
-an_status an_made_stand_on(an_made *made, const an_xml_document *document, an_error *err)
+an_status an_made_stand_on(an_made *made, const char *role, const char *path, const an_made *input,
+                           const char *sha256, an_error *err)
 {
-    AN_TRY(an_made_add_input(made, document->root->name, document->file, document->sha256, err));
-    if (!an_xml_child(document->root, "made"))
-        return AN_OK;
-    an_made other;
-    AN_TRY(an_made_read(document->root, &other, err));
-    an_status status = an_made_extend(made, &other, document->sha256, err);
-    an_made_clear(&other);
-    return status;
+    AN_TRY(an_made_add_input(made, role, path, sha256, err));
+    return an_made_extend(made, input, sha256, err);
 }
 
 static void write_chain(an_xml_writer *writer, const an_made *made)

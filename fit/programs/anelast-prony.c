@@ -39,8 +39,7 @@ static an_status record(const an_arguments *arguments, const an_master *master, 
 {
     const char *reason = an_argument(arguments, "override");
     AN_TRY(an_made_init(made, program.name, err));
-    AN_TRY(an_made_add_input(made, "master", an_argument_file(arguments, 0), sha256, err));
-    AN_TRY(an_made_extend(made, &master->made, sha256, err));
+    AN_TRY(an_made_stand_on(made, "master", an_argument_file(arguments, 0), &master->made, sha256, err));
     AN_TRY(an_procedure_record(&arguments->procedure, "spectrum", made, err));
     return reason ? an_made_add_word(made, "override", reason, err) : AN_OK;
 }

@@ -39,8 +39,7 @@ static an_status make_master(const an_arguments *arguments, an_grid *grid, an_ma
     const char *path = an_argument_file(arguments, 0);
     AN_TRY(an_grid_read(path, grid, sha256, err));
     AN_TRY(an_made_init(&master->made, program.name, err));
-    AN_TRY(an_made_add_input(&master->made, "grid", path, sha256, err));
-    AN_TRY(an_made_extend(&master->made, &grid->made, sha256, err));
+    AN_TRY(an_made_stand_on(&master->made, "grid", path, &grid->made, sha256, err));
     AN_TRY(an_procedure_record(&arguments->procedure, "superpose", &master->made, err));
     AN_TRY(an_master_make(grid, &arguments->procedure, master, err));
     return an_xml_save(arguments->output, "master", write_master, master, err);

@@ -78,9 +78,13 @@ an_status an_made_extend(an_made *made, const an_made *input, const char *sha256
  * Returns AN_OK, AN_E_DOCUMENT or AN_E_MEMORY. */
 an_status an_made_read(const an_xml_node *root, an_made *made, an_error *err);
 
-/* an_made_stand_on: add a document that was read as input, with role its root's name, and extend the chain
- * from it where it has a `made`. Returns AN_OK, AN_E_DOCUMENT or AN_E_MEMORY. */
-an_status an_made_stand_on(an_made *made, const an_xml_document *document, an_error *err);
+/* an_made_stand_on: what a stage records of the document it was made from: it is an input, and the chain goes on
+ * from it.
+ *   role   [in] its root's name; path, sha256 [in] as an_made_add_input takes them
+ *   input  [in] its own record
+ * Returns AN_OK or AN_E_MEMORY. */
+an_status an_made_stand_on(an_made *made, const char *role, const char *path, const an_made *input,
+                           const char *sha256, an_error *err);
 
 /* an_made_write: write the `made` element. */
 void an_made_write(an_xml_writer *writer, const an_made *made);

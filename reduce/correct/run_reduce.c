@@ -34,10 +34,9 @@ static an_status record(const char *path, const char *sha256, const an_run *run,
                         const an_procedure *procedure, const char *by, an_points *points, an_error *err)
 {
     AN_TRY(an_made_init(&points->made, by, err));
-    AN_TRY(an_made_add_input(&points->made, "run", path, sha256, err));
+    AN_TRY(an_made_stand_on(&points->made, "run", path, &run->made, sha256, err));
     AN_TRY(an_procedure_record(procedure, "phase", &points->made, err));
-    AN_TRY(an_procedure_record(procedure, "correct", &points->made, err));
-    return an_made_extend(&points->made, &run->made, sha256, err);
+    return an_procedure_record(procedure, "correct", &points->made, err);
 }
 
 static an_status pass(const char *path, const an_procedure *procedure, const char *by, passage *p,

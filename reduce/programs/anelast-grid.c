@@ -31,8 +31,7 @@ static an_status read_points(const an_arguments *arguments, an_points *points, i
         char sha256[AN_SHA256_SIZE];
         const char *path = an_argument_file(arguments, i);
         AN_TRY(an_points_read(path, &points[i], sha256, err));
-        AN_TRY(an_made_add_input(made, "points", path, sha256, err));
-        AN_TRY(an_made_extend(made, &points[i].made, sha256, err));
+        AN_TRY(an_made_stand_on(made, "points", path, &points[i].made, sha256, err));
     }
     return an_procedure_record(&arguments->procedure, "grid", made, err);
 }

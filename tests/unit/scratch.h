@@ -68,4 +68,17 @@ static inline char *scratch_read(const char *path)
     return text;
 }
 
+/* scratch_enter_schema: group setup: a scratch folder where the named schema lies beside a copy of the common one, and
+ * which the environment names as the folder of schemas. */
+static inline int scratch_enter_schema(void **state, const char *name, const char *schema)
+{
+    if (scratch_enter(state) != 0)
+        return -1;
+    char *common = scratch_read(ANELAST_SOURCE "/include/anelast/schema/common.xsd");
+    scratch_write("common.xsd", common);
+    scratch_write(name, schema);
+    free(common);
+    return setenv("ANELAST_SCHEMA_DIR", ".", 1);
+}
+
 #endif

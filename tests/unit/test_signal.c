@@ -193,13 +193,7 @@ static void what_does_not_fit_is_refused_by_place(void **state)
 
 static int enter(void **state)
 {
-    if (scratch_enter(state) != 0)
-        return -1;
-    char *common = scratch_read(ANELAST_SOURCE "/include/anelast/schema/common.xsd");
-    scratch_write("common.xsd", common);
-    scratch_write("trial.xsd", test_schema);
-    free(common);
-    return setenv("ANELAST_SCHEMA_DIR", ".", 1);
+    return scratch_enter_schema(state, "trial.xsd", test_schema);
 }
 
 int main(void)
